@@ -1,0 +1,1 @@
+"""How faults move: declared senses, slip resolved from a stress."""

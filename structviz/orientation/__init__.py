@@ -1,0 +1,1 @@
+"""Arrays of vectors and angles: vectors, planes, lines, projection, statistics. NumPy only; knows no mesh."""

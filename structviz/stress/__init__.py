@@ -1,0 +1,1 @@
+"""Reduced stress from pairs and senses, its uncertainty, and what it says of each fault."""
