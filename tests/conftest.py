@@ -1,0 +1,33 @@
+"""What tests share: where the open data lie, and what may be skipped."""
+
+from __future__ import annotations
+
+import os
+from pathlib import Path
+
+import pytest
+
+PROJECT = Path(__file__).resolve().parents[1]
+SHARED = PROJECT.parent / "shared"
+
+
+def skip_or_fail(reason: str) -> None:
+    """Skip with the reason; under STRUCTVIZ_TESTS=all fail instead, so that the project's own check misses nothing."""
+    if os.environ.get("STRUCTVIZ_TESTS") == "all":
+        pytest.fail(f"STRUCTVIZ_TESTS=all, but {reason}")
+    pytest.skip(reason)
+
+
+@pytest.fixture(scope="session")
+def project() -> Path:
+    """Return the folder of the project."""
+    return PROJECT
+
+
+@pytest.fixture(scope="session")
+def shared_data() -> Path:
+    """Return the folder of open data that lies beside the project, or skip."""
+    folder = SHARED / "data"
+    if not folder.is_dir():
+        skip_or_fail("the open data folder shared/data is not beside the project")
+    return folder
