@@ -21,4 +21,14 @@ REFERENCES: dict[str, str] = {
     "doi:10.1130/0016-7606(1977)88<1231:SOFSUA>2.0.CO;2",
     "zoback1992": "Zoback, M. L. (1992). First- and second-order patterns of stress in the lithosphere: the World Stress Map project. "
     "J. Geophys. Res. 97, 11703-11728. doi:10.1029/92JB00132",
+    "byerlee1978": "Byerlee, J. (1978). Friction of rocks. Pure Appl. Geophys. 116, 615-626. doi:10.1007/BF00876528",
+    "ferrill1999": "Ferrill, D. A. et al. (1999). Stressed rock strains groundwater at Yucca Mountain, Nevada. GSA Today 9(5), 1-8.",
+    "kagan1991": "Kagan, Y. Y. (1991). 3-D rotation of double-couple earthquake sources. Geophys. J. Int. 106, 709-716. "
+    "doi:10.1111/j.1365-246X.1991.tb06343.x",
+    "vavrycuk2014": "Vavrycuk, V. (2014). Iterative joint inversion for stress and fault orientations from focal mechanisms. "
+    "Geophys. J. Int. 199, 69-77. doi:10.1093/gji/ggu224",
+    "snyder1987": "Snyder, J. P. (1987). Map Projections: A Working Manual. USGS Professional Paper 1395. doi:10.3133/pp1395",
+    "mardia2000": "Mardia, K. V. and Jupp, P. E. (2000). Directional Statistics. Wiley. doi:10.1002/9780470316979",
+    "fisher1987": "Fisher, N. I., Lewis, T. and Embleton, B. J. J. (1987). Statistical Analysis of Spherical Data. Cambridge University Press. "
+    "doi:10.1017/CBO9780511623059",
 }
