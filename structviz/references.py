@@ -5,20 +5,20 @@ from __future__ import annotations
 REFERENCES: dict[str, str] = {
     "aki1980": "Aki, K. and Richards, P. G. (1980). Quantitative Seismology. W. H. Freeman.",
     "anderson1951": "Anderson, E. M. (1951). The Dynamics of Faulting and Dyke Formation. Oliver and Boyd.",
-    "bott1959": "Bott, M. H. P. (1959). The mechanics of oblique slip faulting. Geological Magazine 96, 109-117. doi:10.1017/S0016756800059987",
+    "bott1959": "Bott, M. H. P. (1959). The mechanics of oblique slip faulting. Geol. Mag. 96, 109-117. doi:10.1017/S0016756800059987",
     "efron1992": "Efron, B. (1992). Jackknife-after-bootstrap standard errors and influence functions. J. R. Statist. Soc. B 54, 83-127. "
     "doi:10.1111/j.2517-6161.1992.tb01866.x",
     "fisher1953": "Fisher, R. A. (1953). Dispersion on a sphere. Proc. R. Soc. A 217, 295-305. doi:10.1098/rspa.1953.0064",
-    "lund2007": "Lund, B. and Townend, J. (2007). Calculating horizontal stress orientations with full or partial knowledge of the tectonic "
-    "stress tensor. Geophys. J. Int. 170, 1328-1335. doi:10.1111/j.1365-246X.2007.03468.x",
+    "lund2007": "Lund, B. and Townend, J. (2007). Calculating horizontal stress orientations with full or partial knowledge of the "
+    "tectonic stress tensor. Geophys. J. Int. 170, 1328-1335. doi:10.1111/j.1365-246X.2007.03468.x",
     "michael1984": "Michael, A. J. (1984). Determination of stress from slip data: faults and folds. J. Geophys. Res. 89, 11517-11526. "
     "doi:10.1029/JB089iB13p11517",
-    "morris1996": "Morris, A., Ferrill, D. A. and Henderson, D. B. (1996). Slip-tendency analysis and fault reactivation. Geology 24, 275-278. "
-    "doi:10.1130/0091-7613(1996)024<0275:STAAFR>2.3.CO;2",
+    "morris1996": "Morris, A., Ferrill, D. A. and Henderson, D. B. (1996). Slip-tendency analysis and fault reactivation. Geology 24, "
+    "275-278. doi:10.1130/0091-7613(1996)024<0275:STAAFR>2.3.CO;2",
     "simpson1997": "Simpson, R. W. (1997). Quantifying Anderson's fault types. J. Geophys. Res. 102, 17909-17919. doi:10.1029/97JB01274",
-    "wallace1951": "Wallace, R. E. (1951). Geometry of shearing stress and relation to faulting. J. Geology 59, 118-130. doi:10.1086/625831",
-    "woodcock1977": "Woodcock, N. H. (1977). Specification of fabric shapes using an eigenvalue method. Geol. Soc. Am. Bull. 88, 1231-1236. "
-    "doi:10.1130/0016-7606(1977)88<1231:SOFSUA>2.0.CO;2",
+    "wallace1951": "Wallace, R. E. (1951). Geometry of shearing stress and relation to faulting. J. Geol. 59, 118-130. doi:10.1086/625831",
+    "woodcock1977": "Woodcock, N. H. (1977). Specification of fabric shapes using an eigenvalue method. Geol. Soc. Am. Bull. 88, "
+    "1231-1236. doi:10.1130/0016-7606(1977)88<1231:SOFSUA>2.0.CO;2",
     "zoback1992": "Zoback, M. L. (1992). First- and second-order patterns of stress in the lithosphere: the World Stress Map project. "
     "J. Geophys. Res. 97, 11703-11728. doi:10.1029/92JB00132",
     "byerlee1978": "Byerlee, J. (1978). Friction of rocks. Pure Appl. Geophys. 116, 615-626. doi:10.1007/BF00876528",
@@ -29,6 +29,6 @@ REFERENCES: dict[str, str] = {
     "Geophys. J. Int. 199, 69-77. doi:10.1093/gji/ggu224",
     "snyder1987": "Snyder, J. P. (1987). Map Projections: A Working Manual. USGS Professional Paper 1395. doi:10.3133/pp1395",
     "mardia2000": "Mardia, K. V. and Jupp, P. E. (2000). Directional Statistics. Wiley. doi:10.1002/9780470316979",
-    "fisher1987": "Fisher, N. I., Lewis, T. and Embleton, B. J. J. (1987). Statistical Analysis of Spherical Data. Cambridge University Press. "
+    "fisher1987": "Fisher, N. I., Lewis, T. and Embleton, B. J. J. (1987). Statistical Analysis of Spherical Data. Cambridge. "
     "doi:10.1017/CBO9780511623059",
 }
