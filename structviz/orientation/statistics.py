@@ -212,7 +212,7 @@ def circular_mean_deg(azimuths_deg: ArrayLike, weights: ArrayLike | None = None)
 
 
 def axial_mean_azimuth_deg(azimuths_deg: ArrayLike, weights: ArrayLike | None = None) -> tuple[float, float]:
-    """Return the mean of undirected azimuths (N,), degrees [0, 180), and the resultant of the doubled angles; NaN if they cancel [mardia2000].
+    """Return the mean of undirected azimuths (N,), degrees [0, 180), and the resultant of doubled angles; NaN if they cancel [mardia2000].
 
     >>> mean, length = axial_mean_azimuth_deg([10.0, 200.0])
     >>> round(mean, 9), round(length, 6)
