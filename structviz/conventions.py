@@ -42,7 +42,7 @@ The slip of the hanging wall, measured in the fault from the strike direction up
 >>> from structviz.orientation.planes import rakes_deg, slip_vectors
 >>> slip_vectors(n, -90.0).round(6)  # normal: down the dip
 array([ 0.433013, -0.25    , -0.866025])
->>> round(float(rakes_deg(n, [0.5, 0.866025403784, 0.0])), 6)  # along strike: sinistral
+>>> round(float(rakes_deg(n, [0.5, 0.866025403784, 0.0])), 6) + 0.0  # along strike: sinistral
 0.0
 
 Vertical faults
