@@ -2,31 +2,77 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass, field
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, field, fields
+from typing import Any
 
+import numpy as np
+from numpy.typing import NDArray
+
+from structviz import checks
+from structviz._version import __version__
+from structviz.checks.registry import Examined
+from structviz.errors import ArgumentError
+from structviz.kinematics.declared import usable_sector
+from structviz.kinematics.senses import Sector
 from structviz.model import Fault, FaultModel, Finding
-from structviz.stress.conjugate import Pairs
+from structviz.stress.conjugate import PairLimits, Pairs
+from structviz.stress.evidence import EvidenceModel, FaultEvidence, gather, sector_edges
+from structviz.stress.joint import Posterior, Terms, bootstrap_counts, infer
+from structviz.stress.pairing import CURVED_DEG, PairSubjects, admissible_pairs, partner_support, with_senses
+from structviz.stress.readings import pair_frames, regime_of_frames, shape_ratio_of
 from structviz.stress.regime import Reading, Regime
-from structviz.stress.verdict import Verdict
+from structviz.stress.verdict import Verdict, VerdictLimits, judge, likely_causes, undetermined
+from structviz.surfaces.measure import measure
+from structviz.surfaces.proximity import candidate_pairs, nearest_approach
+from structviz.surfaces.stations import sample_points, sample_stations
 from structviz.surfaces.surface import MeasuredSurface, Stations
 
+Floats = NDArray[np.float64]
 Progress = Callable[[str, int, int], None]  # what is being done, how many are done, of how many
 
+CAUTIONS = (
+    "A screening aid: it tests geometry against declared movement. It does not measure stress magnitude, fault stability or hazard.",
+    "It does not replace local codes, site investigation or the judgement of a licensed professional.",
+    "Conjugate inference assumes new faults in isotropic rock (Anderson); reactivated, low-angle and salt- or shale-detached faults "
+    "break it by nature, not by error.",
+    "Directions only: the shape ratio R is reported where the data resolve it, stress magnitudes never are.",
+)
+PROXIMITY_SAMPLES = 32
+FACETS = 6  # a curved fault speaks for this many of its stations
+PAIR_REPLICATES = 200
+LOOSEST_CONE_DEG = 55.0  # beyond this on sigma1 and sigma3 both, no regime is claimed
 
-def setting(default: object, unit: str, low: float, high: float, text: str) -> object:
+
+def setting(default: object, unit: str, low: float, high: float, text: str) -> Any:
     """Return a dataclass field of Settings with its unit, range and help."""
-    return field(default=default, metadata={"unit": unit, "low": low, "high": high, "help": text})  # type: ignore[call-overload]
+    return field(default=default, metadata={"unit": unit, "low": low, "high": high, "help": text})
 
 
 @dataclass(frozen=True)
 class Settings:
     """Every choice a user may change; each field is a command-line option, a key of results.json and a row of the README."""
 
-    friction_angle_deg: float = setting(30.0, "deg", 0.0, 60.0, "friction angle; conjugate faults are expected 90 minus this apart")  # type: ignore[assignment]
-    replicates: int = setting(500, "", 50, 100000, "bootstrap replicates over faults")  # type: ignore[assignment]
-    stations: int = setting(24, "", 4, 1000, "stations for local orientation on each fault")  # type: ignore[assignment]
-    random_state: int = setting(0, "", 0, 2**31 - 1, "seed; the same seed gives the same result")  # type: ignore[assignment]
+    friction_angle_deg: float = setting(30.0, "deg", 5.0, 60.0, "friction angle; conjugate faults are expected 90 minus this apart")
+    pair_reach: float = setting(
+        1.0, "fault sizes", 0.01, 100.0, "how far apart two surfaces may lie and still pair, in units of their summed sizes"
+    )
+    stations: int = setting(24, "", 4, 1000, "stations for local orientation on each fault")
+    station_radius: float = setting(0.15, "fault sizes", 0.01, 2.0, "radius of the plane fitted at a station, in units of the fault's size")
+    replicates: int = setting(500, "", 50, 100000, "bootstrap replicates over faults")
+    random_state: int = setting(0, "", 0, 2**31 - 1, "seed; the same seed gives the same result")
+    conflict_probability: float = setting(
+        0.9, "", 0.5, 1.0, "probability of slip outside the declared sector from which a fault is conflicting"
+    )
+    least_shear: float = setting(0.15, "of greatest", 0.0, 0.9, "shear below which no direction of slip is predicted")
+
+    def __post_init__(self) -> None:
+        """Raise ArgumentError where a value is outside its range."""
+        for item in fields(self):
+            value, low, high = getattr(self, item.name), item.metadata["low"], item.metadata["high"]
+            if isinstance(value, bool) or not isinstance(value, (int, float)) or not low <= value <= high:
+                wanted = f"{low:g} to {high:g} {item.metadata['unit']}".rstrip()
+                raise ArgumentError(f"{item.name}: found {value!r}; wanted {wanted}", hint=f"{item.metadata['help']}")
 
 
 @dataclass(frozen=True, eq=False)
@@ -37,6 +83,7 @@ class FaultResult:
     measured: MeasuredSurface
     stations: Stations
     verdict: Verdict
+    sector: Sector | None = None  # the declaration as it could be tested on this surface; None where it could not
 
 
 @dataclass(frozen=True, eq=False)
@@ -52,3 +99,191 @@ class Analysis:
     findings: tuple[Finding, ...]
     cautions: tuple[str, ...]
     version: str
+
+    @property
+    def conflicting(self) -> tuple[FaultResult, ...]:
+        """The faults whose declared movement the others contradict."""
+        return tuple(result for result in self.faults if result.verdict.word == "conflicting")
+
+
+@dataclass(frozen=True, eq=False)
+class _Examination:
+    """Faults in canonical order with all that was measured of them."""
+
+    faults: tuple[Fault, ...]
+    measured: tuple[MeasuredSurface, ...]
+    stations: tuple[Stations, ...]
+    sectors: tuple[Sector | None, ...]
+    why_no_sector: tuple[str, ...]
+
+
+def run(
+    model: FaultModel, settings: Settings | None = None, *, limits: Mapping[str, float] | None = None, progress: Progress | None = None
+) -> Analysis:
+    """Return the analysis of a model: its surfaces measured, its stress inferred, every fault judged by the others.
+
+    Neither the order of the faults nor their names change anything: work is done in an order of their own (by area), and the
+    results are put back in the order of the model.
+    """
+    settings = settings or Settings()
+    tell = progress or (lambda text, done, total: None)
+    examined, order = _examine(model, settings, tell)
+    tell("pairing faults", 0, 1)
+    subjects, geometric, pairs = _pair(examined, settings)
+    tell("inferring stress", 0, 1)
+    evidence = _evidence(examined, subjects, geometric)
+    counts = bootstrap_counts(len(examined.faults), settings.replicates, settings.random_state)
+    readings, joint = _read(evidence, geometric, pairs, counts, settings)
+    verdicts = _judge_all(examined, joint, settings, tell)
+    back = np.argsort(order)
+    results = tuple(
+        FaultResult(examined.faults[i], examined.measured[i], examined.stations[i], verdicts[i], examined.sectors[i]) for i in back
+    )
+    pairs = _renumber(pairs, order)
+    regimes = tuple(reading.regime for reading in readings if reading.key == "joint" and reading.regime)
+    tell("checking", 0, 1)
+    evidence_for_checks = Examined(model, tuple(r.measured for r in results), pairs, readings, regimes, tuple(r.verdict for r in results))
+    findings = model.findings + checks.run(evidence_for_checks, limits or {})
+    return Analysis(model, settings, results, pairs, readings, regimes, findings, CAUTIONS, __version__)
+
+
+def _examine(model: FaultModel, settings: Settings, tell: Progress) -> tuple[_Examination, NDArray[np.int64]]:
+    """Return the measured faults by decreasing area, and the place in the model of each."""
+    measured = []
+    for number, fault in enumerate(model.faults):
+        tell("measuring surfaces", number, len(model.faults))
+        measured.append(measure(fault.surface))
+    keys = [(-float(f"{m.area_m2:.9e}"), *np.round(m.centroids.mean(0), 3)) for m in measured]
+    order = np.array(sorted(range(len(keys)), key=keys.__getitem__), dtype=np.int64)
+    stations, sectors, whys = [], [], []
+    for number in order:
+        fault, surface = model.faults[number], measured[number]
+        radius = settings.station_radius * np.sqrt(max(part.area_m2 for part in surface.parts))
+        stations.append(sample_stations(surface, settings.stations, radius))
+        sector, why = usable_sector(fault.declared, fault.down_side, surface.normal, surface.dip_deg)
+        sectors.append(sector)
+        whys.append(why)
+    faults = tuple(model.faults[i] for i in order)
+    return _Examination(faults, tuple(measured[i] for i in order), tuple(stations), tuple(sectors), tuple(whys)), order
+
+
+def _pair(examined: _Examination, settings: Settings) -> tuple[PairSubjects, Pairs, Pairs]:
+    """Return what pairing needs of the faults, the pairs by geometry alone, and the pairs weighed by their senses."""
+    limits = PairLimits(friction_angle_deg=settings.friction_angle_deg, reach=settings.pair_reach)
+    samples = np.stack([_filled(sample_points(m, PROXIMITY_SAMPLES), PROXIMITY_SAMPLES) for m in examined.measured])
+    origin = samples.mean((0, 1))
+    samples = samples - origin
+    centres = samples.mean(1)
+    sizes = np.sqrt([m.area_m2 for m in examined.measured])
+    normals = np.stack([m.normal for m in examined.measured])
+    most = max(len(s.places) for s in examined.stations)
+    subjects = PairSubjects(
+        normals=normals,
+        known=np.array([m.meaningful for m in examined.measured]),
+        cones_deg=np.array([min(m.cone_deg, 90.0) if np.isfinite(m.cone_deg) else 20.0 for m in examined.measured]),
+        centres=centres,
+        sizes_m=sizes,
+        edges=np.stack([sector_edges(n[None], s)[0] for n, s in zip(normals, examined.sectors, strict=True)]),
+        phases=[fault.phase for fault in examined.faults],
+        station_places=np.stack([_filled(s.places, most) for s in examined.stations]) - origin,
+        station_normals=np.stack([_filled(s.normals, most) for s in examined.stations]),
+    )
+    radii = np.sqrt(((samples - centres[:, None]) ** 2).sum(-1).max(1))
+    candidates = candidate_pairs(centres, radii, limits.reach * sizes)
+    distance, places = nearest_approach(samples, candidates)
+    geometric = admissible_pairs(subjects, candidates, distance, places, limits)
+    pairs = with_senses(geometric, subjects, limits)
+    return subjects, _moved(geometric, origin), _moved(pairs, origin)
+
+
+def _filled(rows: Floats, count: int) -> Floats:
+    """Return exactly `count` rows by repeating those there are in turn."""
+    return rows[np.arange(count) % len(rows)]
+
+
+def _moved(pairs: Pairs, origin: Floats) -> Pairs:
+    return Pairs(pairs.faults, pairs.acute_deg, pairs.obtuse, pairs.weight, pairs.axes, pairs.distance_m, pairs.places + origin)
+
+
+def _renumber(pairs: Pairs, order: NDArray[np.int64]) -> Pairs:
+    """Return the pairs numbered as in the model, heaviest first."""
+    faults = np.sort(order[pairs.faults], axis=1).reshape(-1, 2)
+    rows = np.lexsort((faults[:, 1], faults[:, 0], -pairs.weight))
+    return Pairs(faults, pairs.acute_deg, pairs.obtuse, pairs.weight, pairs.axes, pairs.distance_m, pairs.places).rows(rows)
+
+
+def _facets(measured: MeasuredSurface, stations: Stations) -> tuple[Floats, Floats]:
+    """Return the normals that speak for a fault, (M, 3), and their shares: its mean, or some stations where it is curved."""
+    off = np.degrees(np.arccos(np.clip(np.abs(stations.normals @ measured.normal), 0, 1)))
+    if measured.meaningful and np.sqrt(np.mean(off**2)) <= CURVED_DEG:
+        return measured.normal[None], np.ones(1)
+    rows = np.unique(np.linspace(0, len(stations.normals) - 1, FACETS).round().astype(int))
+    return stations.normals[rows], np.ones(len(rows))
+
+
+def _evidence(examined: _Examination, subjects: PairSubjects, geometric: Pairs) -> FaultEvidence:
+    facets = [_facets(m, s) for m, s in zip(examined.measured, examined.stations, strict=True)]
+    support = partner_support(geometric, len(examined.faults))
+    return gather([f[0] for f in facets], [f[1] for f in facets], examined.sectors, support, subjects.known)
+
+
+def _read(
+    evidence: FaultEvidence, geometric: Pairs, pairs: Pairs, counts: NDArray[np.int64], settings: Settings
+) -> tuple[tuple[Reading, ...], Posterior | None]:
+    """Return the three readings of the evidence and the joint one, with the posterior of the latter."""
+    odds = EvidenceModel(friction_angle_deg=settings.friction_angle_deg)
+    some = counts[:PAIR_REPLICATES]
+    readings = [
+        _pair_reading(
+            "geometry", "geometry only", geometric, some, "no two faults stand at an admissible angle within reach of each other"
+        ),
+        _pair_reading("pairs", "pairs with senses", pairs, some, "no admissible pair has senses that agree on one stress"),
+    ]
+    declared = int(evidence.declared.sum())
+    senses = infer(evidence, odds, Terms(geometry=False), some) if declared >= 2 else None
+    readings.append(
+        _posterior_reading(
+            "senses", "senses of all faults", senses, declared, "fewer than two faults declare a movement that can be tested"
+        )
+    )
+    joint = infer(evidence, odds, Terms(), counts) if declared >= 2 or len(geometric) else None
+    speaking = int((evidence.declared | (evidence.partnered > 0)).sum())
+    readings.append(
+        _posterior_reading("joint", "all evidence together", joint, speaking, "no admissible pair and fewer than two declared movements")
+    )
+    return tuple(readings), joint
+
+
+def _pair_reading(key: str, title: str, pairs: Pairs, counts: NDArray[np.int64], why_not: str) -> Reading:
+    if not len(pairs):
+        return Reading(key, title, None, 0, why_not)
+    return Reading(key, title, regime_of_frames(*pair_frames(pairs, counts)), len(pairs))
+
+
+def _posterior_reading(key: str, title: str, posterior: Posterior | None, count: int, why_not: str) -> Reading:
+    if posterior is None:
+        return Reading(key, title, None, count, why_not)
+    regime = regime_of_frames(posterior.frame, posterior.frames, shape_ratio_of(posterior))
+    if min(regime.cones_deg[0], regime.cones_deg[2]) > LOOSEST_CONE_DEG:
+        return Reading(
+            key, title, None, count, f"the evidence is too loose: sigma1 and sigma3 are known only to {regime.cones_deg[0]:.0f} deg"
+        )
+    return Reading(key, title, regime, count)
+
+
+def _judge_all(examined: _Examination, joint: Posterior | None, settings: Settings, tell: Progress) -> Sequence[Verdict]:
+    limits = VerdictLimits(conflicting_from=settings.conflict_probability, least_shear=settings.least_shear)
+    verdicts = []
+    for number, (stations, sector, why) in enumerate(zip(examined.stations, examined.sectors, examined.why_no_sector, strict=True)):
+        tell("judging faults", number, len(examined.faults))
+        verdicts.append(_judge_one(joint, number, stations, sector, why, limits) if joint else undetermined("no stress could be inferred"))
+    return verdicts
+
+
+def _judge_one(joint: Posterior, number: int, stations: Stations, sector: Sector | None, why: str, limits: VerdictLimits) -> Verdict:
+    shares = np.full(len(stations.normals), 1 / len(stations.normals))
+    verdict, prediction = judge(joint, number, stations.normals, shares, sector, why, limits)
+    if verdict.word != "conflicting" or prediction is None or sector is None:
+        return verdict
+    causes = likely_causes(joint, number, prediction, stations.normals, shares, sector)
+    return Verdict(**{**verdict.__dict__, "causes": causes})

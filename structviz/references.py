@@ -4,6 +4,8 @@ from __future__ import annotations
 
 REFERENCES: dict[str, str] = {
     "aki1980": "Aki, K. and Richards, P. G. (1980). Quantitative Seismology. W. H. Freeman.",
+    "alexa2022": "Alexa, M. (2022). Super-Fibonacci spirals: fast, low-discrepancy sampling of SO(3). CVPR 2022, 8291-8300. "
+    "doi:10.1109/CVPR52688.2022.00811",
     "anderson1951": "Anderson, E. M. (1951). The Dynamics of Faulting and Dyke Formation. Oliver and Boyd.",
     "bott1959": "Bott, M. H. P. (1959). The mechanics of oblique slip faulting. Geol. Mag. 96, 109-117. doi:10.1017/S0016756800059987",
     "efron1992": "Efron, B. (1992). Jackknife-after-bootstrap standard errors and influence functions. J. R. Statist. Soc. B 54, 83-127. "

@@ -1,8 +1,27 @@
-"""The verdict on each fault by the regime inferred from the others."""
+"""The verdict on each fault by the stress inferred from the others.
+
+A bootstrap over faults leaves each fault out of about one replicate in e; those replicates are a bootstrap of the other
+faults, so leaving one out costs nothing more [efron1992].
+"""
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from structviz.kinematics.senses import Sector, describe_rake
+from structviz.orientation.planes import strike_vectors
+from structviz.orientation.vectors import dot
+from structviz.stress.joint import Posterior
+from structviz.stress.tensor import reduced_tensor, slip_tendency
+
+Floats = NDArray[np.float64]
+
+MOST_REPLICATES = 100  # for one fault; more change the probability by less than its meaning
+FEWEST_REPLICATES = 10
 
 
 @dataclass(frozen=True)
@@ -26,3 +45,163 @@ class Verdict:
     slip_tendency: float | None  # shear over normal stress, as a share of the greatest, 0 to 1
     reasons: tuple[str, ...] = ()
     causes: tuple[Cause, ...] = ()
+
+
+@dataclass(frozen=True)
+class VerdictLimits:
+    """Where the words begin."""
+
+    conflicting_from: float = 0.9  # probability that the slip is outside the declared sector
+    consistent_to: float = 0.2
+    margin_deg: float = 10.0  # beyond the edge of the sector, the median slip of a conflicting fault
+    least_shear: float = 0.15  # in shares of the greatest; below it the direction of slip is anybody's guess
+
+
+@dataclass(frozen=True, eq=False)
+class Prediction:
+    """Slip predicted on the stations of one fault, over replicates and shape ratios."""
+
+    rakes_deg: Floats  # (N,)
+    shear: Floats  # (N,) in shares of the greatest
+    weights: Floats  # (N,) sum 1
+    ratio_of: NDArray[np.int64]  # (N,) column of the shape ratio
+
+
+def predict(frames: Floats, ratios: Floats, ratio_grid: Floats, normals: Floats, shares: Floats) -> Prediction:
+    """Return the slip predicted on facets (S, 3) of area shares (S,) by frames (B, 3, 3) with shape-ratio weights (B, R)."""
+    along = strike_vectors(normals)
+    upward = np.cross(normals, along)
+    n1, n2 = normals @ frames[:, 0].T, normals @ frames[:, 1].T
+    pulls = []
+    for direction in (along, upward):
+        p1, p2 = -n1 * (direction @ frames[:, 0].T), -n2 * (direction @ frames[:, 1].T)
+        pulls.append(p1[..., None] + p2[..., None] * ratio_grid)
+    rakes = np.degrees(np.arctan2(pulls[1], pulls[0]))
+    weights = shares[:, None, None] * ratios[None] / len(frames)
+    column = np.broadcast_to(np.arange(len(ratio_grid)), rakes.shape)
+    return Prediction(rakes.ravel(), 2 * np.hypot(*pulls).ravel(), weights.ravel() / weights.sum(), column.ravel())
+
+
+def off_sector_deg(rakes_deg: Floats, sector: Sector) -> Floats:
+    """Return the angle between rakes and the centre of a sector, degrees [0, 180]."""
+    return np.abs((rakes_deg - sector.rake_deg + 180.0) % 360.0 - 180.0)
+
+
+def share_inside(prediction: Prediction, sector: Sector) -> float:
+    """Return the probability that the predicted slip lies in a sector."""
+    return float(prediction.weights @ (off_sector_deg(prediction.rakes_deg, sector) <= sector.half_width_deg))
+
+
+def weighted_quantile(values: Floats, weights: Floats, q: float) -> float:
+    """Return the value below which a share q of the weight lies."""
+    order = np.argsort(values, kind="stable")
+    steps = np.cumsum(weights[order])
+    return float(values[order][min(np.searchsorted(steps, q * steps[-1]), len(values) - 1)])
+
+
+def mean_rake_deg(prediction: Prediction) -> tuple[float, float]:
+    """Return the mean predicted rake, degrees (-180, 180], and the half-width that holds 90 % of the predictions."""
+    pull = prediction.weights * prediction.shear
+    angle = np.radians(prediction.rakes_deg)
+    mean = float(np.degrees(np.arctan2(pull @ np.sin(angle), pull @ np.cos(angle))))
+    off = np.abs((prediction.rakes_deg - mean + 180.0) % 360.0 - 180.0)
+    return mean, weighted_quantile(off, prediction.weights, 0.9)
+
+
+def replicates_without(posterior: Posterior, fault: int) -> tuple[Floats, Floats]:
+    """Return the frames and shape-ratio weights of the replicates in which a fault was not drawn."""
+    rows = np.flatnonzero(posterior.counts[:, fault] == 0)[:MOST_REPLICATES]
+    return posterior.frames[rows], posterior.ratios[rows]
+
+
+def judge(
+    posterior: Posterior, fault: int, normals: Floats, shares: Floats, sector: Sector | None, why_no_sector: str, limits: VerdictLimits
+) -> tuple[Verdict, Prediction | None]:
+    """Return the verdict on one fault given by its facets, and the prediction it rests on."""
+    frames, ratios = replicates_without(posterior, fault)
+    if len(frames) < FEWEST_REPLICATES:
+        return undetermined("too few other faults to predict its slip from"), None
+    prediction = predict(frames, ratios, posterior.ratio_grid, normals, shares)
+    rake, spread = mean_rake_deg(prediction)
+    mean_ratio = float(ratios.mean(0) @ posterior.ratio_grid)
+    tendency = float(shares @ slip_tendency(reduced_tensor(frames[:20], mean_ratio)[:, None], normals[None]).mean(0) / shares.sum())
+    shown = (rake, spread, tendency)
+    predicted = f"the other faults predict {describe_rake(rake)} slip (rake {rake:.0f} +/- {spread:.0f})"
+    if sector is None:
+        return Verdict("undetermined", None, None, *shown, (why_no_sector or "no movement is declared", predicted)), prediction
+    off = off_sector_deg(prediction.rakes_deg, sector)
+    outside = off > sector.half_width_deg
+    probability, misfit = float(prediction.weights @ outside), weighted_quantile(off, prediction.weights, 0.5)
+    word, reason = _word(prediction, outside, probability, misfit, sector, limits)
+    return Verdict(word, probability, misfit, *shown, (reason, predicted) if reason else (predicted,)), prediction
+
+
+def undetermined(reason: str) -> Verdict:
+    """Return the verdict on a fault of which nothing can be predicted."""
+    return Verdict("undetermined", None, None, None, None, None, (reason,))
+
+
+def _word(
+    prediction: Prediction, outside: NDArray[np.bool_], probability: float, misfit: float, sector: Sector, limits: VerdictLimits
+) -> tuple[str, str]:
+    shear = weighted_quantile(prediction.shear, prediction.weights, 0.5)
+    if shear < limits.least_shear:
+        return "undetermined", f"too little shear to say which way it slips ({100 * shear:.0f} % of the greatest)"
+    if probability >= limits.conflicting_from and misfit >= sector.half_width_deg + limits.margin_deg:
+        return "conflicting", f"declared {sector.text}, {misfit:.0f} deg from the predicted slip"
+    if probability <= limits.consistent_to:
+        return "consistent", ""
+    by_ratio = _by_ratio(prediction, outside)
+    if by_ratio.min() < 0.3 and by_ratio.max() > 0.7:
+        return (
+            "undetermined",
+            f"R decides: {100 * by_ratio.min():.0f} to {100 * by_ratio.max():.0f} % of slips conflict as R goes over its range",
+        )
+    if probability >= limits.conflicting_from:
+        return "undetermined", f"the predicted slip lies only {misfit - sector.half_width_deg:.0f} deg outside the declared sector"
+    return "undetermined", f"the slip is near the edge of the declared sector ({100 * probability:.0f} % outside it)"
+
+
+def _by_ratio(prediction: Prediction, outside: NDArray[np.bool_]) -> Floats:
+    held = np.bincount(prediction.ratio_of, prediction.weights)
+    wrong = np.bincount(prediction.ratio_of, prediction.weights * outside)
+    return wrong[held > 0] / held[held > 0]
+
+
+def mirrored(normals: Floats, signs: Sequence[float]) -> Floats:
+    """Return the normals of a surface mirrored by signs on easting, northing, up, still on the hanging-wall side."""
+    flipped = normals * np.asarray(signs, float)
+    up = flipped[:, 2].sum()
+    return flipped if up > 0 or (up == 0 and dot(flipped, normals).sum() >= 0) else -flipped
+
+
+MIRRORS: tuple[tuple[str, tuple[float, float, float], str, float], ...] = (
+    (
+        "dips_other_way",
+        (-1.0, -1.0, 1.0),
+        "the surface may dip the other way (mirrored across its strike, or depth read as elevation)",
+        0.85,
+    ),
+    ("mirrored", (-1.0, 1.0, 1.0), "the surface may be mirrored in plan (easting reversed, or easting and northing exchanged)", 0.7),
+)
+
+
+def likely_causes(
+    posterior: Posterior, fault: int, prediction: Prediction, normals: Floats, shares: Floats, sector: Sector
+) -> tuple[Cause, ...]:
+    """Return the first likely causes of a conflict, best first: how much of the predicted slip each would put right.
+
+    A mirrored surface is believed less readily than a swapped label, the commoner slip of the pen, unless the mirrored plane
+    stands better in the stress than the one that was drawn.
+    """
+    frames, ratios = replicates_without(posterior, fault)
+    opposite = sector.opposite()
+    causes = [Cause("label_swapped", f"the label may be swapped: as {opposite.text} it would fit", share_inside(prediction, opposite))]
+    tensor = reduced_tensor(posterior.frame, 0.5)
+    stands = float(shares @ slip_tendency(tensor, normals))
+    for key, signs, text, belief in MIRRORS:
+        other = mirrored(normals, signs)
+        fits = share_inside(predict(frames, ratios, posterior.ratio_grid, other, shares), sector)
+        better = float(shares @ slip_tendency(tensor, other)) - stands
+        causes.append(Cause(key, text, fits * min(1.0, belief + max(0.0, better))))
+    return tuple(sorted((cause for cause in causes if cause.score >= 0.3), key=lambda cause: -cause.score))
