@@ -8,7 +8,7 @@ from numpy.typing import ArrayLike
 from structviz._validate import check_finite, check_range, check_vectors
 from structviz.orientation.vectors import Array, dot, unit
 
-# Below this horizontal part of a unit normal the plane is level and its strike a matter of rounding.
+# Below this horizontal part of a unit normal the plane is level and its strike a matter of rounding; below this upward part it is vertical.
 LEVEL = 1e-12
 
 
@@ -34,11 +34,11 @@ def strike_dip_deg(normal_vectors: ArrayLike) -> tuple[Array, Array]:
     (0.0, 60.0)
     """
     n = unit(check_vectors("normal_vectors", normal_vectors))
-    n = np.where(n[..., 2:] < 0, -n, n)
+    n = np.where(n[..., 2:] < -LEVEL, -n, n)  # a plane vertical to rounding keeps the side it was given
     horizontal = np.hypot(n[..., 0], n[..., 1])
     strike = np.degrees(np.arctan2(-n[..., 1], n[..., 0])) % 360.0
     strike = np.where((horizontal < LEVEL) | (strike >= 360.0), 0.0, strike)
-    return strike, np.degrees(np.arctan2(horizontal, n[..., 2]))
+    return strike, np.degrees(np.arctan2(horizontal, np.maximum(n[..., 2], 0.0)))
 
 
 def strike_vectors(normal_vectors: ArrayLike) -> Array:
