@@ -11,6 +11,7 @@ from structviz.orientation.vectors import dot, unit
 from structviz.stress.conjugate import Floats, Integers, PairLimits, Pairs, conjugate_slips, pair_axes, swap_extremes
 
 SENSE_SOFTNESS = 0.35  # cosine scale over which a slip at the edge of its sector goes from wrong to right
+CONTRADICTS = 0.35  # fit below which a slip is on the wrong side of its sector, some 12 deg beyond the edge
 CURVED_DEG = 12.0  # station spread from which a fault pairs by its local, not its mean, orientation
 
 
@@ -88,8 +89,8 @@ def with_senses(pairs: Pairs, subjects: PairSubjects, limits: PairLimits) -> Pai
     slips1 = conjugate_slips(pairs.axes, normals_at(subjects, first, pairs.places))
     slips2 = conjugate_slips(pairs.axes, normals_at(subjects, second, pairs.places))
     declared = np.abs(subjects.edges).sum((1, 2)) > 0
-    acute = _fit(slips1, subjects.edges[first]) * _fit(slips2, subjects.edges[second])
-    obtuse = _fit(-slips1, subjects.edges[first]) * _fit(-slips2, subjects.edges[second])
+    acute = _fit_of_both(slips1, slips2, subjects.edges[first], subjects.edges[second])
+    obtuse = _fit_of_both(-slips1, -slips2, subjects.edges[first], subjects.edges[second])
     swapped = obtuse > acute
     axes = np.where(swapped[:, None, None], swap_extremes(pairs.axes), pairs.axes)
     weight = pairs.weight * np.where(swapped, limits.obtuse_weight * obtuse, acute)
@@ -99,11 +100,17 @@ def with_senses(pairs: Pairs, subjects: PairSubjects, limits: PairLimits) -> Pai
     return Pairs(pairs.faults, pairs.acute_deg, swapped, weight, axes, pairs.distance_m, pairs.places).rows(rows)
 
 
+def _fit_of_both(slips1: Floats, slips2: Floats, edges1: Floats, edges2: Floats) -> Floats:
+    """Return how well both slips lie in their declared sectors, 0 to 1, shape (P,); 0 where one clearly does not."""
+    fits = _fit(slips1, edges1), _fit(slips2, edges2)
+    return np.where(np.minimum(*fits) < CONTRADICTS, 0.0, fits[0] * fits[1])
+
+
 def _fit(slips: Floats, edges: Floats) -> Floats:
     """Return how well slip lies in its declared sector, 0 to 1, shape (P,); 1 where nothing is declared."""
     used = np.abs(edges).sum(-1) > 0
     inside = 1 / (1 + np.exp(-np.einsum("pk,pek->pe", slips, edges) / SENSE_SOFTNESS))
-    return np.where(used, inside, 1.0).prod(-1)
+    return np.where(used, inside, 1.0).min(-1)
 
 
 def partner_support(pairs: Pairs, faults: int) -> Floats:
