@@ -1,0 +1,18 @@
+"""Models with known answers: random ones to measure accuracy, large ones for speed, damaged surfaces, the demo model.
+
+Everything here is made from a fixed random state and nothing is read from a file.
+"""
+
+from structviz.synthetic.models import Known, large_model, random_model
+from structviz.synthetic.shapes import Relief, bent_surface, overturning_surface, plane_surface, relief_surface
+
+__all__ = [
+    "Known",
+    "Relief",
+    "bent_surface",
+    "large_model",
+    "overturning_surface",
+    "plane_surface",
+    "random_model",
+    "relief_surface",
+]
