@@ -78,21 +78,24 @@ def random_model(
     degrees or steeper names the side that went down; where the label is planted, so is that side.
     """
     _check(regime, faults, conjugate, planted)
-    rng = np.random.default_rng(random_state)
-    axes, ratio = _random_axes(rng, regime, tilt_deg), float(rng.uniform(*shape_ratio))
+    # One stream for each matter, so that planting more labels or cutting finer triangles leaves everything else as it was.
+    stress, planes, labels, shapes = np.random.default_rng(random_state).spawn(4)
+    axes, ratio = _random_axes(stress, regime, tilt_deg), float(stress.uniform(*shape_ratio))
     tensor = reduced_tensor(axes, ratio)
     sigma = scatter_deg if scatter_per_axis else scatter_deg / np.sqrt(2.0)
-    first = _conjugate_normals(rng, axes, conjugate, friction_angle_deg, sigma)
-    second = _inherited_normals(rng, tensor, faults - conjugate, least_shear, least_dip_deg)
-    order = rng.permutation(faults)
+    first = _conjugate_normals(planes, axes, conjugate, friction_angle_deg, sigma)
+    second = _inherited_normals(planes, tensor, faults - conjugate, least_shear, least_dip_deg)
+    order = planes.permutation(faults)
     normals = np.concatenate([first, second])[order]
     kinds = np.repeat(["conjugate", "inherited"], [conjugate, faults - conjugate])[order]
     rakes = rakes_deg(normals, resolved_slip(tensor, normals))
-    wrong = np.isin(np.arange(faults), rng.choice(faults, planted, replace=False))
+    wrong = np.isin(np.arange(faults), labels.choice(faults, planted, replace=False))
     digits = len(str(faults))
-    rows = [
-        _fault(rng, f"F{i + 1:0{digits}d}", normals[i], float(rakes[i]), bool(wrong[i]), two_words, triangles, box_m) for i in range(faults)
-    ]
+    rows = []
+    for i, rng in enumerate(shapes.spawn(faults)):
+        sector, down_side = declaration(normals[i], float(rakes[i]), wrong=bool(wrong[i]), two_words=two_words)
+        name = f"F{i + 1:0{digits}d}"
+        rows.append(Fault(name, random_surface(rng, name, normals[i], float(rakes[i]), triangles, box_m), sector, "", down_side))
     model = FaultModel(f"random {regime} model {random_state}", tuple(rows))
     flipped = tuple(fault.name for fault, bad in zip(rows, wrong) if bad)
     return Known(model, axes, ratio, flipped, rakes, tuple(str(kind) for kind in kinds), normals)
@@ -164,14 +167,6 @@ def _upward(normals: Floats) -> Floats:
     return np.where(normals[:, 2:] < 0, -normals, normals)
 
 
-def _fault(
-    rng: np.random.Generator, name: str, normal: Floats, rake_deg: float, wrong: bool, two_words: bool, triangles: int, box_m: float
-) -> Fault:
-    """Return one fault with a rough surface somewhere in the box."""
-    sector, down_side = declaration(normal, rake_deg, wrong=wrong, two_words=two_words)
-    return Fault(name, random_surface(rng, name, normal, rake_deg, triangles, box_m), sector, "", down_side)
-
-
 def random_surface(
     rng: np.random.Generator, name: str, normal: Floats, rake_deg: float, triangles: int, box_m: float, corner: tuple[float, float] = CORNER
 ) -> Surface:
@@ -206,5 +201,5 @@ def _check(regime: str, faults: int, conjugate: int, planted: int) -> None:
     if not (0 <= conjugate <= faults and 0 <= planted <= faults):
         raise ArgumentError(
             f"conjugate, planted: found {conjugate}, {planted}; wanted 0 to {faults}, the number of faults",
-            hint="plant no more than there are",
+            hint="plant no more than that",
         )
