@@ -116,10 +116,10 @@ def frame_angle_deg(a: ArrayLike, b: ArrayLike) -> Array:
     90.0
     """
     first, second = _check_axes(a), _check_axes(b)
-    products = np.einsum("...ik,...ik->...i", first, second)
-    size = np.abs(products)
-    handed = np.linalg.det(first) * np.linalg.det(second) * np.prod(np.where(products < 0, -1.0, 1.0), -1)
-    trace = size.sum(-1) - np.where(handed < 0, 2 * size.min(-1), 0.0)
+    p1, p2, p3 = (np.einsum("...k,...k->...", first[..., i, :], second[..., i, :]) for i in range(3))
+    turned = (p1 < 0) ^ (p2 < 0) ^ (p3 < 0) ^ (np.linalg.det(first) < 0) ^ (np.linalg.det(second) < 0)
+    p1, p2, p3 = np.abs(p1), np.abs(p2), np.abs(p3)
+    trace = p1 + p2 + p3 - np.where(turned, 2 * np.minimum(np.minimum(p1, p2), p3), 0.0)
     return np.degrees(np.arccos(np.clip((trace - 1) / 2, -1.0, 1.0)))
 
 
