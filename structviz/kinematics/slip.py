@@ -9,9 +9,8 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import ArrayLike
 
-from structviz._validate import check_finite, check_vectors
-from structviz.errors import ArgumentError
-from structviz.orientation.vectors import Array, dot
+from structviz._validate import check_vectors
+from structviz.orientation.vectors import Array, check_matrices, dot
 
 # Shear below this share of the stress itself is rounding, and its direction is noise.
 NIL_SHEAR = 1e-12
@@ -59,9 +58,7 @@ def shear_and_normal(tensor: ArrayLike, normals: ArrayLike) -> tuple[Array, Arra
 
 def _shear_vectors(tensor: ArrayLike, normals: ArrayLike) -> tuple[Array, Array, Array, Array]:
     """Return normal stress, shear part of S n, its size, and the size of the tensor."""
-    stress, n = check_finite("tensor", tensor), check_vectors("normals", normals)
-    if stress.shape[-2:] != (3, 3):
-        raise ArgumentError(f"tensor: found shape {stress.shape}; wanted (..., 3, 3)", hint="give stress as 3 by 3 symmetric arrays")
+    stress, n = check_matrices("tensor", tensor), check_vectors("normals", normals)
     traction = _tractions(stress, n)
     pressure = dot(traction, n)
     shear = traction - pressure[..., None] * n

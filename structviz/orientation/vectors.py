@@ -5,11 +5,22 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from structviz._validate import check_vectors
+from structviz._validate import check_finite, check_vectors
+from structviz.errors import ArgumentError
 
 Array = NDArray[np.float64]
 
 UP = np.array([0.0, 0.0, 1.0])
+
+
+def check_matrices(name: str, values: ArrayLike) -> Array:
+    """Return finite float64 matrices of shape (..., 3, 3), such as frames of unit rows or tensors; raise ArgumentError otherwise."""
+    array = check_finite(name, values)
+    if array.shape[-2:] != (3, 3):
+        raise ArgumentError(
+            f"{name}: found shape {array.shape}; wanted (..., 3, 3)", hint="give 3 by 3 arrays: three rows of three components"
+        )
+    return array
 
 
 def unit(vectors: ArrayLike) -> Array:

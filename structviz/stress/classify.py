@@ -5,9 +5,8 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from structviz._validate import check_finite, check_range
-from structviz.errors import ArgumentError
-from structviz.orientation.vectors import Array
+from structviz._validate import check_range
+from structviz.orientation.vectors import Array, check_matrices
 
 KINDS = ("normal", "normal-oblique", "strike-slip", "reverse-oblique", "reverse", "undefined")
 
@@ -39,7 +38,7 @@ def kinds(axes: ArrayLike) -> NDArray[np.str_]:
     >>> str(kinds([[0, 0, 1], [0, 1, 0], [1, 0, 0]])), str(kinds([[0, 1, 0], [0, 0, 1], [1, 0, 0]]))
     ('normal', 'strike-slip')
     """
-    frame = _check_axes(axes)
+    frame = check_matrices("axes", axes)
     plunges = np.degrees(np.arctan2(np.abs(frame[..., 2]), np.hypot(frame[..., 0], frame[..., 1])))
     return kinds_of_plunges(plunges[..., 0], plunges[..., 1], plunges[..., 2])
 
@@ -58,7 +57,7 @@ def shmax_deg(axes: ArrayLike, shape_ratio: ArrayLike) -> Array:
     >>> float(shmax_deg([[0, 1, 0], [0, 0, 1], [1, 0, 0]], 0.5))
     0.0
     """
-    frame = _check_axes(axes)
+    frame = check_matrices("axes", axes)
     ratio = check_range("shape_ratio", shape_ratio, 0.0, 1.0, "(no unit)")
     east, north = frame[..., :2, 0], frame[..., :2, 1]
     product, difference = 2 * east * north, north**2 - east**2
@@ -79,14 +78,5 @@ def a_phi(axes: ArrayLike, shape_ratio: ArrayLike) -> Array:
     1.25
     """
     ratio = check_range("shape_ratio", shape_ratio, 0.0, 1.0, "(no unit)")
-    n = np.abs(_check_axes(axes)[..., 2]).argmax(-1)
+    n = np.abs(check_matrices("axes", axes)[..., 2]).argmax(-1)
     return n + 0.5 + np.where(n == 1, -1.0, 1.0) * (ratio - 0.5)
-
-
-def _check_axes(axes: ArrayLike) -> Array:
-    frame = check_finite("axes", axes)
-    if frame.shape[-2:] != (3, 3):
-        raise ArgumentError(
-            f"axes: found shape {frame.shape}; wanted (..., 3, 3), rows sigma1, sigma2, sigma3", hint="give three unit rows"
-        )
-    return frame

@@ -12,7 +12,7 @@ from numpy.typing import ArrayLike, NDArray
 from structviz._validate import check_finite
 from structviz.errors import ArgumentError
 from structviz.orientation.planes import normals, rakes_deg, slip_vectors, strike_dip_deg
-from structviz.orientation.vectors import Array
+from structviz.orientation.vectors import Array, check_matrices
 from structviz.stress.tensor import FRICTION, instability
 
 
@@ -48,7 +48,7 @@ def pbt_axes(strike_deg: ArrayLike, dip_deg: ArrayLike, rake_deg: ArrayLike) -> 
 
 def nodal_planes_deg(axes: ArrayLike) -> tuple[Array, Array, Array]:
     """Return strike, dip and rake of both nodal planes of frames P, B, T (..., 3, 3), degrees, shape (..., 2) each."""
-    frame = _check_matrices("axes", axes)
+    frame = check_matrices("axes", axes)
     p, t = frame[..., 0, :], frame[..., 2, :]
     first, second = (t + p) / np.sqrt(2), (t - p) / np.sqrt(2)
     return _angles(np.stack([first, second], -2), np.stack([second, first], -2))
@@ -76,7 +76,7 @@ def tensor_of_up_south_east(components: ArrayLike) -> Array:
 
 def pbt_of_moment(tensor: ArrayLike) -> tuple[Array, Array]:
     """Return unit rows P, B, T (..., 3, 3), right-handed, and their moments ascending (..., 3)."""
-    values, columns = np.linalg.eigh(_check_matrices("tensor", tensor))
+    values, columns = np.linalg.eigh(check_matrices("tensor", tensor))
     axes = np.swapaxes(columns, -1, -2).copy()
     axes[..., 1, :] = np.cross(axes[..., 2, :], axes[..., 0, :])
     return axes, values
@@ -93,10 +93,3 @@ def _angles(n: Array, s: Array) -> tuple[Array, Array, Array]:
     n, s = np.where(up, -n, n), np.where(up, -s, s)
     strike, dip = strike_dip_deg(n)
     return strike, dip, rakes_deg(n, s)
-
-
-def _check_matrices(name: str, values: ArrayLike) -> Array:
-    array = check_finite(name, values)
-    if array.shape[-2:] != (3, 3):
-        raise ArgumentError(f"{name}: found shape {array.shape}; wanted (..., 3, 3)", hint="give 3 by 3 arrays")
-    return array

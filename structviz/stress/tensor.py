@@ -10,10 +10,10 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import ArrayLike
 
-from structviz._validate import check_finite, check_range
+from structviz._validate import check_range
 from structviz.errors import ArgumentError
 from structviz.kinematics.slip import shear_and_normal
-from structviz.orientation.vectors import Array
+from structviz.orientation.vectors import Array, check_matrices
 
 FRICTION = 0.6  # of ordinary rock [byerlee1978]
 
@@ -29,7 +29,7 @@ def reduced_tensor(axes: ArrayLike, shape_ratio: ArrayLike) -> Array:
     >>> reduced_tensor(np.eye(3), 0.25).diagonal()
     array([1.  , 0.25, 0.  ])
     """
-    frame = _check_axes(axes)
+    frame = check_matrices("axes", axes)
     ratio = check_range("shape_ratio", shape_ratio, 0.0, 1.0, "(no unit)")[..., None, None]
     s1, s2 = frame[..., 0, :], frame[..., 1, :]
     return s1[..., :, None] * s1[..., None, :] + ratio * (s2[..., :, None] * s2[..., None, :])
@@ -45,9 +45,7 @@ def principal(tensor: ArrayLike) -> tuple[Array, Array, Array]:
     >>> values, float(ratio), np.abs(axes[0])
     (array([30., 25., 20.]), 0.5, array([1., 0., 0.]))
     """
-    stress = check_finite("tensor", tensor)
-    if stress.shape[-2:] != (3, 3):
-        raise ArgumentError(f"tensor: found shape {stress.shape}; wanted (..., 3, 3)", hint="give stress as 3 by 3 symmetric arrays")
+    stress = check_matrices("tensor", tensor)
     ascending, columns = np.linalg.eigh(stress)
     values = ascending[..., ::-1]
     axes = np.swapaxes(columns, -1, -2)[..., ::-1, :].copy()
@@ -115,7 +113,7 @@ def frame_angle_deg(a: ArrayLike, b: ArrayLike) -> Array:
     >>> float(frame_angle_deg(np.eye(3), [[0, 1, 0], [1, 0, 0], [0, 0, 1]]).round(4))
     90.0
     """
-    first, second = _check_axes(a), _check_axes(b)
+    first, second = check_matrices("a", a), check_matrices("b", b)
     p1, p2, p3 = (np.einsum("...k,...k->...", first[..., i, :], second[..., i, :]) for i in range(3))
     turned = (p1 < 0) ^ (p2 < 0) ^ (p3 < 0) ^ (np.linalg.det(first) < 0) ^ (np.linalg.det(second) < 0)
     p1, p2, p3 = np.abs(p1), np.abs(p2), np.abs(p3)
@@ -128,15 +126,6 @@ def _scaled(tensor: ArrayLike, normals: ArrayLike) -> tuple[Array, Array, Array,
     shear, pressure = shear_and_normal(tensor, normals)
     values = np.linalg.eigvalsh(np.asarray(tensor, float))
     return shear, pressure, np.broadcast_to(values[..., 2], shear.shape), np.broadcast_to(values[..., 0], shear.shape)
-
-
-def _check_axes(axes: ArrayLike) -> Array:
-    frame = check_finite("axes", axes)
-    if frame.shape[-2:] != (3, 3):
-        raise ArgumentError(
-            f"axes: found shape {frame.shape}; wanted (..., 3, 3), rows sigma1, sigma2, sigma3", hint="give three unit rows"
-        )
-    return frame
 
 
 def _check_friction(friction: float) -> float:
