@@ -204,12 +204,7 @@ def _refine(frames: Array, ratios: Array, n: Array, s: Array, w: Array, senses_k
     here = residuals(np.zeros((len(frames), 4)))
     cost = (w * here**2).sum(-1)
     for _ in range(100):
-        slope = _slopes(residuals, len(frames))
-        normal = np.einsum("kni,n,knj->kij", slope, w, slope)
-        downhill = -np.einsum("kni,n,kn->ki", slope, w, here)
-        ridge = damping[:, None] * (np.einsum("kii->ki", normal) + 1e-12 * w.sum())
-        step = np.linalg.solve(normal + ridge[:, :, None] * np.eye(4), downhill[..., None])[..., 0]
-        step *= np.minimum(1.0, 0.5 / np.maximum(np.sqrt(dot(step, step)), 1e-300))[:, None]
+        step = _damped_step(_slopes(residuals, len(frames)), here, w, damping)
         there = residuals(step)
         better = (w * there**2).sum(-1) < cost
         step = np.where(better[:, None], step, 0.0)
@@ -220,6 +215,15 @@ def _refine(frames: Array, ratios: Array, n: Array, s: Array, w: Array, senses_k
         if not better.any() and damping.min() > 1e3:
             break
     return frames, np.sin(fourth) ** 2, cost
+
+
+def _damped_step(slope: Array, here: Array, w: Array, damping: Array) -> Array:
+    """Return Levenberg-Marquardt steps (K, 4), none longer than half a radian, from slopes (K, N, 4) and residuals (K, N)."""
+    normal = np.einsum("kni,n,knj->kij", slope, w, slope)
+    downhill = -np.einsum("kni,n,kn->ki", slope, w, here)
+    ridge = damping[:, None] * (np.einsum("kii->ki", normal) + 1e-12 * w.sum())
+    step = np.linalg.solve(normal + ridge[:, :, None] * np.eye(4), downhill[..., None])[..., 0]
+    return step * np.minimum(1.0, 0.5 / np.maximum(np.sqrt(dot(step, step)), 1e-300))[:, None]
 
 
 def _slopes(residuals: Callable[[Array], Array], count: int) -> Array:
