@@ -3,16 +3,20 @@
 Everything here is made from a fixed random state and nothing is read from a file.
 """
 
+from structviz.synthetic.damage import DAMAGE, damaged_surface, sound_surface
 from structviz.synthetic.models import Known, large_model, random_model
 from structviz.synthetic.shapes import Relief, bent_surface, overturning_surface, plane_surface, relief_surface
 
 __all__ = [
+    "DAMAGE",
     "Known",
     "Relief",
     "bent_surface",
+    "damaged_surface",
     "large_model",
     "overturning_surface",
     "plane_surface",
     "random_model",
     "relief_surface",
+    "sound_surface",
 ]

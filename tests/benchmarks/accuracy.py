@@ -111,9 +111,8 @@ def report(planted: int, rows: list[Outcome]) -> None:
     print(line("  all", rows))
     if planted in LIMITS:
         found, false, median, high = LIMITS[planted]
-        print(
-            f"  {'wanted':22s}{f'>= {found:.0f}':>8s} {f'<= {false:g}':>8s} {'':8s} {f'<= {median:.0f}':>7s} {f'<= {high:.0f}':>6s} {'93-97':>6s}"
-        )
+        wanted = f"{f'>= {found:g}':>8s} {f'<= {false:g}':>8s} {'':8s} {f'<= {median:g}':>7s} {f'<= {high:g}':>6s} {'93-97':>6s}"
+        print(f"{'  wanted':24s}{wanted}")
     print("  axes by reading: worst axis median, 95th; median of sigma1, sigma2, sigma3 (deg)")
     for key in rows[0].errors_deg:
         print(readings_line(key, rows))
