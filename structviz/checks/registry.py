@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass
 
+import numpy as np
+
 from structviz._validate import check_range
 from structviz.errors import ArgumentError
 from structviz.model import Fault, FaultModel, Finding
@@ -41,7 +43,7 @@ class Examined:
 
 @dataclass(frozen=True)
 class Found:
-    """What a check saw of a fault, or of the whole "model": how bad, in words, with the numbers; a hint where it knows better than its row."""
+    """What a check saw of a fault, or of the whole "model": how bad, in words and numbers; a hint where it knows better than its row."""
 
     subject: str
     severity: str
@@ -110,12 +112,17 @@ def run(examined: Examined, limits: Mapping[str, float] | None = None) -> tuple[
     """
     chosen = checked_limits(limits or {})
     found = [
-        Finding(row.key, each.severity, each.subject, each.message, each.evidence, each.hint or row.hint)
+        Finding(row.key, each.severity, each.subject, each.message, _plain(each.evidence), each.hint or row.hint)
         for row in CHECKS.values()
         if examined.has(row.needs)
         for each in row.examine(examined, chosen[row.key])
     ]
     return tuple(sorted(found, key=lambda f: (SEVERITIES.index(f.severity), f.check, f.subject, f.message)))
+
+
+def _plain(evidence: Evidence) -> Evidence:
+    """Return the evidence with NumPy numbers as Python's own, which every writer can store."""
+    return tuple((name, value.item() if isinstance(value, np.generic) else value) for name, value in evidence)
 
 
 def checked_limits(limits: Mapping[str, float]) -> dict[str, float]:

@@ -61,7 +61,7 @@ def measured(surface: Surface, **changes: object) -> MeasuredSurface:
     mean = doubled.sum(0) / np.sqrt((doubled.sum(0) ** 2).sum())
     spread = np.sqrt(np.average(np.degrees(np.arccos(np.clip(each @ mean, -1, 1))) ** 2, weights=length))
     strike, dip = (float(v) for v in strike_dip_deg(mean))
-    part = Part(len(length), float(length.sum() / 2), tuple(mean), strike, dip, float(spread))  # type: ignore[arg-type]
+    part = Part(len(length), float(length.sum() / 2), tuple(mean), strike, dip, float(spread))
     whole = MeasuredSurface(
         surface=surface,
         areas_m2=length / 2,
@@ -78,6 +78,11 @@ def measured(surface: Surface, **changes: object) -> MeasuredSurface:
         condition=Condition(),
     )
     return replace(whole, **changes)  # type: ignore[arg-type]
+
+
+def part(area_m2: float, normal: tuple[float, float, float] = (0.866, 0.0, 0.5), dip_deg: float = 60.0) -> Part:
+    """Return one part of a surface, by its area."""
+    return Part(64, area_m2, normal, 0.0, dip_deg, 1.0)
 
 
 def examined(*pieces: MeasuredSurface, senses: str = "normal", striae: tuple[Stria, ...] = (), **known: object) -> Examined:
@@ -116,7 +121,7 @@ def with_down_side(these: Examined, down_side: str) -> Examined:
 def with_stria(strike_deg: float, dip_deg: float, off_m: float = 0.0) -> Examined:
     """Return the plane that strikes north and dips 60 east, with one stria off it by a distance along its normal."""
     place = np.array(CENTRE) + off_m * normals(0.0, 60.0)
-    stria = Stria("A", tuple(place), strike_deg, dip_deg, -90.0, sector_of_rake(-90.0))  # type: ignore[arg-type]
+    stria = Stria("A", tuple(place), strike_deg, dip_deg, -90.0, sector_of_rake(-90.0))
     return examined(measured(plane()), striae=(stria,))
 
 
