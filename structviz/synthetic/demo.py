@@ -139,7 +139,7 @@ def _transfer_rows(rng: np.random.Generator) -> list[_Row]:
 
 def _older_rows(rng: np.random.Generator) -> list[_Row]:
     """Return three deep faults that an older stress moved and the present one did not."""
-    places = MIDDLE + np.array([[-8600.0, 3000.0, -750.0], [1500.0, -7800.0, -800.0], [8800.0, -2500.0, -700.0]])
+    places = MIDDLE + np.array([[-8600.0, 3000.0, -750.0], [-400.0, -8700.0, -800.0], [8800.0, -2500.0, -700.0]])
     return [
         _Row(name, "older", normals(strike, dip), place, float(rng.uniform(2600, 3400)), float(rng.uniform(1000, 1200)), 0.02)
         for (name, strike, dip), place in zip(OLDER, places)

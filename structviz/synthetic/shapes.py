@@ -23,7 +23,7 @@ Integers = NDArray[np.int64]
 class Relief:
     """How a surface departs from its mean plane. Angles are slopes against that plane, degrees."""
 
-    bend_deg: float = 0.0  # change of strike from one end to the other
+    bend_deg: float = 0.0  # turn to the right from one end to the other, in the plane; the strike turns by this over the sine of the dip
     curve_deg: float = 0.0  # change of dip from bottom to top
     twist_deg: float = 0.0  # change of dip from one end to the other
     corrugation_deg: float = 0.0  # steepest slope of the corrugations
@@ -61,7 +61,8 @@ def bent_surface(
     cells: tuple[int, int] = (24, 10),
 ) -> Surface:
     """Return a surface whose strike changes by bend_deg from end to end (to the right if positive) about the mean plane given."""
-    return relief_surface(name, normals(strike_deg, dip_deg), centre, length_m, width_m, Relief(bend_deg=bend_deg), cells=cells)
+    in_plane_deg = bend_deg * float(np.sin(np.radians(dip_deg)))
+    return relief_surface(name, normals(strike_deg, dip_deg), centre, length_m, width_m, Relief(bend_deg=in_plane_deg), cells=cells)
 
 
 def overturning_surface(
@@ -129,7 +130,7 @@ def _nodes(
 def _heights(u: Floats, v: Floats, length_m: float, width_m: float, relief: Relief) -> Floats:
     """Return the departure w of the relief from its plane, noise left out; all terms are even or odd about the centre."""
     bend, curve, twist, slope = np.radians([relief.bend_deg, relief.curve_deg, relief.twist_deg, relief.corrugation_deg])
-    w = -bend * u**2 / (2 * length_m) + curve * v**2 / (2 * width_m) + twist * u * v / length_m
+    w = bend * u**2 / (2 * length_m) + curve * v**2 / (2 * width_m) + twist * u * v / length_m
     if slope:
         rake = np.radians(relief.corrugation_rake_deg)
         across = v * np.cos(rake) - u * np.sin(rake)
