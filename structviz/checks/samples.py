@@ -13,6 +13,7 @@ from structviz.checks.registry import Examined
 from structviz.kinematics.senses import sector_of_rake, sector_of_words
 from structviz.model import Fault, FaultModel, Stria
 from structviz.orientation.planes import normals, slip_vectors, strike_dip_deg
+from structviz.orientation.vectors import rotation
 from structviz.stress.conjugate import Pairs
 from structviz.stress.regime import Reading, Regime, ShapeRatio
 from structviz.stress.verdict import Cause, Verdict
@@ -37,12 +38,12 @@ def plane(strike_deg: float = 0.0, dip_deg: float = 60.0, centre: tuple[float, f
 
 
 def folded(limb_deg: float) -> Surface:
-    """Return a plane that strikes north and dips 60 east, its southern half swung about the vertical through its middle."""
-    flat = plane()
-    angle = np.radians(limb_deg)
-    turn = np.array([[np.cos(angle), np.sin(angle), 0.0], [-np.sin(angle), np.cos(angle), 0.0], [0.0, 0.0, 1.0]])
-    swung = np.where(flat.vertices[:, 1:2] < 0, flat.vertices @ turn.T, flat.vertices)
-    return replace(flat, vertices=swung)
+    """Return the plane with its southern half folded by an angle about the dip line through its middle."""
+    flat, normal = plane(), normals(0.0, 60.0)
+    away = flat.vertices - CENTRE
+    swung = away @ rotation(slip_vectors(normal, 90.0), limb_deg).T
+    southern = (away @ slip_vectors(normal, 0.0) < 0)[:, None]
+    return replace(flat, vertices=np.where(southern, swung, away) + CENTRE)
 
 
 def rough(height_m: float) -> Surface:

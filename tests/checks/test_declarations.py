@@ -9,6 +9,8 @@ import pytest
 from structviz.checks import CHECKS, Found, samples
 from structviz.checks.registry import Examined
 from structviz.kinematics.senses import sector_of_rake
+from structviz.model import Stria
+from structviz.orientation.planes import strike_dip_deg
 
 
 def found(key: str, examined: Examined, limit: float | None = None) -> list[Found]:
@@ -113,11 +115,16 @@ def test_striae_are_compared_with_the_surface_near_them() -> None:
     assert not found("striae-plane", samples.with_stria(10.0, 60.0))
     (only,) = found("striae-plane", samples.with_stria(30.0, 60.0))
     assert only.message.startswith("1 of 1 stria on planes that stand up to 26 deg off")
-    local = samples.with_stria(40.0, 60.0)  # on a folded surface the limb counts, not the mean
-    folded = samples.measured(samples.folded(40.0))
-    southern = replace(local.model.striae[0], place=tuple(folded.centroids[folded.centroids[:, 1].argmin()]))
-    swung = samples.examined(folded, striae=(southern,))
-    assert not found("striae-plane", swung)
+
+
+def test_on_a_fold_the_limb_counts_and_not_the_mean() -> None:
+    folded = samples.measured(samples.folded(60.0))
+    row = int(folded.centroids[:, 1].argmin())
+    strike, dip = (float(v) for v in strike_dip_deg(folded.normals[row]))
+    stria = Stria("A", tuple(folded.centroids[row]), strike, dip, -90.0)
+    assert not found("striae-plane", samples.examined(folded, striae=(stria,)))
+    lost = replace(stria, place=(float("nan"),) * 3)
+    assert found("striae-plane", samples.examined(folded, striae=(lost,)))
 
 
 def test_striae_far_away_are_told_in_metres() -> None:
