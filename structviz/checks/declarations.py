@@ -168,7 +168,7 @@ def same_surface(examined: Examined, limit: float) -> Iterator[Found]:
     """Return a warning for each fault whose surface coincides with that of an earlier one to within the limit."""
     if len(examined.measured) < 2:
         return
-    boxes = np.array([[*p.surface.vertices.min(0), *p.surface.vertices.max(0), *p.centroids.mean(0)] for p in examined.measured])
+    boxes = examined.boxes.reshape(-1, 6)
     areas, normals = np.array([p.area_m2 for p in examined.measured]), np.array([p.normal for p in examined.measured])
     names = [fault.name for fault in examined.model.faults]
     for row in range(1, len(boxes)):

@@ -115,8 +115,7 @@ def datum(examined: Examined, limit: float) -> Iterator[Found]:
     """Return a finding where every fault lies wholly above the limit: a note, or a warning where it stands higher than any ground."""
     if not examined.measured:
         return
-    heights = [piece.surface.vertices[:, 2] for piece in examined.measured]
-    lowest, highest = float(min(up.min() for up in heights)), float(max(up.max() for up in heights))
+    lowest, highest = float(examined.boxes[:, 0, 2].min()), float(examined.boxes[:, 1, 2].max())
     if lowest >= limit:
         severity = "warning" if highest > HIGHEST_GROUND_M else "note"
         beyond = ", higher than any ground" if highest > HIGHEST_GROUND_M else ""
@@ -141,7 +140,7 @@ def far_fault(examined: Examined, limit: float) -> Iterator[Found]:
     """Return a warning for faults whose distance from the middle of the model is more than limit times the usual one."""
     if len(examined.measured) < 3:
         return
-    centres = np.array([piece.surface.vertices.mean(0) for piece in examined.measured])
+    centres = examined.boxes.mean(1)
     away = np.sqrt(((centres - np.median(centres, 0)) ** 2).sum(-1))
     usual = max(float(np.median(away)), float(np.median([np.sqrt(piece.area_m2) for piece in examined.measured])))
     far = np.flatnonzero(away > limit * usual)
@@ -155,9 +154,7 @@ def _extent(examined: Examined) -> Floats:
     """Return the size of the box about all faults, easting, northing, up, m, shape (3,); zero where there is none."""
     if not examined.measured:
         return np.zeros(3)
-    lows = np.array([piece.surface.vertices.min(0) for piece in examined.measured]).min(0)
-    highs = np.array([piece.surface.vertices.max(0) for piece in examined.measured]).max(0)
-    return np.asarray(highs - lows, float)
+    return np.asarray(examined.boxes[:, 1].max(0) - examined.boxes[:, 0].min(0), float)
 
 
 def _span(span: float) -> tuple[tuple[str, float], ...]:

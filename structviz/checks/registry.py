@@ -4,8 +4,10 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
+from numpy.typing import NDArray
 
 from structviz._validate import check_range
 from structviz.errors import ArgumentError
@@ -35,6 +37,12 @@ class Examined:
     def faults(self) -> Iterator[tuple[Fault, MeasuredSurface]]:
         """Return each fault with its measured surface."""
         return zip(self.model.faults, self.measured)
+
+    @cached_property
+    def boxes(self) -> NDArray[np.float64]:
+        """The corners of the box about each fault, m, shape (F, 2, 3): lowest and highest easting, northing, up."""
+        columns = [np.ascontiguousarray(piece.surface.vertices.T) for piece in self.measured]  # along rows the extremes come fast
+        return np.array([(each.min(1), each.max(1)) for each in columns]).reshape(-1, 2, 3)
 
     def has(self, need: str) -> bool:
         """Return True where what a check needs has been worked out."""
