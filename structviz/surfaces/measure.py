@@ -1,0 +1,126 @@
+"""A surface measured: one winding a part, normals to the hanging wall, mean orientation, condition."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from structviz.errors import SurfaceError
+from structviz.orientation.planes import strike_dip_deg
+from structviz.orientation.statistics import fisher_mean
+from structviz.orientation.vectors import axial_angle_deg, unit
+from structviz.surfaces.condition import examine
+from structviz.surfaces.geometry import areas_and_normals, blocks
+from structviz.surfaces.surface import MeasuredSurface, Part, Surface
+from structviz.surfaces.topology import topology
+
+Floats = NDArray[np.float64]
+Integers = NDArray[np.int64]
+
+UPRIGHT = np.sin(np.radians(0.5))  # a mean normal that rises less than this is level: "up" would be decided by noise
+STEEP_DEG = 80.0  # parts this steep share the hanging wall of the largest part
+STRAY_SHARE = 0.05  # parts under this share of the area say nothing about the mean
+APART_DEG = 45.0  # parts whose planes differ by more have no meaningful mean
+LEAST_RESULTANT = 0.6  # |sum of area times normal| over area; below, the surface faces every way
+CONE_BLOCKS = 16  # neighbouring triangles repeat each other: the cone counts blocks, not triangles
+
+
+def measure(surface: Surface) -> MeasuredSurface:
+    """Return the surface measured; its triangles keep their order and its vertices their places.
+
+    Normals point from foot wall to hanging wall, chosen once for each part: winding made alike by adjacency, then the sign
+    for which the area-weighted mean points up. A steep part whose dip passes through vertical therefore keeps one moving
+    block. Raises SurfaceError where there is no area to measure.
+    """
+    _check(surface)
+    origin = surface.vertices.mean(0)
+    corners = (surface.vertices - origin)[surface.triangles]
+    areas, normals = areas_and_normals(corners)
+    if not areas.sum() > 0:
+        raise SurfaceError(
+            surface.source or surface.name, "only triangles without area", "at least one triangle with area", hint="export again"
+        )
+    joined = topology(surface.vertices, surface.triangles)
+    normals[joined.turned] *= -1
+    centroids = corners.mean(1)
+    normals = normals * _signs(normals, areas, joined.part_of, joined.parts)[joined.part_of, None]
+    parts = _part_list(normals, areas, joined.part_of, joined.parts)
+    mean = unit(areas @ normals)
+    strike, dip = strike_dip_deg(mean)
+    why_not = _why_no_mean(normals, areas, parts)
+    return MeasuredSurface(
+        surface, areas, centroids + origin, normals, joined.part_of, parts, mean, float(strike), float(dip),
+        _cone_deg(centroids, normals, areas), not why_not, why_not, examine(surface.vertices, surface.triangles, areas, joined),
+    )  # fmt: skip
+
+
+def _check(surface: Surface) -> None:
+    name = surface.source or surface.name
+    vertices, triangles = surface.vertices, surface.triangles
+    if vertices.ndim != 2 or vertices.shape[1] != 3 or triangles.ndim != 2 or triangles.shape[1:] != (3,) or not len(triangles):
+        found = f"vertices {vertices.shape} and triangles {triangles.shape}"
+        raise SurfaceError(name, found, "vertices (V, 3) and at least one row of triangles (T, 3)", hint="export the surface as triangles")
+    if not np.isfinite(vertices).all():
+        found = f"{int((~np.isfinite(vertices)).any(1).sum())} vertices with NaN or infinite coordinates"
+        raise SurfaceError(
+            name, found, "finite coordinates", hint="remove the undefined nodes where the surface was gridded, and export again"
+        )
+    if triangles.min() < 0 or triangles.max() >= len(vertices):
+        raise SurfaceError(
+            name, f"a triangle that names vertex {triangles.max()}", f"vertices 0 to {len(vertices) - 1}", hint="export again"
+        )
+
+
+def _signs(normals: Floats, areas: Floats, part_of: Integers, parts: int) -> Floats:
+    """Return for each part +1 or -1: the sign that makes its winding point to the hanging wall, shape (parts,)."""
+    sums = np.stack([np.bincount(part_of, areas * normals[:, k], minlength=parts) for k in range(3)], 1)
+    mean = unit(sums)
+    # A level mean normal belongs to a vertical plane: take the side for which strike lies in [0, 180).
+    south_east = np.where(np.abs(mean[:, 1]) > UPRIGHT, -mean[:, 1], mean[:, 0])
+    deciding = np.where(np.abs(mean[:, 2]) >= UPRIGHT, mean[:, 2], south_east)
+    sign = np.where(deciding < 0, -1.0, 1.0)
+    size = np.bincount(part_of, areas, minlength=parts)
+    main = int(size.argmax())
+    steep = np.abs(mean[:, 2]) < np.cos(np.radians(STEEP_DEG))
+    if steep[main]:
+        agrees = (mean * sign[:, None]) @ (mean[main] * sign[main])
+        sign = np.where(steep & (agrees < 0), -sign, sign)
+    return sign
+
+
+def _part_list(normals: Floats, areas: Floats, part_of: Integers, parts: int) -> tuple[Part, ...]:
+    size = np.bincount(part_of, areas, minlength=parts)
+    sums = np.stack([np.bincount(part_of, areas * normals[:, k], minlength=parts) for k in range(3)], 1)
+    means = unit(sums)
+    strikes, dips = strike_dip_deg(means)
+    off = axial_angle_deg(normals, means[part_of]) ** 2 * (areas > 0)
+    spread = np.sqrt(np.bincount(part_of, areas * off, minlength=parts) / np.where(size > 0, size, 1.0))
+    count = np.bincount(part_of, minlength=parts)
+    return tuple(
+        Part(int(count[k]), float(size[k]), tuple(means[k].tolist()), float(strikes[k]), float(dips[k]), float(spread[k]))
+        for k in range(parts)
+    )
+
+
+def _why_no_mean(normals: Floats, areas: Floats, parts: tuple[Part, ...]) -> str:
+    total = areas.sum()
+    main = max(parts, key=lambda part: part.area_m2)
+    for part in parts:
+        if part.area_m2 >= STRAY_SHARE * total and axial_angle_deg(np.array(part.normal), np.array(main.normal)) > APART_DEG:
+            return (
+                f"its parts lie {float(axial_angle_deg(np.array(part.normal), np.array(main.normal))):.0f} deg apart "
+                f"(strike/dip {main.strike_deg:03.0f}/{main.dip_deg:02.0f} and {part.strike_deg:03.0f}/{part.dip_deg:02.0f})"
+            )
+    resultant = float(np.linalg.norm(areas @ normals) / total)
+    if resultant < LEAST_RESULTANT:
+        return f"it faces every way (mean resultant {resultant:.2f})"
+    return ""
+
+
+def _cone_deg(centroids: Floats, normals: Floats, areas: Floats) -> float:
+    """Return the 95 % cone about the mean normal by Fisher's statistics over blocks of equal area, degrees; 0 for one block."""
+    block = blocks(centroids, areas, CONE_BLOCKS)
+    sums = np.stack([np.bincount(block, areas * normals[:, k]) for k in range(3)], 1)
+    filled = np.bincount(block, areas) > 0
+    means = unit(sums[filled])
+    return min(float(fisher_mean(means).alpha95_deg), 180.0) if filled.sum() > 2 else 0.0
