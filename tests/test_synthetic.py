@@ -17,7 +17,6 @@ from structviz.synthetic import (
     Known,
     bent_surface,
     damaged_surface,
-    demo_model,
     large_model,
     overturning_surface,
     plane_surface,
@@ -292,60 +291,3 @@ def test_pinched_surface_touches_itself_in_one_vertex():
 def test_unknown_damage_is_refused_in_words():
     with pytest.raises(ArgumentError, match=r"kind: found 'rust'; wanted one of duplicate_vertices, zero_area"):
         damaged_surface("rust")
-
-
-@pytest.fixture(scope="module")
-def demo():
-    return demo_model()
-
-
-def test_demo_is_the_same_every_time(demo):
-    assert fingerprint(demo.known) == fingerprint(demo_model().known)
-
-
-def test_demo_plants_what_it_says(demo):
-    known = demo.known
-    stress = known.axes.T @ np.diag([1.0, known.shape_ratio, 0.0]) @ known.axes
-    older = demo.older_axes.T @ np.diag([1.0, 0.5, 0.0]) @ demo.older_axes
-    assert len(known.model.faults) == 24
-    for fault, normal, kind in zip(known.model.faults, known.normals, known.kinds):
-        traction = -(older if kind == "older" else stress) @ normal
-        slip = traction - (traction @ normal) * normal
-        declared = slip_vectors(normal, fault.declared.rake_deg)
-        agreement = declared @ slip / np.linalg.norm(slip)
-        assert (agreement < -0.7) if fault.name in known.flipped else (agreement > 0.7), fault.name
-        if kind == "older":
-            now = -stress @ normal
-            now -= (now @ normal) * normal
-            assert declared @ now / np.linalg.norm(now) < -0.3, "its slip is not that of the stress to be found"
-        off = axial_angle_deg(area_vectors(fault.surface).sum(0), normal)
-        assert (off > 45) if fault.name in demo.mirrored else (off < 0.05), fault.name
-
-
-def test_demo_horizons_step_down_into_the_hanging_wall(demo):
-    horizon = demo.known.model.horizons[1].surface
-    checked = 0
-    for moved, kind in zip(demo.slips, demo.known.kinds):
-        if kind != "conjugate":
-            continue
-        centre = (moved.surface.vertices.min(0) + moved.surface.vertices.max(0)) / 2
-        level = np.linalg.norm(moved.normal[:2])
-        toward = moved.normal[:2] / level
-        place = horizon.vertices - centre
-        near = place[np.abs(place[:, :2] @ [-toward[1], toward[0]]) < 600]
-        # Horizontal distance from the fault, which lies further towards its dip the deeper it is.
-        across = near[:, :2] @ toward + near[:, 2] * moved.normal[2] / level
-        hanging, foot = near[(across > 100) & (across < 600), 2].mean(), near[(across < -100) & (across > -600), 2].mean()
-        throw = -moved.slip[2]
-        checked += 1
-        assert 0.15 * throw < foot - hanging < 1.3 * throw, moved.surface.name
-    assert checked == 15
-
-
-def test_demo_is_tight_in_its_frame(demo):
-    vertices = np.concatenate([fault.surface.vertices for fault in demo.known.model.faults])
-    assert vertices[:, 2].min() >= -4000.0
-    assert vertices[:, 2].max() <= -1200.0
-    np.testing.assert_array_equal(vertices, vertices.round(2))
-    names = {fault.name for fault in demo.known.model.faults}
-    assert {stria.fault for stria in demo.known.model.striae} <= names
