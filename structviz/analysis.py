@@ -18,10 +18,11 @@ from structviz.kinematics.senses import Sector
 from structviz.model import Fault, FaultModel, Finding
 from structviz.stress.conjugate import PairLimits, Pairs
 from structviz.stress.evidence import EvidenceModel, FaultEvidence, gather, sector_edges
-from structviz.stress.joint import Posterior, Terms, bootstrap_counts, infer
+from structviz.stress.joint import Terms, infer
 from structviz.stress.pairing import CURVED_DEG, PairSubjects, admissible_pairs, partner_support, with_senses
 from structviz.stress.readings import pair_frames, regime_of_frames, shape_ratio_of
 from structviz.stress.regime import Reading, Regime
+from structviz.stress.replicates import Posterior, bootstrap_counts
 from structviz.stress.verdict import Verdict, VerdictLimits, judge, likely_causes, undetermined
 from structviz.surfaces.measure import measure
 from structviz.surfaces.proximity import candidate_pairs, nearest_approach

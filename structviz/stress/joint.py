@@ -1,4 +1,4 @@
-"""The stress that all faults together speak for: search over all frames, then a fine grid, then a bootstrap over faults."""
+"""The stress that all faults together speak for: a survey of all frames, then a fine grid about the best of them."""
 
 from __future__ import annotations
 
@@ -8,9 +8,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from structviz.orientation.vectors import axial_angle_deg
 from structviz.stress.evidence import EvidenceModel, FaultEvidence, geometry_term, sense_term
 from structviz.stress.frames import all_frames, ball, turn_between, turned
+from structviz.stress.replicates import Posterior, replicate
 
 Floats = NDArray[np.float64]
 
@@ -25,20 +25,6 @@ MODES = 2
 CHUNK_FAULTS = 64  # bounds memory: faults taken at a time over the coarse grid
 MODE_APART_RAD = np.radians(35.0)
 WIDEST_RAD = np.radians(18.0)  # a broader posterior is truncated here: beyond, the frames of one mode wrap onto another
-
-
-@dataclass(frozen=True, eq=False)
-class Posterior:
-    """Replicated estimates of the stress, each from faults drawn with replacement."""
-
-    frame: Floats  # (3, 3) the estimate from all faults, rows sigma1, sigma2, sigma3
-    frames: Floats  # (B, 3, 3) estimate of each replicate
-    ratios: Floats  # (B, R) probability of each shape ratio in each replicate
-    ratio_grid: Floats  # (R,)
-    counts: NDArray[np.int64]  # (B, F) how often each fault was drawn
-    fault_terms: Floats  # (F,) log-likelihood of each fault at the estimate: what it says for it
-    odds: EvidenceModel  # the odds that the model's own evidence chose
-    loose: bool = False  # True where the evidence does not single out one narrow range of frames
 
 
 @dataclass(frozen=True)
@@ -134,11 +120,6 @@ def centre_and_spread(frame: Floats, evidence: FaultEvidence, odds: EvidenceMode
     return frame, covariance
 
 
-def bootstrap_counts(faults: int, replicates: int, random_state: int) -> NDArray[np.int64]:
-    """Return how often each fault is drawn in each replicate, shape (B, F)."""
-    return np.random.default_rng(random_state).multinomial(faults, np.full(faults, 1 / faults), size=replicates)
-
-
 def infer(evidence: FaultEvidence, odds: EvidenceModel, terms: Terms, counts: NDArray[np.int64]) -> Posterior:
     """Return the stress and its replicates. Cost is linear in the faults; memory is bounded by the grids.
 
@@ -148,67 +129,24 @@ def infer(evidence: FaultEvidence, odds: EvidenceModel, terms: Terms, counts: ND
     frames = all_frames(COARSE_FRAMES)
     values, odds = survey(evidence, frames, odds, terms)
     over_frames = np.logaddexp.reduce(values, axis=1)
-    centres, grids, logs = [], [], []
+    grids, logs = [], []
     for mode in distinct_modes(frames, over_frames, MODES):
         frame, covariance = centre_and_spread(mode, evidence, odds, terms)
-        if not centres and np.sqrt(np.linalg.eigvalsh(covariance)[-1]) > WIDEST_RAD:
-            return _replicate_broadly(frames, evidence, odds, terms, counts)
-        turns = _fine_turns(covariance)
-        centres.append(frame)
-        grids.append(turns)
-        logs.append(log_likelihood(evidence, turned(frame, turns), FINE_RATIOS, odds, terms))
-    return _replicate(centres, grids, logs, counts, odds)
+        if not grids and np.sqrt(np.linalg.eigvalsh(covariance)[-1]) > WIDEST_RAD:
+            logs = [_in_chunks(evidence, frames, odds, terms)]
+            return replicate([frames], logs, COARSE_RATIOS, counts, odds, loose=True)
+        grid = turned(frame, _fine_turns(covariance))
+        grids.append(grid)
+        logs.append(log_likelihood(evidence, grid, FINE_RATIOS, odds, terms).astype(np.float32))
+    return replicate(grids, logs, FINE_RATIOS, counts, odds, loose=False)
 
 
-def _replicate_broadly(frames: Floats, evidence: FaultEvidence, odds: EvidenceModel, terms: Terms, counts: NDArray[np.int64]) -> Posterior:
-    every = np.concatenate([np.ones((1, counts.shape[1])), counts]).astype(np.float32)
-    sums = np.zeros((len(every), len(frames) * len(COARSE_RATIOS)), np.float32)
-    for start in range(0, len(evidence), CHUNK_FAULTS):
-        rows = slice(start, start + CHUNK_FAULTS)
-        part = log_likelihood(_part(evidence, rows), frames, COARSE_RATIOS, odds, terms)
-        sums += every[:, rows] @ part.reshape(len(part), -1).astype(np.float32)
-    p = np.exp(sums - sums.max(1, keepdims=True)).reshape(len(every), len(frames), -1)
-    p /= p.sum((1, 2), keepdims=True)
-    outer1 = np.einsum("gi,gj->gij", frames[:, 0], frames[:, 0]).reshape(len(frames), 9)
-    outer2 = np.einsum("gi,gj->gij", frames[:, 1], frames[:, 1]).reshape(len(frames), 9)
-    tensors = (p.sum(2) @ outer1 + (p @ COARSE_RATIOS) @ outer2).reshape(-1, 3, 3)
-    axes = np.swapaxes(np.linalg.eigh(tensors.astype(float))[1], -1, -2)[:, ::-1]
-    axes[:, 2] *= np.sign(np.linalg.det(axes))[:, None]
-    nearest = int(np.argmax((np.einsum("gij,ij->gi", frames, axes[0]) ** 2).sum(-1)))
-    at_estimate = log_likelihood(evidence, frames[nearest][None], COARSE_RATIOS, odds, terms)[:, 0].mean(-1)
-    return Posterior(axes[0], axes[1:], p.sum(1)[1:].astype(float), COARSE_RATIOS, counts, at_estimate, odds, loose=True)
+def _in_chunks(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel, terms: Terms) -> NDArray[np.float32]:
+    chunks = [_part(evidence, slice(at, at + CHUNK_FAULTS)) for at in range(0, len(evidence), CHUNK_FAULTS)]
+    return np.concatenate([log_likelihood(chunk, frames, COARSE_RATIOS, odds, terms).astype(np.float32) for chunk in chunks])
 
 
 def _fine_turns(covariance: Floats) -> Floats:
     values, vectors = np.linalg.eigh(covariance)
     scale = np.clip(np.sqrt(np.maximum(values, 0)), np.radians(0.7), WIDEST_RAD)
     return ball(4.0, 0.95) * scale @ vectors.T
-
-
-def _replicate(centres: list[Floats], grids: list[Floats], logs: list[Floats], counts: NDArray[np.int64], odds: EvidenceModel) -> Posterior:
-    every = np.concatenate([np.ones((1, counts.shape[1])), counts])
-    mass, frames, ratios = [], [], []
-    for centre, turns, values in zip(centres, grids, logs, strict=True):
-        count_faults, count_turns, count_ratios = values.shape
-        flat = values.reshape(count_faults, -1).astype(np.float32)
-        sums = (every.astype(np.float32) @ flat).reshape(len(every), count_turns, count_ratios)
-        top = sums.max((1, 2), keepdims=True)
-        p = np.exp(sums - top)
-        total = p.sum((1, 2), dtype=float)
-        over_turns = p.sum(2, dtype=float) / total[:, None]
-        frames.append(turned(centre, over_turns @ turns))
-        ratios.append(p.sum(1, dtype=float) / total[:, None])
-        cell = np.ptp(turns, axis=0).prod() / len(turns)  # grids of two modes may differ in fineness
-        mass.append(top[:, 0, 0].astype(float) + np.log(total * cell))
-    best = np.argmax(np.stack(mass), axis=0)
-    pick = np.arange(len(every))
-    chosen = np.stack(frames)[best, pick]
-    at = int(best[0])
-    nearest = int(np.argmin((grids[at] ** 2).sum(-1)))
-    return Posterior(chosen[0], chosen[1:], np.stack(ratios)[best, pick][1:], FINE_RATIOS, counts, logs[at][:, nearest].mean(-1), odds)
-
-
-def cones_deg(frame: Floats, frames: Floats, confidence: float = 0.95) -> tuple[float, float, float]:
-    """Return for each axis the half-angle, degrees, of the cone that holds the stated share of the replicates."""
-    angles = axial_angle_deg(frames, frame[None])
-    return tuple(float(v) for v in np.quantile(angles, confidence, axis=0))  # type: ignore[return-value]

@@ -7,8 +7,8 @@ from numpy.typing import NDArray
 
 from structviz.stress.classify import kinds, shmax_deg
 from structviz.stress.conjugate import Pairs
-from structviz.stress.joint import Posterior, cones_deg
 from structviz.stress.regime import Regime, ShapeRatio
+from structviz.stress.replicates import Posterior, cones_deg
 
 Floats = NDArray[np.float64]
 

@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 from structviz.kinematics.senses import Sector, describe_rake
 from structviz.orientation.planes import strike_vectors
 from structviz.orientation.vectors import dot
-from structviz.stress.joint import Posterior
+from structviz.stress.replicates import Posterior
 from structviz.stress.tensor import reduced_tensor, slip_tendency
 
 Floats = NDArray[np.float64]

@@ -44,7 +44,7 @@ def random_model(
     faults: int = 24,
     conjugate: int = 16,
     scatter_deg: float = 6.0,
-    scatter_per_axis: bool = True,
+    scatter_per_axis: bool = False,
     planted: int = 4,
     tilt_deg: float = 5.0,
     triangles: int = 300,

@@ -5,9 +5,10 @@ import pytest
 
 from structviz.orientation.vectors import axial_angle_deg, rotation
 from structviz.stress.evidence import EvidenceModel
-from structviz.stress.frames import all_frames
-from structviz.stress.joint import COARSE_RATIOS, Posterior, Terms, bootstrap_counts, cones_deg, infer, log_likelihood, survey
+from structviz.stress.frames import all_frames, ball, turned
+from structviz.stress.joint import COARSE_RATIOS, FINE_RATIOS, Terms, infer, log_likelihood, survey
 from structviz.stress.readings import regime_of_frames, shape_ratio_of
+from structviz.stress.replicates import Posterior, bootstrap_counts, cones_deg, estimates
 from tests.stress.planes import conjugate_normals, evidence_of, labels_of
 
 
@@ -62,11 +63,20 @@ def test_a_bootstrap_replicate_is_the_answer_of_the_faults_drawn(strike_slip_axe
     planes = conjugate_normals(strike_slip_axes, 16, 5.0, np.random.default_rng(2))
     words = labels_of(strike_slip_axes, 0.5, planes)
     counts = bootstrap_counts(16, 4, 7)
-    fast = infer(evidence_of(planes, words), EvidenceModel(), Terms(), counts)
-    for drawn, frame in zip(counts, fast.frames, strict=True):
+    first = solve(planes, words)
+    grid = turned(first.frame, ball(np.radians(20), np.radians(2.0)))
+    values = log_likelihood(evidence_of(planes, words), grid, FINE_RATIOS, first.odds, Terms()).astype(np.float32)
+    _, fast, _ = estimates(grid, values, FINE_RATIOS, counts.astype(np.float32))
+    for drawn, frame in zip(counts, fast, strict=True):
         rows = np.repeat(np.arange(16), drawn)
-        slow = infer(evidence_of(planes[rows], [words[row] for row in rows]), fast.odds, Terms(), np.ones((1, 16), int))
+        slow = solve(planes[rows], [words[row] for row in rows])
         assert worst_deg(frame, slow.frame) < 0.5
+
+
+def test_two_faults_do_not_think_themselves_sure(strike_slip_axes):
+    planes = conjugate_normals(strike_slip_axes, 2, 0.0, np.random.default_rng(0))
+    pair = solve(planes, labels_of(strike_slip_axes, 0.5, planes), replicates=300)
+    assert max(cones_deg(pair.frame, pair.frames)) > 15
 
 
 def test_faults_add_up_and_chunks_do_not_matter(strike_slip_axes):

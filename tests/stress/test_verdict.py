@@ -8,7 +8,8 @@ from structviz.kinematics.senses import sector_of_words
 from structviz.kinematics.slip import resolved_slip
 from structviz.orientation.planes import normals, rakes_deg
 from structviz.stress.evidence import EvidenceModel
-from structviz.stress.joint import Posterior, Terms, bootstrap_counts, infer
+from structviz.stress.joint import Terms, infer
+from structviz.stress.replicates import Posterior, bootstrap_counts
 from structviz.stress.tensor import reduced_tensor
 from structviz.stress.verdict import VerdictLimits, judge, likely_causes, mean_rake_deg, predict, replicates_without, weighted_quantile
 from tests.stress.planes import conjugate_normals, evidence_of, labels_of
