@@ -1,0 +1,54 @@
+"""What a format is: how a file is known, read and written, and what the format cannot hold."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from structviz.surfaces.surface import Floats, Integers, Surface
+
+CellData = Mapping[str, NDArray]
+
+# What a format may be unable to store; the round-trip test and the table of formats read the same words.
+NAMES, SEVERAL, CELL_ARRAYS, FLOAT64, SHARED_VERTICES = "names", "several surfaces", "cell arrays", "float64", "shared vertices"
+
+
+@dataclass(frozen=True, eq=False)
+class Piece:
+    """One surface as a file holds it, in the file's own units; `aside` says why it is used only when it is named."""
+
+    name: str  # "" where the file gives none
+    vertices: Floats  # (V, 3)
+    triangles: Integers  # (T, 3) rows of vertices
+    history: tuple[str, ...] = ()  # what reading did to it, in words
+    aside: str = ""
+
+
+@dataclass(frozen=True)
+class Format:
+    """One file format. Reading and writing work on bytes, so that a file is opened, hashed and parsed once."""
+
+    key: str
+    title: str
+    suffixes: tuple[str, ...]  # lower case, with the dot
+    sniff: Callable[[bytes], bool]  # True where the whole content looks like this format
+    read: Callable[[bytes, str], tuple[Piece, ...]]  # (content, file named in messages)
+    write: Callable[[Surface, CellData], bytes] | None
+    cannot_store: tuple[str, ...] = ()
+
+
+def start_of(content: bytes, length: int = 512) -> bytes:
+    """Return the first bytes without a byte-order mark and leading blanks, for sniffing."""
+    return content[:length].removeprefix(b"\xef\xbb\xbf").lstrip()
+
+
+def encoded(values: NDArray) -> tuple[NDArray, tuple[str, ...]]:
+    """Return a numeric array and its legend: words become their rank in the sorted legend; numbers pass with an empty legend."""
+    array = np.asarray(values)
+    if array.dtype.kind in "OUS":
+        legend, codes = np.unique(array.astype(str), return_inverse=True)
+        return codes.reshape(array.shape).astype(np.int32), tuple(str(word) for word in legend)
+    return (array.astype(np.uint8) if array.dtype.kind == "b" else array), ()

@@ -1,0 +1,115 @@
+"""STL, text (each named solid is one surface) and binary.
+
+Corners are kept as read: triangles of a soup share no vertices, and measuring joins them. A binary file is known by its length,
+80 + 4 + 50 bytes a triangle, because many begin with the word `solid` all the same.
+"""
+
+from __future__ import annotations
+
+import re
+
+import numpy as np
+from numpy.typing import NDArray
+
+from structviz.errors import FormatError, SurfaceError
+from structviz.io.format import CELL_ARRAYS, SEVERAL, SHARED_VERTICES, CellData, Format, Piece, start_of
+from structviz.io.text import EXPORT_AGAIN, floats, text_of
+from structviz.surfaces.surface import Surface
+
+FACET = np.dtype([("normal", "<f4", 3), ("corners", "<f4", (3, 3)), ("extra", "<u2")])
+HEADER = 84
+
+
+def promised(content: bytes) -> int:
+    """Return the number of triangles a binary file would hold by its header, or -1 where it is too short to have one."""
+    return int.from_bytes(content[80:84], "little") if len(content) >= HEADER else -1
+
+
+def is_text(content: bytes) -> bool:
+    """Return True for STL text: it begins with `solid`, has facets or is closed, and its length is not that of a binary file."""
+    if len(content) == HEADER + FACET.itemsize * promised(content) and promised(content) > 0:
+        return False
+    begins = start_of(content, 512)[:5].lower() == b"solid"
+    return begins and b"\0" not in content[:HEADER] and re.search(rb"\b(facet|endsolid)\b", content[:4096].lower()) is not None
+
+
+def is_binary(content: bytes) -> bool:
+    """Return True where the length is that of a binary STL file."""
+    return promised(content) > 0 and len(content) == HEADER + FACET.itemsize * promised(content)
+
+
+def sniff(content: bytes) -> bool:
+    """Return True for STL text and for binary content of the right length."""
+    return is_text(content) or is_binary(content)
+
+
+def read(content: bytes, file: str) -> tuple[Piece, ...]:
+    """Return the surfaces of an STL file: one for each solid of a text file, one of a binary file."""
+    return read_text(content, file) if is_text(content) else read_binary(content, file)
+
+
+def read_text(content: bytes, file: str) -> tuple[Piece, ...]:
+    """Return one surface for each solid that holds a facet."""
+    text = text_of(content, file)
+    marks = list(re.finditer(r"^[ \t]*solid\b[ \t]*(.*)$", text, re.MULTILINE | re.IGNORECASE))
+    ends = [mark.start() for mark in marks[1:]] + [len(text)]
+    if not re.search(r"\bendsolid\b", text[ends[-2] if len(ends) > 1 else 0 :], re.IGNORECASE):
+        raise FormatError(file, "a solid that is not closed", "a line 'endsolid' at the end", hint=EXPORT_AGAIN)
+    pieces = [solid(mark.group(1).strip(), text[mark.end() : end], file) for mark, end in zip(marks, ends)]
+    kept = tuple(piece for piece in pieces if len(piece.triangles))
+    if not kept:
+        raise SurfaceError(file, "no facets", "a surface of triangles", hint="export the fault surface itself, then try again")
+    return kept
+
+
+def solid(name: str, body: str, file: str) -> Piece:
+    """Return the surface of one solid."""
+    words = [word for line in re.findall(r"^[ \t]*vertex[ \t]+(.*)$", body, re.MULTILINE | re.IGNORECASE) for word in line.split()]
+    corners = floats(words, "vertices", file)
+    facets = len(re.findall(r"\bendfacet\b", body, re.IGNORECASE))
+    if len(corners) != 9 * facets:
+        raise FormatError(
+            file, f"{len(corners)} coordinates for {facets} facets", f"{9 * facets}, three corners a facet", hint=EXPORT_AGAIN
+        )
+    return soup(name, corners.reshape(-1, 3), ())
+
+
+def read_binary(content: bytes, file: str) -> tuple[Piece, ...]:
+    """Return the one surface of a binary file; FormatError where it is shorter or longer than its header says."""
+    count = promised(content)
+    if count < 0:
+        raise FormatError(file, f"{len(content)} bytes", "STL: a header of 84 bytes, or text that begins with 'solid'", hint=EXPORT_AGAIN)
+    wanted = HEADER + FACET.itemsize * count
+    if len(content) != wanted:
+        raise FormatError(file, f"{len(content):,} bytes", f"{wanted:,} for the {count:,} triangles its header promises", hint=EXPORT_AGAIN)
+    if not count:
+        raise SurfaceError(file, "no triangles", "a surface of triangles", hint="export the fault surface itself, then try again")
+    corners = np.frombuffer(content, FACET, count, HEADER)["corners"].reshape(-1, 3).astype(np.float64)
+    return (soup("", corners, coarse(corners)),)
+
+
+def soup(name: str, corners: NDArray[np.float64], history: tuple[str, ...]) -> Piece:
+    """Return triangles that share no vertices."""
+    return Piece(name, corners, np.arange(len(corners), dtype=np.int64).reshape(-1, 3), history)
+
+
+def coarse(corners: NDArray[np.float64]) -> tuple[str, ...]:
+    """Return words where float32 coordinates are so far from the origin that their steps exceed a hundredth of a unit."""
+    largest = np.abs(corners).max() if np.isfinite(corners).all() else 0.0
+    step = float(np.spacing(np.float32(largest)))
+    return (f"binary STL holds float32: coordinates are stepped by {step:g} this far from the origin",) if step > 0.01 else ()
+
+
+def write(surface: Surface, cell_data: CellData) -> bytes:
+    """Return STL text at full float64 precision (binary STL would step a UTM northing by half a metre)."""
+    corners = np.asarray(surface.vertices, float)[surface.triangles]
+    normal = np.cross(corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0])
+    length = np.linalg.norm(normal, axis=1, keepdims=True)
+    normal = np.divide(normal, length, out=np.zeros_like(normal), where=length > 0)
+    rows = np.concatenate([normal[:, None], corners], axis=1).reshape(-1, 12).tolist()
+    name = " ".join(surface.name.split())
+    facet = "facet normal %r %r %r\nouter loop\nvertex %r %r %r\nvertex %r %r %r\nvertex %r %r %r\nendloop\nendfacet\n"
+    return (f"solid {name}\n" + "".join(facet % tuple(row) for row in rows) + f"endsolid {name}\n").encode()
+
+
+FORMATS = (Format("stl", "STL", (".stl",), sniff, read, write, (SEVERAL, CELL_ARRAYS, SHARED_VERTICES)),)

@@ -1,0 +1,109 @@
+"""What was read in one go: each file once, with its hash, its surfaces, and what was noticed."""
+
+from __future__ import annotations
+
+import difflib
+import hashlib
+import os
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from pathlib import Path
+
+import numpy as np
+
+from structviz.errors import FormatError, InputError, SurfaceError
+from structviz.io.format import Piece
+from structviz.io.registry import format_of, suffixes, table_text
+from structviz.model import Finding, InputFile
+
+Progress = Callable[[str, int, int], None]  # what is being done, how many are done, of how many
+
+
+@dataclass
+class Ledger:
+    """Files read so far under one folder, the surfaces in them, and the findings."""
+
+    folder: Path
+    allow_outside: bool = False
+    inputs: dict[Path, str] = field(default_factory=dict)
+    pieces: dict[Path, tuple[Piece, ...]] = field(default_factory=dict)
+    findings: list[Finding] = field(default_factory=list)
+
+    def shown(self, path: Path) -> str:
+        """Return a path as messages and results show it: relative to the folder, with forward slashes."""
+        return Path(os.path.relpath(path, self.folder)).as_posix()
+
+    def note(self, subject: str, message: str, hint: str = "", severity: str = "note") -> None:
+        """Add a finding of the import."""
+        self.findings.append(Finding("import", severity, subject, message, (), hint))
+
+    def input_files(self) -> tuple[InputFile, ...]:
+        """Return what was read, sorted by path."""
+        return tuple(sorted((InputFile(self.shown(path), digest) for path, digest in self.inputs.items()), key=lambda entry: entry.path))
+
+
+def content_of(ledger: Ledger, path: Path) -> bytes:
+    """Return the bytes of a file and enter its hash; InputError where it cannot be read."""
+    try:
+        content = path.read_bytes()
+    except FileNotFoundError:
+        raise missing(path, ledger.shown(path)) from None
+    except OSError as error:
+        raise InputError(path, f"a file that cannot be read ({error.strerror})", "a readable file", hint="check its permissions") from None
+    ledger.inputs[path] = hashlib.sha256(content).hexdigest()
+    return content
+
+
+def missing(path: Path, shown: str) -> InputError:
+    """Return the error for a file that is not there, with the nearest name in its folder."""
+    there = sorted(entry.name for entry in path.parent.iterdir()) if path.parent.is_dir() else []
+    near = difflib.get_close_matches(path.name, there, n=1, cutoff=0.6)
+    hint = f"did you mean {near[0]!r}?" if near else "check the spelling and the folder"
+    return InputError(shown, "no such file", "an existing file", hint=hint)
+
+
+def pieces_of(ledger: Ledger, path: Path) -> tuple[Piece, ...]:
+    """Return the surfaces of a file, read once and checked; what reading noticed is kept for the findings."""
+    if path not in ledger.pieces:
+        ledger.pieces[path] = read_pieces(content_of(ledger, path), ledger.shown(path))
+    return ledger.pieces[path]
+
+
+def read_pieces(content: bytes, file: str) -> tuple[Piece, ...]:
+    """Return the checked surfaces of a content; FormatError or SurfaceError where it cannot be used."""
+    known, note = format_of(content, file)
+    try:
+        found = known.read(content, file)
+    except MemoryError:
+        hint = "the counts in the file may be damaged: export it again"
+        raise FormatError(file, "more data than there is memory for", "a file that fits into memory", hint=hint) from None
+    for piece in found:
+        check_piece(piece, file)
+    return tuple(Piece(p.name, p.vertices, p.triangles, (*p.history, note), p.aside) for p in found) if note else found
+
+
+def check_piece(piece: Piece, file: str) -> None:
+    """Raise SurfaceError for coordinates that are not finite and for a surface without triangles."""
+    where = f"{file}#{piece.name}" if piece.name else file
+    if not len(piece.triangles):
+        raise SurfaceError(where, "no triangles", "a surface of triangles", hint="export the fault surface itself, then try again")
+    if not np.isfinite(piece.vertices).all():
+        row = int(np.flatnonzero(~np.isfinite(piece.vertices).all(axis=1))[0])
+        values = ", ".join(f"{value:g}" for value in piece.vertices[row])
+        raise SurfaceError(
+            where, f"coordinates ({values}) at vertex {row}", "finite numbers", hint="remove or mend that vertex and export again"
+        )
+
+
+def mesh_files(folder: Path) -> list[Path]:
+    """Return the files of a folder whose suffix a reader knows, sorted by name; InputError where there is none."""
+    known = suffixes()
+    found = sorted(
+        (entry for entry in folder.iterdir() if entry.is_file() and not entry.name.startswith(".")), key=lambda entry: entry.name
+    )
+    meshes = [entry for entry in found if entry.suffix.lower() in known]
+    if not meshes:
+        hint = f"name a folder that holds surfaces in one of these formats, or a model.toml or faults.csv:\n{table_text()}"
+        what = f"{len(found)} files, none of them a mesh" if found else "no files"
+        raise InputError(folder, what, "mesh files, model.toml or faults.csv", hint=hint)
+    return meshes

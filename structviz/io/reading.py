@@ -1,0 +1,224 @@
+"""From a path to a fault model: a model file, a table of faults, a mesh file, or a folder of meshes."""
+
+from __future__ import annotations
+
+from collections import Counter
+from pathlib import Path
+
+import numpy as np
+
+from structviz.errors import InputError, TableError
+from structviz.io.format import Piece
+from structviz.io.ledger import Ledger, Progress, content_of, mesh_files, missing, pieces_of
+from structviz.io.model_file import ModelFile, parsed_model
+from structviz.io.striae import read_striae
+from structviz.io.tables import FAULT_COLUMNS, Row, declared, down_side, read_table
+from structviz.io.units import Frame, surface_m
+from structviz.model import Fault, FaultModel, Horizon
+from structviz.surfaces.surface import Surface
+
+SINGLE = 3  # the same remark about more faults than this is told once, for the model
+
+
+def read_model(path: str | Path, *, allow_outside: bool = False, progress: Progress | None = None) -> FaultModel:
+    """Return the fault model at a path, in metres with up positive.
+
+    `path` is a model file (TOML), a table of faults (CSV), a mesh file, or a folder; a folder with model.toml or faults.csv uses
+    that, any other gives every mesh in it, without senses. Files outside the folder of the model are refused unless `allow_outside`.
+    `progress` is called with what is being done, how many are done, of how many. Raises InputError (FormatError, TableError, SurfaceError).
+    """
+    path = Path(path)
+    if path.is_dir():
+        found = next((path / name for name in ("model.toml", "faults.csv") if (path / name).is_file()), None)
+        if found is None:
+            return model_of_meshes(Ledger(path, allow_outside), mesh_files(path), path.resolve().name, progress)
+        path = found
+    elif not path.exists():
+        raise missing(path, str(path))
+    ledger = Ledger(path.parent, allow_outside)
+    if path.suffix.lower() == ".toml":
+        return model_of_file(ledger, path, parsed_model(content_of(ledger, path), path.name), progress)
+    if path.suffix.lower() == ".csv":
+        striae = "striae.csv" if path.name == "faults.csv" and (path.parent / "striae.csv").is_file() else ""
+        return model_of_file(ledger, path, ModelFile(path.resolve().parent.name, faults=path.name, striae=striae), progress)
+    return model_of_meshes(ledger, [path], path.stem, progress)
+
+
+def read_surfaces(path: str | Path) -> tuple[Surface, ...]:
+    """Return every surface of one mesh file as it stands, in the file's own units; unnamed ones take the name of the file."""
+    path = Path(path)
+    pieces = pieces_of(Ledger(path.parent), path)
+    return tuple(surface_m(Frame(), piece, piece.name or path.stem, source_of(path.name, piece, len(pieces))) for piece in pieces)
+
+
+def source_of(file: str, piece: Piece, count: int) -> str:
+    """Return the file, with the part where the file holds several."""
+    return f"{file}#{piece.name}" if count > 1 and piece.name else file
+
+
+def model_of_meshes(ledger: Ledger, paths: list[Path], title: str, progress: Progress | None) -> FaultModel:
+    """Return a model without senses: one fault for each surface of each file."""
+    found: list[tuple[str, str, Piece, str]] = []
+    for done, path in enumerate(paths):
+        tell(progress, "reading surfaces", done, len(paths))
+        pieces = pieces_of(ledger, path)
+        chosen = without_bounds(ledger, path, pieces)
+        found += [(piece.name or path.stem, path.name, piece, source_of(path.name, piece, len(pieces))) for piece in chosen]
+    tell(progress, "reading surfaces", len(paths), len(paths))
+    names = distinct([(name, file) for name, file, _, _ in found])
+    faults = tuple(Fault(name, surface_m(Frame(), piece, name, source)) for name, (_, _, piece, source) in zip(names, found))
+    ledger.note("model", "no senses are declared: there is no table of faults", "list the faults in a faults.csv with their senses")
+    return finished(ledger, title, "", faults, (), ())
+
+
+def distinct(named: list[tuple[str, str]]) -> list[str]:
+    """Return one distinct name for each (name, file): names that come twice get the file, then a number."""
+    times = Counter(name for name, _ in named)
+    names = [f"{file}:{name}" if times[name] > 1 else name for name, file in named]
+    seen: Counter[str] = Counter()
+    for place, name in enumerate(names):
+        seen[name] += 1
+        names[place] = f"{name} ({seen[name]})" if seen[name] > 1 else name
+    return names
+
+
+def model_of_file(ledger: Ledger, path: Path, model: ModelFile, progress: Progress | None) -> FaultModel:
+    """Return the model that a model file describes."""
+    rows = list(model.fault_rows)
+    if model.faults:
+        rows += fault_rows(ledger, inside(ledger, model.faults, path.name))
+    names = checked_names(rows)
+    faults, total = [], len(rows) + len(model.horizon_rows)
+    for done, (name, row) in enumerate(zip(names, rows)):
+        tell(progress, "reading surfaces", done, total)
+        sector, side, phase = declared(row), down_side(row), row.text("phase")
+        faults.append(Fault(name, named_surface(ledger, row, name, model.frame), sector, phase, side))
+    horizons = []
+    for done, (name, row) in enumerate(zip(checked_names(model.horizon_rows), model.horizon_rows), len(rows)):
+        tell(progress, "reading surfaces", done, total)
+        horizons.append(Horizon(name, named_surface(ledger, row, name, model.frame)))
+    tell(progress, "reading surfaces", total, total)
+    striae, told = (), ()
+    if model.striae:
+        place = inside(ledger, model.striae, path.name)
+        striae, told = read_striae(content_of(ledger, place), ledger.shown(place), tuple(names), model.frame)
+    for message in told:
+        ledger.note("model", message)
+    return finished(ledger, model.title or path.stem, model.crs, tuple(faults), tuple(horizons), striae)
+
+
+def fault_rows(ledger: Ledger, path: Path) -> list[Row]:
+    """Return the rows of a table of faults; columns that are not known are noted."""
+    table = read_table(content_of(ledger, path), ledger.shown(path), ("name", "surface"), FAULT_COLUMNS)
+    if table.unknown:
+        ledger.note("model", f"{ledger.shown(path)}: columns {', '.join(table.unknown)} are not used")
+    return list(table.rows)
+
+
+def checked_names(rows: list[Row] | tuple[Row, ...]) -> list[str]:
+    """Return the names of rows; TableError where one is empty or comes twice."""
+    seen: dict[str, Row] = {}
+    for row in rows:
+        name = row.text("name")
+        if not name:
+            raise row.error("no name", "a name", "fill in the name")
+        if name in seen:
+            first = seen[name]
+            raise row.error(f"name {name!r}, as in {first.file}, {first.where}", "every name once", "rename one of them")
+        seen[name] = row
+    return list(seen)
+
+
+def inside(ledger: Ledger, text: str, named_in: str) -> Path:
+    """Return a path relative to the folder of the model; InputError where it leaves that folder, links followed, and may not."""
+    if "\0" in text:
+        raise TableError(named_in, f"path {text!r}", "a path", hint="correct the path")
+    path = ledger.folder / text
+    if not ledger.allow_outside and not path.resolve().is_relative_to(ledger.folder.resolve()):
+        hint = "move the file into that folder, or allow it with --allow-outside"
+        raise InputError(named_in, f"path {text!r}, which leaves the folder of the model", "a path inside it", hint=hint)
+    return path
+
+
+def located(ledger: Ledger, row: Row) -> tuple[Path, str]:
+    """Return the file of a row's surface and the part after #, "" for the whole file."""
+    text = row.text("surface")
+    if not text:
+        raise row.error("no surface", "the path of a mesh file", "fill in the surface")
+    where = f"{row.file}, {row.where}"
+    path = inside(ledger, text, where)
+    marks = [place for place, letter in enumerate(text) if letter == "#"]
+    if path.is_file() or not marks:
+        return path, ""
+    for mark in marks:
+        if (found := inside(ledger, text[:mark], where)).is_file():
+            return found, text[mark + 1 :]
+    return inside(ledger, text[: marks[0]], where), text[marks[0] + 1 :]
+
+
+def named_surface(ledger: Ledger, row: Row, name: str, frame: Frame) -> Surface:
+    """Return the surface of a row: the part it names, else all of the file as one surface."""
+    path, part = located(ledger, row)
+    pieces = pieces_of(ledger, path)
+    shown = ledger.shown(path)
+    if part:
+        chosen = next((piece for piece in pieces if piece.name == part), None)
+        if chosen is None:
+            parts = [piece.name for piece in pieces if piece.name]
+            listed = ", ".join(repr(known) for known in parts[:10]) + (f" and {len(parts) - 10} more" if len(parts) > 10 else "")
+            raise row.error(f"part {part!r} of {shown}", listed or "a file with named parts", "name one of the parts, or the file alone")
+        return surface_m(frame, chosen, name, source_of(shown, chosen, len(pieces)))
+    used = without_bounds(ledger, path, pieces, name)
+    if len(used) > 1:
+        ledger.note(name, f"{shown} holds {len(used)} named surfaces; together they are used as one", f"name one of them as {shown}#part")
+    return surface_m(frame, merged(used), name, shown)
+
+
+def without_bounds(ledger: Ledger, path: Path, pieces: tuple[Piece, ...], subject: str = "model") -> tuple[Piece, ...]:
+    """Return the pieces that are not set aside, and note those that are; all of them where nothing else is left."""
+    used = tuple(piece for piece in pieces if not piece.aside)
+    if not used:
+        return pieces
+    for aside in dict.fromkeys(piece.aside for piece in pieces if piece.aside):
+        names = ", ".join(piece.name for piece in pieces if piece.aside == aside)
+        shown = ledger.shown(path)
+        ledger.note(
+            subject, f"{shown}: {names} left out: {aside}", f"name a part as {shown}#part in a table of faults to use it all the same"
+        )
+    return used
+
+
+def merged(pieces: tuple[Piece, ...]) -> Piece:
+    """Return several pieces as one."""
+    if len(pieces) == 1:
+        return pieces[0]
+    starts = np.cumsum([0] + [len(piece.vertices) for piece in pieces[:-1]])
+    triangles = np.concatenate([piece.triangles + start for piece, start in zip(pieces, starts)])
+    history = tuple(dict.fromkeys(words for piece in pieces for words in piece.history))
+    return Piece("", np.concatenate([piece.vertices for piece in pieces]), triangles, history)
+
+
+def tell(progress: Progress | None, text: str, done: int, total: int) -> None:
+    """Report progress where someone listens."""
+    if progress is not None:
+        progress(text, done, total)
+
+
+def finished(ledger: Ledger, title: str, crs: str, faults: tuple[Fault, ...], horizons: tuple, striae: tuple) -> FaultModel:
+    """Return the model with its inputs and with what happened to the surfaces as findings."""
+    for message, names in remarks(faults, horizons).items():
+        if len(names) > SINGLE:
+            ledger.note("model", f"{len(names)} surfaces: {message}")
+        else:
+            for name in names:
+                ledger.note(name, message)
+    return FaultModel(title, faults, horizons, striae, crs, ledger.input_files(), tuple(ledger.findings))
+
+
+def remarks(faults: tuple[Fault, ...], horizons: tuple[Horizon, ...]) -> dict[str, list[str]]:
+    """Return the names of the faults and horizons under each remark of their history."""
+    found: dict[str, list[str]] = {}
+    for entry in (*faults, *horizons):
+        for message in entry.surface.history:
+            found.setdefault(message, []).append(entry.name)
+    return found
