@@ -92,8 +92,8 @@ def vertical_unit(examined: Examined, limit: float) -> Iterator[Found]:
     high=45.0,
 )
 def all_flat(examined: Examined, limit: float) -> Iterator[Found]:
-    """Return a warning where even the steepest fault dips less than the limit."""
-    steepest = max((piece.dip_deg for piece in examined.measured), default=90.0)
+    """Return a warning where even the steepest part of any fault dips less than the limit."""
+    steepest = max((part.dip_deg for piece in examined.measured for part in piece.parts), default=90.0)
     if steepest < limit:
         yield Found("model", "warning", f"the steepest fault dips {steepest:.1f} deg", (("steepest_dip_deg", round(steepest, 3)),))
 
