@@ -14,7 +14,7 @@ from structviz.io.model_file import ModelFile, parsed_model
 from structviz.io.striae import read_striae
 from structviz.io.tables import FAULT_COLUMNS, Row, declared, down_side, read_table
 from structviz.io.units import Frame, surface_m
-from structviz.model import Fault, FaultModel, Horizon
+from structviz.model import Fault, FaultModel, Horizon, Stria
 from structviz.surfaces.surface import Surface
 
 SINGLE = 3  # the same remark about more faults than this is told once, for the model
@@ -98,7 +98,8 @@ def model_of_file(ledger: Ledger, path: Path, model: ModelFile, progress: Progre
         tell(progress, "reading surfaces", done, total)
         horizons.append(Horizon(name, named_surface(ledger, row, name, model.frame)))
     tell(progress, "reading surfaces", total, total)
-    striae, told = (), ()
+    striae: tuple[Stria, ...] = ()
+    told: tuple[str, ...] = ()
     if model.striae:
         place = inside(ledger, model.striae, path.name)
         striae, told = read_striae(content_of(ledger, place), ledger.shown(place), tuple(names), model.frame)
@@ -204,7 +205,9 @@ def tell(progress: Progress | None, text: str, done: int, total: int) -> None:
         progress(text, done, total)
 
 
-def finished(ledger: Ledger, title: str, crs: str, faults: tuple[Fault, ...], horizons: tuple, striae: tuple) -> FaultModel:
+def finished(
+    ledger: Ledger, title: str, crs: str, faults: tuple[Fault, ...], horizons: tuple[Horizon, ...], striae: tuple[Stria, ...]
+) -> FaultModel:
     """Return the model with its inputs and with what happened to the surfaces as findings."""
     for message, names in remarks(faults, horizons).items():
         if len(names) > SINGLE:
@@ -218,7 +221,8 @@ def finished(ledger: Ledger, title: str, crs: str, faults: tuple[Fault, ...], ho
 def remarks(faults: tuple[Fault, ...], horizons: tuple[Horizon, ...]) -> dict[str, list[str]]:
     """Return the names of the faults and horizons under each remark of their history."""
     found: dict[str, list[str]] = {}
-    for entry in (*faults, *horizons):
-        for message in entry.surface.history:
-            found.setdefault(message, []).append(entry.name)
+    surfaces = [(fault.name, fault.surface) for fault in faults] + [(horizon.name, horizon.surface) for horizon in horizons]
+    for name, surface in surfaces:
+        for message in surface.history:
+            found.setdefault(message, []).append(name)
     return found

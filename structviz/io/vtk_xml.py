@@ -6,6 +6,7 @@ import base64
 import binascii
 import lzma
 import zlib
+from collections.abc import Callable
 from xml.etree import ElementTree
 
 import numpy as np
@@ -18,7 +19,7 @@ TYPES = {
     "Float32": "f4", "Float64": "f8",
 }  # fmt: skip
 NAME_OF = {code: name for name, code in TYPES.items()}
-UNPACK = {"vtkZLibDataCompressor": zlib.decompressobj, "vtkLZMADataCompressor": lzma.LZMADecompressor}
+UNPACK: dict[str, Callable] = {"vtkZLibDataCompressor": zlib.decompressobj, "vtkLZMADataCompressor": lzma.LZMADecompressor}
 DAMAGED = "the file is damaged or cut short: export it again"
 
 

@@ -90,7 +90,8 @@ def read(content: bytes, file: str) -> tuple[Piece, ...]:
     parent = source.root.find(kind)
     pieces = [] if parent is None else parent.findall("Piece")
     cells_of = polydata_cells if kind == "PolyData" else grid_cells
-    vertices, triangles, history, types, base = [], [], [], [], 0
+    vertices, triangles, types, base = [], [], [], 0
+    history: list[str] = []
     for piece in pieces:
         points = points_of(source, piece)
         ids, ends, kinds = cells_of(source, piece)
@@ -132,21 +133,21 @@ def sniffer(kind: str) -> Callable[[bytes], bool]:
 
 def write_polydata(surface: Surface, cell_data: CellData) -> bytes:
     """Return a VTP file: points float64, one array a triangle for each entry of `cell_data`, the name and legends as field data."""
-    corners, ends = surface.triangles.astype(np.int32), np.arange(3, 3 * len(surface.triangles) + 1, 3, dtype=np.int32)
+    corners, ends = surface.triangles.astype(np.int32).ravel(), np.arange(3, 3 * len(surface.triangles) + 1, 3, dtype=np.int32)
     return written("PolyData", f'NumberOfPolys="{len(ends)}"', "Polys", {"connectivity": corners, "offsets": ends}, surface, cell_data)
 
 
 def write_grid(surface: Surface, cell_data: CellData) -> bytes:
     """Return a VTU file with the same content as the VTP one."""
-    corners, ends = surface.triangles.astype(np.int32), np.arange(3, 3 * len(surface.triangles) + 1, 3, dtype=np.int32)
-    cells = {"connectivity": corners, "offsets": ends, "types": np.full(len(ends), TRIANGLE, np.uint8)}
+    corners, ends = surface.triangles.astype(np.int32).ravel(), np.arange(3, 3 * len(surface.triangles) + 1, 3, dtype=np.int32)
+    cells: dict[str, NDArray] = {"connectivity": corners, "offsets": ends, "types": np.full(len(ends), TRIANGLE, np.uint8)}
     return written("UnstructuredGrid", f'NumberOfCells="{len(ends)}"', "Cells", cells, surface, cell_data)
 
 
 def written(kind: str, count: str, tag: str, cells: dict[str, NDArray], surface: Surface, cell_data: CellData) -> bytes:
     """Return a VTK XML file with its arrays appended raw, little-endian."""
     blocks: list[bytes] = []
-    fields = {"name": (surface.name,)} if surface.name else {}
+    fields: dict[str, tuple[str, ...]] = {"name": (surface.name,)} if surface.name else {}
     data = []
     for name, array in cell_data.items():
         numbers, legend = encoded(array)
