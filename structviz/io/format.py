@@ -38,6 +38,7 @@ class Format:
     read: Callable[[bytes, str], tuple[Piece, ...]]  # (content, file named in messages)
     write: Callable[[Surface, CellData], bytes] | None
     cannot_store: tuple[str, ...] = ()
+    explain: Callable[[bytes], str] = lambda content: ""  # what is wrong with a content of this suffix that no sniff knows
 
 
 def start_of(content: bytes, length: int = 512) -> bytes:

@@ -70,6 +70,8 @@ def parsed(content: bytes, file: str) -> Mesh:
     version, binary = words[0].decode("latin-1") if words else "", words[1:2] == [b"1"]
     if not (version.startswith("2") or version == "4.1"):
         raise FormatError(file, f"MSH version {version or 'unknown'}", "MSH 2.2 or 4.1", hint="save the mesh again as MSH 4.1 or 2.2")
+    if binary and (words[2:3] != [b"8"] or len(words) < 4):
+        raise FormatError(file, "a binary header with another size of numbers than 8", "MSH with numbers of 8 bytes", hint=EXPORT_AGAIN)
     order = "<" if not binary or words[3][:4] == b"\x01\0\0\0" else ">"
     return (version_two if version.startswith("2") else version_four)(content, binary, order, file)
 
@@ -137,6 +139,8 @@ def nodes_two(content: bytes, binary: bool, order: str, file: str) -> tuple[NDAr
     count, rest = first_line(section(content, "Nodes"), "Nodes", file)
     if not binary:
         table = Cursor(rest, False, order, file, "Nodes").take(4 * count, "f8").reshape(-1, 4)
+        if not np.isfinite(table[:, 0]).all():
+            raise FormatError(file, "node numbers that are no numbers", "whole numbers", hint=EXPORT_AGAIN)
         return table[:, 0].astype(np.int64), np.ascontiguousarray(table[:, 1:])
     start = content.find(b"\n", content.find(b"\n", content.find(b"$Nodes")) + 1) + 1
     row = np.dtype([("tag", order + "i4"), ("point", order + "f8", 3)])
@@ -166,7 +170,7 @@ def elements_two_text(counted_body: tuple[int, bytes], order: str, file: str) ->
             ) from None
         if table.shape[1] != 3 + tags + nodes_of(kind, file):
             raise FormatError(file, "an element row of the wrong length", f"{3 + tags + nodes_of(kind, file)} numbers", hint=EXPORT_AGAIN)
-        found.setdefault(kind, []).append((table[:, 3 + tags :], table[:, 3] if tags else np.zeros(len(table), np.int64)))
+        found.setdefault(kind, []).append((table[:, 3 + tags :], np.abs(table[:, 3]) if tags else np.zeros(len(table), np.int64)))
     return found
 
 
@@ -181,7 +185,7 @@ def elements_two_binary(counted_body: tuple[int, bytes], order: str, file: str) 
             raise FormatError(file, f"a block of {many} elements", "one or more", hint=EXPORT_AGAIN)
         width = 1 + tags + nodes_of(kind, file)
         table = take.take(many * width, "i4").reshape(many, width).astype(np.int64)
-        found.setdefault(kind, []).append((table[:, 1 + tags :], table[:, 1] if tags else np.zeros(many, np.int64)))
+        found.setdefault(kind, []).append((table[:, 1 + tags :], np.abs(table[:, 1]) if tags else np.zeros(many, np.int64)))
         count -= many
     return found
 

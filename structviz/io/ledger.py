@@ -48,15 +48,18 @@ def content_of(ledger: Ledger, path: Path) -> bytes:
         content = path.read_bytes()
     except FileNotFoundError:
         raise missing(path, ledger.shown(path)) from None
-    except OSError as error:
-        raise InputError(path, f"a file that cannot be read ({error.strerror})", "a readable file", hint="check its permissions") from None
+    except (OSError, ValueError) as error:
+        found = f"a path that cannot be read ({getattr(error, 'strerror', None) or error})"
+        raise InputError(ledger.shown(path), found, "a readable file", hint="check the path and its permissions") from None
     ledger.inputs[path] = hashlib.sha256(content).hexdigest()
     return content
 
 
 def missing(path: Path, shown: str) -> InputError:
     """Return the error for a file that is not there, with the nearest name in its folder."""
-    there = sorted(entry.name for entry in path.parent.iterdir()) if path.parent.is_dir() else []
+    there = sorted(os.listdir(path.parent)) if os.path.isdir(path.parent) else []
+    if "\\" in shown and os.sep != "\\":
+        return InputError(shown, "no such file", "an existing file", hint="write the path with forward slashes (/)")
     near = difflib.get_close_matches(path.name, there, n=1, cutoff=0.6)
     hint = f"did you mean {near[0]!r}?" if near else "check the spelling and the folder"
     return InputError(shown, "no such file", "an existing file", hint=hint)

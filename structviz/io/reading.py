@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from collections import Counter
 from pathlib import Path
 
@@ -28,12 +29,12 @@ def read_model(path: str | Path, *, allow_outside: bool = False, progress: Progr
     `progress` is called with what is being done, how many are done, of how many. Raises InputError (FormatError, TableError, SurfaceError).
     """
     path = Path(path)
-    if path.is_dir():
+    if os.path.isdir(path):  # unlike Path.is_dir, False for a path no system could hold
         found = next((path / name for name in ("model.toml", "faults.csv") if (path / name).is_file()), None)
         if found is None:
             return model_of_meshes(Ledger(path, allow_outside), mesh_files(path), path.resolve().name, progress)
         path = found
-    elif not path.exists():
+    elif not os.path.exists(path):
         raise missing(path, str(path))
     ledger = Ledger(path.parent, allow_outside)
     if path.suffix.lower() == ".toml":
@@ -105,7 +106,19 @@ def model_of_file(ledger: Ledger, path: Path, model: ModelFile, progress: Progre
         striae, told = read_striae(content_of(ledger, place), ledger.shown(place), tuple(names), model.frame)
     for message in told:
         ledger.note("model", message)
+    note_shared_surfaces(ledger, faults)
     return finished(ledger, model.title or path.stem, model.crs, tuple(faults), tuple(horizons), striae)
+
+
+def note_shared_surfaces(ledger: Ledger, faults: list[Fault]) -> None:
+    """Note faults that use the same surface, which is more often a slip of the pen than meant."""
+    first: dict[str, str] = {}
+    for fault in faults:
+        other = first.setdefault(fault.surface.source, fault.name)
+        if other != fault.name:
+            ledger.note(
+                fault.name, f"uses the same surface as {other}: {fault.surface.source}", "correct the path of one of them", "warning"
+            )
 
 
 def fault_rows(ledger: Ledger, path: Path) -> list[Row]:
@@ -135,7 +148,11 @@ def inside(ledger: Ledger, text: str, named_in: str) -> Path:
     if "\0" in text:
         raise TableError(named_in, f"path {text!r}", "a path", hint="correct the path")
     path = ledger.folder / text
-    if not ledger.allow_outside and not path.resolve().is_relative_to(ledger.folder.resolve()):
+    try:
+        leaves = not path.resolve().is_relative_to(ledger.folder.resolve())
+    except (OSError, RuntimeError):
+        raise InputError(named_in, f"path {text!r}, a link that leads round in a circle", "a path", hint="mend the link") from None
+    if leaves and not ledger.allow_outside:
         hint = "move the file into that folder, or allow it with --allow-outside"
         raise InputError(named_in, f"path {text!r}, which leaves the folder of the model", "a path inside it", hint=hint)
     return path
@@ -149,10 +166,10 @@ def located(ledger: Ledger, row: Row) -> tuple[Path, str]:
     where = f"{row.file}, {row.where}"
     path = inside(ledger, text, where)
     marks = [place for place, letter in enumerate(text) if letter == "#"]
-    if path.is_file() or not marks:
+    if os.path.isfile(path) or not marks:
         return path, ""
     for mark in marks:
-        if (found := inside(ledger, text[:mark], where)).is_file():
+        if os.path.isfile(found := inside(ledger, text[:mark], where)):
             return found, text[mark + 1 :]
     return inside(ledger, text[: marks[0]], where), text[marks[0] + 1 :]
 

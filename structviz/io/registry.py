@@ -52,8 +52,9 @@ def format_of(content: bytes, file: str) -> tuple[Format, str]:
 def unknown(content: bytes, file: str, by_suffix: list[Format]) -> FormatError:
     """Return the error for a content that no format knows; it shows the table of formats."""
     wanted = by_suffix[0].title if by_suffix else "one of the formats below"
+    told = by_suffix[0].explain(content) if by_suffix else ""
     hint = f"export the surface in one of these formats:\n{table_text()}"
-    return FormatError(file, described(content), wanted, hint=hint)
+    return FormatError(file, told or described(content), wanted, hint=hint)
 
 
 BEGINNINGS = (

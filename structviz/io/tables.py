@@ -121,7 +121,7 @@ def number(row: Row, column: str, low: float = -math.inf, high: float = math.inf
     if not text:
         return None
     try:
-        value = float(text)
+        value = float(text.replace("_", "?"))  # float() would take 1_000 for a thousand
     except ValueError:
         hint = "write a number with a decimal point, without unit"
         raise row.error(f"{column} {text!r}", "a number", hint) from None

@@ -57,7 +57,7 @@ def parsed(head: bytes, file: str) -> ElementTree.Element:
         raise FormatError(file, "XML with a document type or entities", "a plain VTK XML file", hint="export the surface again")
     try:
         return ElementTree.fromstring(head)
-    except ElementTree.ParseError as error:
+    except (ElementTree.ParseError, ValueError, LookupError) as error:
         raise FormatError(file, f"XML that breaks off or is not well formed ({error})", "a whole VTK XML file", hint=DAMAGED) from None
 
 

@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from structviz.io.cells import no_triangles, used_only
-from structviz.io.format import CELL_ARRAYS, SEVERAL, CellData, Format, Piece, start_of
+from structviz.io.format import CELL_ARRAYS, CellData, Format, Piece, start_of
 from structviz.io.gmsh import Mesh, parsed
 from structviz.surfaces.surface import Integers, Surface
 
@@ -91,7 +91,7 @@ def write(surface: Surface, cell_data: CellData) -> bytes:
     nodes = "".join(f"{row} {e!r} {n!r} {u!r}\n" for row, (e, n, u) in enumerate(np.asarray(surface.vertices, float).tolist(), 1))
     cells = "".join(f"{row} 2 2 {group} 1 {a} {b} {c}\n" for row, (a, b, c) in enumerate((surface.triangles + 1).tolist(), 1))
     body = f"$Nodes\n{len(surface.vertices)}\n{nodes}$EndNodes\n$Elements\n{len(surface.triangles)}\n{cells}$EndElements\n"
-    return (head + named + body).encode()
+    return (head + named + body).encode(errors="replace")
 
 
-FORMATS = (Format("msh", "Gmsh MSH", (".msh",), sniff, read, write, (SEVERAL, CELL_ARRAYS)),)
+FORMATS = (Format("msh", "Gmsh MSH", (".msh",), sniff, read, write, (CELL_ARRAYS,)),)

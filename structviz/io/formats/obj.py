@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 
 from structviz.errors import FormatError
 from structviz.io.cells import check_indices, counted, fan, no_triangles, used_only
-from structviz.io.format import CELL_ARRAYS, SEVERAL, CellData, Format, Piece, start_of
+from structviz.io.format import CELL_ARRAYS, CellData, Format, Piece, start_of
 from structviz.io.text import EXPORT_AGAIN, integers, points, text_of
 from structviz.surfaces.surface import Integers, Surface
 
@@ -31,7 +31,7 @@ def sniff(content: bytes) -> bool:
 def read(content: bytes, file: str) -> tuple[Piece, ...]:
     """Return one surface for each named object or group, in the order in which they first hold a face."""
     lines = [line.strip() for line in text_of(content, file).replace("\\\n", " ").replace("\t", " ").split("\n")]
-    kind = np.array([line.split(" ", 1)[0] if line else "" for line in lines])
+    kind = np.array([line.split(" ", 1)[0][:8] for line in lines])
     vertices = points([lines[row].split()[1:] for row in np.flatnonzero(kind == "v")], "vertices", file)
     faces = np.flatnonzero(kind == "f")
     if not len(faces):
@@ -91,7 +91,7 @@ def write(surface: Surface, cell_data: CellData) -> bytes:
     head = f"o {name}\n" if name else ""
     vertices = "".join(f"v {east!r} {north!r} {up!r}\n" for east, north, up in np.asarray(surface.vertices, float).tolist())
     faces = "".join(f"f {a} {b} {c}\n" for a, b, c in (surface.triangles + 1).tolist())
-    return (head + vertices + faces).encode()
+    return (head + vertices + faces).encode(errors="replace")
 
 
-FORMATS = (Format("obj", "Wavefront OBJ", (".obj",), sniff, read, write, (SEVERAL, CELL_ARRAYS)),)
+FORMATS = (Format("obj", "Wavefront OBJ", (".obj",), sniff, read, write, (CELL_ARRAYS,)),)

@@ -55,10 +55,16 @@ def header(content: bytes, file: str) -> tuple[str, list[Element], int]:
                 elements.append(Element(last.name, last.count, (*last.properties, entry)))
         except (IndexError, KeyError, ValueError):
             raise FormatError(file, f"header line {' '.join(words)!r}", "a format, element or property of PLY", hint=EXPORT_AGAIN) from None
-    if order is None or any(element.count < 0 for element in elements):
-        raise FormatError(file, "a header without a format line or with a negative count", "a PLY header", hint=EXPORT_AGAIN)
+    if order is None or not all(sound(element) for element in elements):
+        raise FormatError(file, "a header whose format, counts or properties make no sense", "a PLY header", hint=EXPORT_AGAIN)
     line_end = content.find(b"\n", at)
     return order, elements, (line_end if line_end >= 0 else len(content) - 1) + 1
+
+
+def sound(element: Element) -> bool:
+    """Return True where an element has a count of zero or more, each property once, and whole numbers for the lengths of lists."""
+    names = [name for name, _, _ in element.properties]
+    return element.count >= 0 and len(set(names)) == len(names) and not any(counter.startswith("f") for _, _, counter in element.properties)
 
 
 def read(content: bytes, file: str) -> tuple[Piece, ...]:
@@ -176,7 +182,7 @@ def numbers(words: list[bytes], element: Element, file: str) -> NDArray[np.float
 def surface_of(columns: dict[str, dict], file: str) -> Piece:
     """Return the surface of the columns of all elements."""
     vertex = columns.get("vertex", {})
-    if not {"x", "y", "z"} <= set(vertex):
+    if not {"x", "y", "z"} <= {name for name, values in vertex.items() if not isinstance(values, tuple)}:
         raise FormatError(
             file, f"vertex properties {', '.join(vertex) or 'none'}", "x, y and z", hint="export the surface with coordinates"
         )
@@ -204,7 +210,10 @@ def listed(face: dict, file: str) -> tuple[NDArray[np.int64], NDArray[np.int64]]
         return np.zeros(0, np.int64), np.zeros(0, np.int64)
     if not isinstance(face[name], tuple):
         return np.zeros(0, np.int64), np.zeros(0, np.int64)
-    return face[name][0].astype(np.int64), face[name][1].astype(np.int64)
+    values, ends = face[name]
+    if values.dtype.kind == "f" and not (np.isfinite(values) & (values == np.rint(values)) & (np.abs(values) < 2**53)).all():
+        raise FormatError(file, f"{name} that are no whole numbers", "vertex numbers", hint=EXPORT_AGAIN)
+    return values.astype(np.int64), ends.astype(np.int64)
 
 
 def strip_triangles(ids: NDArray[np.int64], ends: NDArray[np.int64]) -> NDArray[np.int64]:
@@ -230,7 +239,7 @@ def write(surface: Surface, cell_data: CellData) -> bytes:
     head = ["ply", "format binary_little_endian 1.0", *comments, f"element vertex {len(surface.vertices)}"]
     head += [f"property double {axis}" for axis in "xyz"]
     head += [f"element face {len(face)}", "property list uchar int vertex_indices", *(f"property double {name}" for name, _ in columns)]
-    text = ("\n".join([*head, "end_header"]) + "\n").encode("utf-8")
+    text = ("\n".join([*head, "end_header"]) + "\n").encode(errors="replace")
     return text + np.ascontiguousarray(surface.vertices, "<f8").tobytes() + face.tobytes()
 
 

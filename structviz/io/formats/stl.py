@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from structviz.errors import FormatError, SurfaceError
-from structviz.io.format import CELL_ARRAYS, SEVERAL, SHARED_VERTICES, CellData, Format, Piece, start_of
+from structviz.io.format import CELL_ARRAYS, SHARED_VERTICES, CellData, Format, Piece, start_of
 from structviz.io.text import EXPORT_AGAIN, floats, text_of
 from structviz.surfaces.surface import Surface
 
@@ -27,7 +27,7 @@ def promised(content: bytes) -> int:
 
 def is_text(content: bytes) -> bool:
     """Return True for STL text: it begins with `solid`, has facets or is closed, and its length is not that of a binary file."""
-    if len(content) == HEADER + FACET.itemsize * promised(content) and promised(content) > 0:
+    if is_binary(content):
         return False
     begins = start_of(content, 512)[:5].lower() == b"solid"
     return begins and b"\0" not in content[:HEADER] and re.search(rb"\b(facet|endsolid)\b", content[:4096].lower()) is not None
@@ -35,12 +35,20 @@ def is_text(content: bytes) -> bool:
 
 def is_binary(content: bytes) -> bool:
     """Return True where the length is that of a binary STL file."""
-    return promised(content) > 0 and len(content) == HEADER + FACET.itemsize * promised(content)
+    return promised(content) >= 0 and len(content) == HEADER + FACET.itemsize * promised(content)
 
 
 def sniff(content: bytes) -> bool:
     """Return True for STL text and for binary content of the right length."""
     return is_text(content) or is_binary(content)
+
+
+def explain(content: bytes) -> str:
+    """Return in words how the length of a binary content differs from what its header promises, "" for text."""
+    if promised(content) < 0 or b"\0" not in content[:HEADER]:
+        return ""
+    wanted = HEADER + FACET.itemsize * promised(content)
+    return f"{len(content):,} bytes, where its header promises {promised(content):,} triangles in {wanted:,}"
 
 
 def read(content: bytes, file: str) -> tuple[Piece, ...]:
@@ -75,13 +83,8 @@ def solid(name: str, body: str, file: str) -> Piece:
 
 
 def read_binary(content: bytes, file: str) -> tuple[Piece, ...]:
-    """Return the one surface of a binary file; FormatError where it is shorter or longer than its header says."""
+    """Return the one surface of a binary file, whose length has been found right."""
     count = promised(content)
-    if count < 0:
-        raise FormatError(file, f"{len(content)} bytes", "STL: a header of 84 bytes, or text that begins with 'solid'", hint=EXPORT_AGAIN)
-    wanted = HEADER + FACET.itemsize * count
-    if len(content) != wanted:
-        raise FormatError(file, f"{len(content):,} bytes", f"{wanted:,} for the {count:,} triangles its header promises", hint=EXPORT_AGAIN)
     if not count:
         raise SurfaceError(file, "no triangles", "a surface of triangles", hint="export the fault surface itself, then try again")
     corners = np.frombuffer(content, FACET, count, HEADER)["corners"].reshape(-1, 3).astype(np.float64)
@@ -109,7 +112,7 @@ def write(surface: Surface, cell_data: CellData) -> bytes:
     rows = np.concatenate([normal[:, None], corners], axis=1).reshape(-1, 12).tolist()
     name = " ".join(surface.name.split())
     facet = "facet normal %r %r %r\nouter loop\nvertex %r %r %r\nvertex %r %r %r\nvertex %r %r %r\nendloop\nendfacet\n"
-    return (f"solid {name}\n" + "".join(facet % tuple(row) for row in rows) + f"endsolid {name}\n").encode()
+    return (f"solid {name}\n" + "".join(facet % tuple(row) for row in rows) + f"endsolid {name}\n").encode(errors="replace")
 
 
-FORMATS = (Format("stl", "STL", (".stl",), sniff, read, write, (SEVERAL, CELL_ARRAYS, SHARED_VERTICES)),)
+FORMATS = (Format("stl", "STL", (".stl",), sniff, read, write, (CELL_ARRAYS, SHARED_VERTICES), explain),)

@@ -34,12 +34,20 @@ def whole_number(piece: ElementTree.Element, key: str, file: str) -> int:
     return int(text)
 
 
+def whole(source: Source, element: ElementTree.Element | None, what: str) -> NDArray[np.int64]:
+    """Return the whole numbers of a DataArray; FormatError where it holds numbers with fractions."""
+    array = values(source, element, what)
+    if array.dtype.kind == "f":
+        raise FormatError(source.file, f"{what} of type {array.dtype}", "whole numbers", hint=DAMAGED)
+    return array.astype(np.int64)
+
+
 def runs(source: Source, parent: ElementTree.Element | None, count: int, what: str) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
     """Return corner numbers and the end of each cell; both empty where there are no cells."""
     if not count:
         return np.zeros(0, np.int64), np.zeros(0, np.int64)
-    ids = values(source, named(parent, "connectivity"), f"{what} corners").astype(np.int64)
-    ends = values(source, named(parent, "offsets"), f"{what} ends").astype(np.int64)
+    ids = whole(source, named(parent, "connectivity"), f"{what} corners")
+    ends = whole(source, named(parent, "offsets"), f"{what} ends")
     if len(ends) != count:
         raise FormatError(
             source.file, f"{counted(len(ends), 'cell end')} for {counted(count, 'cell')} of {what}", "one end a cell", hint=DAMAGED
@@ -77,7 +85,7 @@ def grid_cells(source: Source, piece: ElementTree.Element) -> tuple[NDArray, NDA
     """Return corner numbers, ends and VTK cell types of an UnstructuredGrid piece."""
     count = whole_number(piece, "NumberOfCells", source.file)
     ids, ends = runs(source, piece.find("Cells"), count, "cells")
-    types = values(source, named(piece.find("Cells"), "types"), "cell types") if count else np.zeros(0, np.uint8)
+    types = whole(source, named(piece.find("Cells"), "types"), "cell types") if count else np.zeros(0, np.int64)
     if len(types) != len(ends):
         raise FormatError(source.file, f"{len(types)} cell types", f"{len(ends)}, one a cell", hint=DAMAGED)
     return ids, ends, types
@@ -162,7 +170,7 @@ def written(kind: str, count: str, tag: str, cells: dict[str, NDArray], surface:
         f"<CellData>\n{''.join(data)}</CellData>\n<Points>\n{points}</Points>\n<{tag}>\n{corners}</{tag}>\n"
         f'</Piece>\n</{kind}>\n<AppendedData encoding="raw">\n_'
     )
-    return b"".join([head.encode(), *blocks, b"\n</AppendedData>\n</VTKFile>\n"])
+    return b"".join([head.encode(errors="replace"), *blocks, b"\n</AppendedData>\n</VTKFile>\n"])
 
 
 def appended(name: str, array: NDArray, blocks: list[bytes]) -> str:
@@ -184,7 +192,7 @@ def field_text(fields: dict[str, tuple[str, ...]]) -> str:
         return ""
     arrays = "".join(
         f'<Array type="String" Name={quoted(name)} NumberOfTuples="{len(words)}" format="ascii">\n'
-        f"{' '.join(' '.join(map(str, [*word.replace(chr(0), '').encode(), 0])) for word in words)}\n</Array>\n"
+        f"{' '.join(' '.join(map(str, [*word.replace(chr(0), '').encode(errors='replace'), 0])) for word in words)}\n</Array>\n"
         for name, words in fields.items()
     )
     return f"<FieldData>\n{arrays}</FieldData>\n"
