@@ -5,10 +5,12 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from structviz.orientation.vectors import rotation_vectors_to_matrices
 from structviz.stress.classify import kinds, shmax_deg
 from structviz.stress.conjugate import Pairs
+from structviz.stress.evidence import EvidenceModel
 from structviz.stress.regime import Regime, ShapeRatio
-from structviz.stress.replicates import Posterior, cones_deg
+from structviz.stress.replicates import FEW_FAULTS, Posterior, cones_deg
 
 Floats = NDArray[np.float64]
 
@@ -16,6 +18,7 @@ SEEDS = 48
 HEAVIEST = 3000  # pairs that are heard; the rest weigh next to nothing
 ROUNDS = 12
 KERNEL = np.radians(20.0) ** 2  # squared angle over which a frame counts as near
+PLANE_SCATTER_DEG = EvidenceModel().plane_scatter_deg
 RESOLVED = 0.5  # R is reported where its interval is narrower than this
 
 
@@ -46,6 +49,11 @@ def pair_frames(pairs: Pairs, counts: NDArray[np.int64]) -> tuple[Floats, Floats
         near = weight * _kernel(current @ tensors.T)
         frames = _frames((near @ tensors).reshape(-1, 3, 3))
         current = _deviators(frames)
+    faults = len(np.unique(pairs.faults))
+    if faults < FEW_FAULTS:  # drawing two or three planes again and again says nothing of how well each was drawn
+        own = np.radians(PLANE_SCATTER_DEG) * np.sqrt(2 / faults)
+        turns = np.random.default_rng(faults).normal(0, own, (len(frames) - 1, 3))
+        frames[1:] = rotation_vectors_to_matrices(turns) @ frames[1:]
     return frames[0], frames[1:]
 
 

@@ -22,6 +22,7 @@ Floats = NDArray[np.float64]
 
 MOST_REPLICATES = 100  # for one fault; more change the probability by less than its meaning
 FEWEST_REPLICATES = 10
+LOOSE_RAKE_DEG = 75.0  # a prediction spread wider than this is none
 
 
 @dataclass(frozen=True)
@@ -53,7 +54,7 @@ class VerdictLimits:
 
     conflicting_from: float = 0.9  # probability that the slip is outside the declared sector
     consistent_to: float = 0.2
-    margin_deg: float = 10.0  # beyond the edge of the sector, the median slip of a conflicting fault
+    margin_deg: float = 10.0  # words have no sharp edge: slip this little beyond it is no conflict, and may be consistent
     least_shear: float = 0.15  # in shares of the greatest; below it the direction of slip is anybody's guess
 
 
@@ -127,12 +128,15 @@ def judge(
     tendency = float(shares @ slip_tendency(reduced_tensor(frames[:20], mean_ratio)[:, None], normals[None]).mean(0) / shares.sum())
     shown = (rake, spread, tendency)
     predicted = f"the other faults predict {describe_rake(rake)} slip (rake {rake:.0f} +/- {spread:.0f})"
+    if spread > LOOSE_RAKE_DEG:
+        predicted = f"the other faults leave its slip open (rake {rake:.0f} +/- {spread:.0f})"
     if sector is None:
         return Verdict("undetermined", None, None, *shown, (why_no_sector or "no movement is declared", predicted)), prediction
     off = off_sector_deg(prediction.rakes_deg, sector)
     outside = off > sector.half_width_deg
-    probability, misfit = float(prediction.weights @ outside), weighted_quantile(off, prediction.weights, 0.5)
-    word, reason = _word(prediction, outside, probability, misfit, sector, limits)
+    probability, misfit = min(1.0, float(prediction.weights @ outside)), weighted_quantile(off, prediction.weights, 0.5)
+    clearly = float(prediction.weights @ (off > sector.half_width_deg + limits.margin_deg))
+    word, reason = _word(prediction, outside, probability, clearly, misfit, spread, sector, limits)
     return Verdict(word, probability, misfit, *shown, (reason, predicted) if reason else (predicted,)), prediction
 
 
@@ -142,14 +146,25 @@ def undetermined(reason: str) -> Verdict:
 
 
 def _word(
-    prediction: Prediction, outside: NDArray[np.bool_], probability: float, misfit: float, sector: Sector, limits: VerdictLimits
+    prediction: Prediction,
+    outside: NDArray[np.bool_],
+    probability: float,
+    clearly: float,
+    misfit: float,
+    spread: float,
+    sector: Sector,
+    limits: VerdictLimits,
 ) -> tuple[str, str]:
+    """Return the verdict and its reason, from the probabilities of slip outside the sector and clearly (by the margin) outside it."""
     shear = weighted_quantile(prediction.shear, prediction.weights, 0.5)
     if shear < limits.least_shear:
         return "undetermined", f"too little shear to say which way it slips ({100 * shear:.0f} % of the greatest)"
-    if probability >= limits.conflicting_from and misfit >= sector.half_width_deg + limits.margin_deg:
-        return "conflicting", f"declared {sector.text}, {misfit:.0f} deg from the predicted slip"
-    if probability <= limits.consistent_to:
+    beyond = misfit - sector.half_width_deg
+    if probability >= limits.conflicting_from:
+        if beyond >= limits.margin_deg:
+            return "conflicting", f"declared {sector.text}, {misfit:.0f} deg from the predicted slip"
+        return "undetermined", f"the predicted slip lies only {beyond:.0f} deg outside the declared sector"
+    if clearly <= limits.consistent_to:
         return "consistent", ""
     by_ratio = _by_ratio(prediction, outside)
     if by_ratio.min() < 0.3 and by_ratio.max() > 0.7:
@@ -157,8 +172,8 @@ def _word(
             "undetermined",
             f"R decides: {100 * by_ratio.min():.0f} to {100 * by_ratio.max():.0f} % of slips conflict as R goes over its range",
         )
-    if probability >= limits.conflicting_from:
-        return "undetermined", f"the predicted slip lies only {misfit - sector.half_width_deg:.0f} deg outside the declared sector"
+    if spread > LOOSE_RAKE_DEG:
+        return "undetermined", "the stress of the other faults is too loose to predict its slip"
     return "undetermined", f"the slip is near the edge of the declared sector ({100 * probability:.0f} % outside it)"
 
 

@@ -10,7 +10,7 @@ Integers = NDArray[np.int64]
 
 
 def areas_and_normals(corners: Floats) -> tuple[Floats, Floats]:
-    """Return areas (T,), in the unit of length squared, and unit normals (T, 3) by the winding of corners (T, 3, 3); zero where the area is."""
+    """Return areas (T,) and unit normals (T, 3) by the winding of corners (T, 3, 3), in their unit; zero where the area is zero."""
     vector = np.cross(corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0])
     twice = np.sqrt(np.einsum("tk,tk->t", vector, vector))
     # Below the rounding of its own coordinates a sliver has no normal.

@@ -12,7 +12,7 @@ from structviz.orientation.vectors import axial_angle_deg, unit
 from structviz.surfaces.condition import examine
 from structviz.surfaces.geometry import areas_and_normals, blocks
 from structviz.surfaces.surface import MeasuredSurface, Part, Surface
-from structviz.surfaces.topology import topology
+from structviz.surfaces.topology import Topology, topology
 
 Floats = NDArray[np.float64]
 Integers = NDArray[np.int64]
@@ -43,9 +43,9 @@ def measure(surface: Surface) -> MeasuredSurface:
     joined = topology(surface.vertices, surface.triangles)
     normals[joined.turned] *= -1
     centroids = corners.mean(1)
-    normals = normals * _signs(normals, areas, joined.part_of, joined.parts)[joined.part_of, None]
+    normals = normals * _signs(normals, areas, joined)[joined.sheet_of, None]
     parts = _part_list(normals, areas, joined.part_of, joined.parts)
-    mean = unit(areas @ normals)
+    mean = _mean_normal(normals, areas, branched=joined.sheets > joined.parts or not joined.orientable)
     strike, dip = strike_dip_deg(mean)
     why_not = _why_no_mean(normals, areas, parts)
     return MeasuredSurface(
@@ -71,21 +71,29 @@ def _check(surface: Surface) -> None:
         )
 
 
-def _signs(normals: Floats, areas: Floats, part_of: Integers, parts: int) -> Floats:
-    """Return for each part +1 or -1: the sign that makes its winding point to the hanging wall, shape (parts,)."""
-    sums = np.stack([np.bincount(part_of, areas * normals[:, k], minlength=parts) for k in range(3)], 1)
+def _signs(normals: Floats, areas: Floats, joined: Topology) -> Floats:
+    """Return for each sheet +1 or -1: the sign that makes its winding point to the hanging wall, shape (sheets,)."""
+    sums = np.stack([np.bincount(joined.sheet_of, areas * normals[:, k], minlength=joined.sheets) for k in range(3)], 1)
     mean = unit(sums)
     # A level mean normal belongs to a vertical plane: take the side for which strike lies in [0, 180).
-    south_east = np.where(np.abs(mean[:, 1]) > UPRIGHT, -mean[:, 1], mean[:, 0])
-    deciding = np.where(np.abs(mean[:, 2]) >= UPRIGHT, mean[:, 2], south_east)
+    southward = np.where(np.abs(mean[:, 1]) > UPRIGHT, -mean[:, 1], mean[:, 0])
+    deciding = np.where(np.abs(mean[:, 2]) >= UPRIGHT, mean[:, 2], southward)
     sign = np.where(deciding < 0, -1.0, 1.0)
-    size = np.bincount(part_of, areas, minlength=parts)
-    main = int(size.argmax())
+    main = int(np.bincount(joined.sheet_of, areas, minlength=joined.sheets).argmax())
     steep = np.abs(mean[:, 2]) < np.cos(np.radians(STEEP_DEG))
     if steep[main]:
         agrees = (mean * sign[:, None]) @ (mean[main] * sign[main])
         sign = np.where(steep & (agrees < 0), -sign, sign)
     return sign
+
+
+def _mean_normal(normals: Floats, areas: Floats, *, branched: bool) -> Floats:
+    """Return the unit mean normal (3,): the vector mean, which depends on the rim alone; of branched sheets the axial mean."""
+    vector = areas @ normals
+    if not branched:
+        return unit(vector)
+    axis = np.linalg.eigh(np.einsum("t,tk,tl->kl", areas, normals, normals))[1][:, -1]
+    return axis if axis @ vector >= 0 else -axis
 
 
 def _part_list(normals: Floats, areas: Floats, part_of: Integers, parts: int) -> tuple[Part, ...]:

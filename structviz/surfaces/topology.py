@@ -25,7 +25,9 @@ class Topology:
     edge_uses: Integers  # (E,) triangles at each edge
     part_of: Integers  # (T,) part number, parts numbered by falling count of triangles
     parts: int
-    turned: NDArray[np.bool_]  # (T,) True where the triangle is wound against the rest of its part
+    sheet_of: Integers  # (T,) sheet number: a part falls into sheets where three or more triangles share an edge
+    sheets: int
+    turned: NDArray[np.bool_]  # (T,) True where the triangle is wound against the rest of its sheet
     orientable: bool
 
 
@@ -61,30 +63,35 @@ def topology(vertices: Floats, triangles: Integers) -> Topology:
     uses = np.diff(np.append(at, len(key)))
     edges = np.stack([low[order][at], high[order][at]], 1)
     owner, forward = owner[order], (start < end)[order]
-    links, against = _links(at, uses, owner, forward)
-    part_of, parts = _parts(len(triangles), links)
+    links, against = _neighbours(at, uses, owner, forward)
+    branches = _branches(at, uses, owner)
+    sheet_of, sheets = _numbered(len(triangles), links)
+    part_of, parts = _numbered(len(triangles), np.concatenate([links, branches])) if len(branches) else (sheet_of, sheets)
     turned, orientable = _winding(len(triangles), links, against)
-    return Topology(welded, places, corners, good, edges, uses, part_of, parts, turned, orientable)
+    return Topology(welded, places, corners, good, edges, uses, part_of, parts, sheet_of, sheets, turned, orientable)
 
 
-def _links(at: Integers, uses: Integers, owner: Integers, forward: NDArray[np.bool_]) -> tuple[Integers, NDArray[np.bool_]]:
-    """Return pairs of triangles that share an edge (L, 2), and whether the two are wound against each other.
+def _neighbours(at: Integers, uses: Integers, owner: Integers, forward: NDArray[np.bool_]) -> tuple[Integers, NDArray[np.bool_]]:
+    """Return the pairs of triangles that alone share an edge (L, 2), and whether the two are wound against each other.
 
-    Two neighbours are wound alike when they run along their edge in opposite directions. An edge of three or more triangles
-    joins them into one part, but says nothing about winding unless there is no other way round: its links come last.
+    Two neighbours are wound alike when they run along their edge in opposite directions.
     """
     two = at[uses == 2]
-    pairs = np.stack([owner[two], owner[two + 1]], 1)
-    against = forward[two] == forward[two + 1]
+    return np.stack([owner[two], owner[two + 1]], 1), forward[two] == forward[two + 1]
+
+
+def _branches(at: Integers, uses: Integers, owner: Integers) -> Integers:
+    """Return pairs of triangles that share an edge with yet others (L, 2): they are one part, but their winding is not comparable."""
     many = at[uses > 2]
-    if many.size:
-        rest = np.concatenate([np.stack([np.full(n - 1, a), a + np.arange(1, n)], 1) for a, n in zip(many, uses[uses > 2], strict=True)])
-        pairs = np.concatenate([pairs, np.stack([owner[rest[:, 0]], owner[rest[:, 1]]], 1)])
-        against = np.concatenate([against, forward[rest[:, 0]] == forward[rest[:, 1]]])
-    return pairs, against
+    if not many.size:
+        return np.zeros((0, 2), np.int64)
+    after = np.concatenate([start + np.arange(1, count) for start, count in zip(many, uses[uses > 2], strict=True)])
+    first = np.repeat(many, uses[uses > 2] - 1)
+    return np.stack([owner[first], owner[after]], 1)
 
 
-def _parts(count: int, links: Integers) -> tuple[Integers, int]:
+def _numbered(count: int, links: Integers) -> tuple[Integers, int]:
+    """Return the group of each triangle (T,) joined by links, largest group first, and how many there are."""
     graph = coo_matrix((np.ones(len(links), np.int8), links.T), shape=(count, count))
     parts, label = connected_components(graph, directed=False)
     sizes = np.bincount(label, minlength=parts)
