@@ -39,7 +39,7 @@ def strips(ids: Integers, ends: Integers) -> Integers:
 
 def check_runs(ids: Integers, ends: Integers, file: str) -> None:
     """Raise FormatError unless the ends rise from zero to no more than the number of ids."""
-    if len(ends) and (ends[0] < 0 or (np.diff(ends) < 0).any() or ends[-1] > len(ids)):
+    if len(ends) and (ends.min() < 0 or ends.max() > len(ids) or (np.diff(ends) < 0).any()):
         raise FormatError(
             file, f"cell ends that do not fit {len(ids)} corner numbers", "ends that rise to that number", hint="write the file again"
         )

@@ -139,7 +139,7 @@ def nodes_two(content: bytes, binary: bool, order: str, file: str) -> tuple[NDAr
     count, rest = first_line(section(content, "Nodes"), "Nodes", file)
     if not binary:
         table = Cursor(rest, False, order, file, "Nodes").take(4 * count, "f8").reshape(-1, 4)
-        if not np.isfinite(table[:, 0]).all():
+        if not (np.abs(table[:, 0]) < 2**53).all():
             raise FormatError(file, "node numbers that are no numbers", "whole numbers", hint=EXPORT_AGAIN)
         return table[:, 0].astype(np.int64), np.ascontiguousarray(table[:, 1:])
     start = content.find(b"\n", content.find(b"\n", content.find(b"$Nodes")) + 1) + 1

@@ -76,7 +76,8 @@ def read_pieces(content: bytes, file: str) -> tuple[Piece, ...]:
     """Return the checked surfaces of a content; FormatError or SurfaceError where it cannot be used."""
     known, note = format_of(content, file)
     try:
-        found = known.read(content, file)
+        with np.errstate(all="ignore"):  # numbers of a damaged file; what is not finite or out of range is refused below
+            found = known.read(content, file)
     except MemoryError:
         hint = "the counts in the file may be damaged: export it again"
         raise FormatError(file, "more data than there is memory for", "a file that fits into memory", hint=hint) from None

@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from structviz.errors import FormatError
-from structviz.io.cells import POLYGON, STRIP, TRIANGLE, check_indices, no_triangles, triangles_of_cells
+from structviz.io.cells import POLYGON, STRIP, TRIANGLE, check_indices, check_runs, no_triangles, triangles_of_cells
 from structviz.io.format import CELL_ARRAYS, NAMES, SEVERAL, CellData, Format, Piece, start_of
 from structviz.io.text import EXPORT_AGAIN
 from structviz.surfaces.surface import Floats, Surface
@@ -178,9 +178,8 @@ def surface_of(walk: Walk) -> Piece:
     """Return the surface of what the walk has met."""
     at, ids, ends, types = 0, [np.zeros(0, np.int64)], [np.zeros(0, np.int64)], [np.zeros(0, np.int64)]
     for (corners, closes), kinds in walk.runs:
+        check_runs(corners, closes, walk.file)
         used = int(closes[-1]) if len(closes) else 0
-        if used > len(corners) or (np.diff(closes, prepend=0) < 0).any():
-            raise FormatError(walk.file, "cell ends that do not fit the corners", "ends that rise to their number", hint=EXPORT_AGAIN)
         ids.append(corners[:used])
         ends.append(closes + at)
         types.append(kinds)
