@@ -37,8 +37,9 @@ def no_sense(examined: Examined, limit: float) -> Iterator[Found]:
     total = len(examined.model.faults)
     if len(bare) > limit:
         everyone = len(bare) == total
-        text = f"none of the {many(total, 'fault')} declares" if everyone else f"{len(bare)} of {many(total, 'fault')} declare no movement"
-        text = f"{text} a movement, so nothing can be contradicted" if everyone else f"{text}: {listed(bare)}"
+        verb = "declares" if len(bare) == 1 else "declare"
+        text = f"{len(bare)} of {many(total, 'fault')} {verb} no movement: {listed(bare)}"
+        text = "no fault declares a movement, so nothing can be contradicted" if everyone else text
         yield Found("model", "warning" if everyone else "note", text, (("without_sense", len(bare)), ("faults", total)))
 
 
@@ -205,7 +206,7 @@ def _by_dip(examined: Examined, word: str, beyond: Callable[[float], bool], word
     """Return a note for each fault whose dominant declared word is given and whose dip is beyond what is usual for it."""
     for fault, piece in examined.faults():
         if _dominant(fault) == word and piece.meaningful and beyond(piece.dip_deg):
-            yield Found(fault.name, "note", f"dips {piece.dip_deg:.0f} deg, {words}", (("dip_deg", round(piece.dip_deg, 2)),))
+            yield Found(fault.name, "note", f"dips {piece.dip_deg:.1f} deg, {words}", (("dip_deg", round(piece.dip_deg, 2)),))
 
 
 def _dominant(fault: Fault) -> str:

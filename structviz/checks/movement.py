@@ -6,8 +6,10 @@ from collections import Counter
 from collections.abc import Iterator
 
 from structviz.checks import samples
-from structviz.checks.registry import Evidence, Examined, Found, check
+from structviz.checks.registry import Evidence, Examined, Found, check, listed
+from structviz.kinematics.senses import Sector
 from structviz.model import Fault
+from structviz.orientation.vectors import axial_angle_deg
 from structviz.stress.verdict import Verdict
 
 ROUNDED = 3
@@ -85,6 +87,56 @@ def many_conflicts(examined: Examined, limit: float) -> Iterator[Found]:
             text + _common_cause(wrong),
             (("conflicting", len(wrong)), ("judged", len(judged)), ("share_pct", round(share, 1))),
         )
+
+
+@check(
+    "conflicting-set",
+    title="conflicting faults that form a set of their own",
+    why="faults that strike alike and all contradict the others alike are more likely older than mislabelled one by one",
+    unit="deg",
+    limit=25.0,
+    source="",
+    hint="look for cross-cutting that dates them; if they are older, give them a phase of their own in the model file",
+    passes=lambda: samples.judged(
+        "conflicting", "consistent", "conflicting", "consistent", "conflicting", "consistent", strike_step_deg=0.0
+    ),
+    fails=lambda: samples.judged(*["consistent"] * 5, *["conflicting"] * 3, strike_step_deg=12.0),
+    low=1.0,
+    high=60.0,
+    needs="stress",
+)
+def conflicting_set(examined: Examined, limit: float) -> Iterator[Found]:
+    """Return a note on the largest group of three or more conflicting faults within the limit of one of them and declared alike.
+
+    A group counts only where at least three in four of the judged faults of that orientation conflict; else the label is suspect.
+    """
+    wrong = [k for k, verdict in enumerate(examined.verdicts) if verdict.word == "conflicting"]
+    right = [k for k, verdict in enumerate(examined.verdicts) if verdict.word == "consistent"]
+    groups = []
+    for leader in wrong:
+        declared = examined.model.faults[leader].declared
+        near = [k for k in _near(examined, leader, wrong, limit) if _alike(declared, examined.model.faults[k].declared)]
+        if len(near) >= 3 and len(near) >= 3 * len(_near(examined, leader, right, limit)):
+            groups.append((len(near), sorted(examined.model.faults[k].name for k in near)))
+    if groups:
+        count, names = max(groups, key=lambda group: (group[0], group[1]))
+        text = (
+            f"{listed(names)} conflict, lie within {limit:.0f} deg of each other and are declared alike: a set from another time is likely"
+        )
+        yield Found("model", "note", text, (("faults", count), ("within_deg", limit)))
+
+
+def _near(examined: Examined, leader: int, those: list[int], limit_deg: float) -> list[int]:
+    """Return which of the faults have a mean plane within an angle of the leader's."""
+    normal = examined.measured[leader].normal
+    return [k for k in those if axial_angle_deg(examined.measured[k].normal, normal) <= limit_deg]
+
+
+def _alike(first: Sector | None, second: Sector | None) -> bool:
+    """Return True where two declared movements lie within 45 degrees of each other."""
+    if first is None or second is None:
+        return False
+    return abs((first.rake_deg - second.rake_deg + 180.0) % 360.0 - 180.0) <= 45.0
 
 
 def _judged(examined: Examined) -> Iterator[tuple[Fault, Verdict]]:

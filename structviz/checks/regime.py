@@ -8,7 +8,7 @@ from itertools import combinations
 import numpy as np
 
 from structviz.checks import samples
-from structviz.checks.registry import Examined, Found, check, listed, many
+from structviz.checks.registry import Examined, Found, check, many
 from structviz.kinematics.declared import usable_sector
 from structviz.kinematics.senses import Sector
 from structviz.kinematics.slip import resolved_slip
@@ -41,7 +41,7 @@ MIDDLE_RATIO = 0.5  # R of a reading that leaves it open
 def no_regime(examined: Examined, limit: float) -> Iterator[Found]:
     """Return a warning where there is no regime, with the reasons of the readings that failed."""
     if len(examined.regimes) <= limit:
-        reasons = listed(f"{reading.title}: {reading.why_not}" for reading in examined.readings if reading.why_not)
+        reasons = "; ".join(f"{reading.title}: {reading.why_not}" for reading in examined.readings if reading.why_not)
         text = "no stress could be inferred, so no movement was judged" + (f" ({reasons})" if reasons else "")
         yield Found("model", "warning", text, (("readings", len(examined.readings)),))
 

@@ -139,10 +139,15 @@ def verdict(word: str = "consistent", cause: str = "") -> Verdict:
 
 
 def judged(
-    *words: str, regimes: tuple[Regime, ...] | None = None, readings: tuple[Reading, ...] = (), pairs: Pairs | None = None
+    *words: str,
+    regimes: tuple[Regime, ...] | None = None,
+    readings: tuple[Reading, ...] = (),
+    pairs: Pairs | None = None,
+    strike_step_deg: float = 180.0,
 ) -> Examined:
-    """Return as many normal faults as there are verdict words, alternately dipping east and west, under the regimes given."""
-    pieces = [measured(plane(180.0 * (k % 2), 60.0, (9000.0 * k, 0.0, -3000.0))) for k in range(len(words))]
+    """Return as many normal faults as there are verdict words, each striking a step on from the last, under the regimes given."""
+    strikes = [strike_step_deg * k % 360.0 for k in range(len(words))]
+    pieces = [measured(plane(strike, 60.0, (9000.0 * k, 0.0, -3000.0))) for k, strike in enumerate(strikes)]
     verdicts = tuple(verdict(word, "the label is swapped" if word == "conflicting" else "") for word in words)
     found = (regime(),) if regimes is None else regimes
     return examined(*pieces, readings=readings, regimes=found, verdicts=verdicts, pairs=pairs)

@@ -9,6 +9,7 @@ import pytest
 
 from structviz.checks import CHECKS, Found, run, samples
 from structviz.checks.registry import Examined
+from structviz.kinematics.senses import sector_of_words
 from structviz.orientation.vectors import rotation
 from structviz.stress.regime import Reading, Regime
 from structviz.stress.verdict import Cause
@@ -133,3 +134,20 @@ def test_the_common_cause_is_told_once() -> None:
     verdicts = tuple(replace(v, causes=(c,)) for v, c in zip(known.verdicts, causes)) + known.verdicts[4:]
     (only,) = found("many-conflicts", replace(known, verdicts=verdicts))
     assert only.message.endswith("3 of the 4 share the likely cause dips other way")
+
+
+def test_a_set_that_conflicts_as_one_is_told_apart_from_single_labels() -> None:
+    as_one = samples.judged("conflicting", "conflicting", "conflicting", "consistent", "consistent", strike_step_deg=12.0)
+    (only,) = found("conflicting-set", as_one)
+    assert only.message.startswith("A, B, C conflict, lie within 25 deg of each other")
+    among_others = samples.judged(*["conflicting"] * 3, *["consistent"] * 2, strike_step_deg=1.0)
+    assert not found("conflicting-set", among_others), "two of five in that set agree with the rest: labels, not age"
+    spread = samples.judged(*["conflicting"] * 3, strike_step_deg=60.0)
+    assert not found("conflicting-set", spread)
+
+
+def test_a_set_declared_in_opposite_ways_is_no_set() -> None:
+    known = samples.judged(*["conflicting"] * 3, strike_step_deg=5.0)
+    faults = list(known.model.faults)
+    faults[1] = replace(faults[1], declared=sector_of_words("reverse"))
+    assert not found("conflicting-set", replace(known, model=replace(known.model, faults=tuple(faults))))
