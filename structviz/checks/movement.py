@@ -6,7 +6,7 @@ from collections import Counter
 from collections.abc import Iterator
 
 from structviz.checks import samples
-from structviz.checks.registry import Evidence, Examined, Found, check, listed
+from structviz.checks.registry import Evidence, Examined, Found, check, listed, many
 from structviz.kinematics.senses import Sector
 from structviz.model import Fault
 from structviz.orientation.vectors import axial_angle_deg
@@ -108,7 +108,7 @@ def many_conflicts(examined: Examined, limit: float) -> Iterator[Found]:
 def conflicting_set(examined: Examined, limit: float) -> Iterator[Found]:
     """Return a note on the largest group of three or more conflicting faults within the limit of one of them and declared alike.
 
-    A group counts only where at least three in four of the judged faults of that orientation conflict; else the label is suspect.
+    It is told only where no more than twice as many faults of that orientation agree with the rest; else single labels are suspect.
     """
     wrong = [k for k, verdict in enumerate(examined.verdicts) if verdict.word == "conflicting"]
     right = [k for k, verdict in enumerate(examined.verdicts) if verdict.word == "consistent"]
@@ -116,14 +116,14 @@ def conflicting_set(examined: Examined, limit: float) -> Iterator[Found]:
     for leader in wrong:
         declared = examined.model.faults[leader].declared
         near = [k for k in _near(examined, leader, wrong, limit) if _alike(declared, examined.model.faults[k].declared)]
-        if len(near) >= 3 and len(near) >= 3 * len(_near(examined, leader, right, limit)):
-            groups.append((len(near), sorted(examined.model.faults[k].name for k in near)))
+        agreeing = len(_near(examined, leader, right, limit))
+        if len(near) >= 3 and 2 * len(near) >= agreeing:
+            groups.append((len(near), -agreeing, sorted(examined.model.faults[k].name for k in near)))
     if groups:
-        count, names = max(groups, key=lambda group: (group[0], group[1]))
-        text = (
-            f"{listed(names)} conflict, lie within {limit:.0f} deg of each other and are declared alike: a set from another time is likely"
-        )
-        yield Found("model", "note", text, (("faults", count), ("within_deg", limit)))
+        count, lack, names = max(groups)
+        text = f"{listed(names)} conflict, lie within {limit:.0f} deg of one plane and are declared alike: an older phase could explain all"
+        but = f", though {many(-lack, 'fault')} of that orientation moved with the rest" if lack else ""
+        yield Found("model", "note", text + but, (("conflicting", count), ("agreeing", -lack)))
 
 
 def _near(examined: Examined, leader: int, those: list[int], limit_deg: float) -> list[int]:
