@@ -97,9 +97,7 @@ def many_conflicts(examined: Examined, limit: float) -> Iterator[Found]:
     limit=25.0,
     source="",
     hint="look for cross-cutting that dates them; if they are older, give them a phase of their own in the model file",
-    passes=lambda: samples.judged(
-        "conflicting", "consistent", "conflicting", "consistent", "conflicting", "consistent", strike_step_deg=0.0
-    ),
+    passes=lambda: samples.judged(*["conflicting"] * 3, *["consistent"] * 7, strike_step_deg=1.0),
     fails=lambda: samples.judged(*["consistent"] * 5, *["conflicting"] * 3, strike_step_deg=12.0),
     low=1.0,
     high=60.0,
