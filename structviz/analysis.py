@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Callable, Mapping, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field, fields
 from typing import Any
 
@@ -26,7 +28,7 @@ from structviz.stress.replicates import Posterior, bootstrap_counts
 from structviz.stress.verdict import Verdict, VerdictLimits, judge, likely_causes, undetermined
 from structviz.surfaces.measure import measure
 from structviz.surfaces.proximity import candidate_pairs, nearest_approach
-from structviz.surfaces.stations import sample_points, sample_stations
+from structviz.surfaces.stations import sample_stations
 from structviz.surfaces.surface import MeasuredSurface, Stations
 
 Floats = NDArray[np.float64]
@@ -39,7 +41,6 @@ CAUTIONS = (
     "break it by nature, not by error.",
     "Directions only: the shape ratio R is reported where the data resolve it, stress magnitudes never are.",
 )
-PROXIMITY_SAMPLES = 32
 FACETS = 6  # a curved fault speaks for this many of its stations
 PAIR_REPLICATES = 200
 LOOSEST_CONE_DEG = 55.0  # beyond this on sigma1 and sigma3 both, no regime is claimed
@@ -150,34 +151,40 @@ def run(
 
 def _examine(model: FaultModel, settings: Settings, tell: Progress) -> tuple[_Examination, NDArray[np.int64]]:
     """Return the measured faults by decreasing area, and the place in the model of each."""
-    measured = []
-    for number, fault in enumerate(model.faults):
-        tell("measuring surfaces", number, len(model.faults))
-        measured.append(measure(fault.surface))
+    measured = _for_each(measure, [fault.surface for fault in model.faults], "measuring surfaces", tell)
     keys = [(-float(f"{m.area_m2:.9e}"), *np.round(m.centroids.mean(0), 3)) for m in measured]
     order = np.array(sorted(range(len(keys)), key=keys.__getitem__), dtype=np.int64)
-    stations, sectors, whys = [], [], []
-    for number in order:
-        fault, surface = model.faults[number], measured[number]
-        radius = settings.station_radius * np.sqrt(max(part.area_m2 for part in surface.parts))
-        stations.append(sample_stations(surface, settings.stations, radius))
-        sector, why = usable_sector(fault.declared, fault.down_side, surface.normal, surface.dip_deg)
-        sectors.append(sector)
-        whys.append(why)
-    faults = tuple(model.faults[i] for i in order)
-    return _Examination(faults, tuple(measured[i] for i in order), tuple(stations), tuple(sectors), tuple(whys)), order
+    faults, surfaces = tuple(model.faults[i] for i in order), tuple(measured[i] for i in order)
+    stations = _for_each(lambda surface: _stations(surface, settings), surfaces, "fitting local planes", tell)
+    usable = [usable_sector(f.declared, f.down_side, s.normal, s.dip_deg) for f, s in zip(faults, surfaces, strict=True)]
+    return _Examination(faults, surfaces, tuple(stations), tuple(u[0] for u in usable), tuple(u[1] for u in usable)), order
+
+
+def _stations(surface: MeasuredSurface, settings: Settings) -> Stations:
+    size = float(np.sqrt(max(part.area_m2 for part in surface.parts)))
+    return sample_stations(surface, settings.stations, settings.station_radius * size)
+
+
+def _for_each(work: Callable[[Any], Any], items: Sequence[Any], text: str, tell: Progress) -> list[Any]:
+    """Return work done on each item, in order, on as many threads as there are cores: array code lets go of the interpreter."""
+    done = []
+    with ThreadPoolExecutor(max_workers=min(len(items), os.cpu_count() or 1)) as pool:
+        for number, result in enumerate(pool.map(work, items)):
+            tell(text, number + 1, len(items))
+            done.append(result)
+    return done
 
 
 def _pair(examined: _Examination, settings: Settings) -> tuple[PairSubjects, Pairs, Pairs]:
     """Return what pairing needs of the faults, the pairs by geometry alone, and the pairs weighed by their senses."""
     limits = PairLimits(friction_angle_deg=settings.friction_angle_deg, reach=settings.pair_reach)
-    samples = np.stack([_filled(sample_points(m, PROXIMITY_SAMPLES), PROXIMITY_SAMPLES) for m in examined.measured])
+    most = max(len(s.places) for s in examined.stations)
+    samples = np.stack([_filled(s.places, most) for s in examined.stations])
     origin = samples.mean((0, 1))
     samples = samples - origin
     centres = samples.mean(1)
     sizes = np.sqrt([m.area_m2 for m in examined.measured])
     normals = np.stack([m.normal for m in examined.measured])
-    most = max(len(s.places) for s in examined.stations)
     subjects = PairSubjects(
         normals=normals,
         known=np.array([m.meaningful for m in examined.measured]),
@@ -186,7 +193,7 @@ def _pair(examined: _Examination, settings: Settings) -> tuple[PairSubjects, Pai
         sizes_m=sizes,
         edges=np.stack([sector_edges(n[None], s)[0] for n, s in zip(normals, examined.sectors, strict=True)]),
         phases=[fault.phase for fault in examined.faults],
-        station_places=np.stack([_filled(s.places, most) for s in examined.stations]) - origin,
+        station_places=samples,
         station_normals=np.stack([_filled(s.normals, most) for s in examined.stations]),
     )
     radii = np.sqrt(((samples - centres[:, None]) ** 2).sum(-1).max(1))
@@ -274,11 +281,10 @@ def _posterior_reading(key: str, title: str, posterior: Posterior | None, count:
 
 def _judge_all(examined: _Examination, joint: Posterior | None, settings: Settings, tell: Progress) -> Sequence[Verdict]:
     limits = VerdictLimits(conflicting_from=settings.conflict_probability, least_shear=settings.least_shear)
-    verdicts = []
-    for number, (stations, sector, why) in enumerate(zip(examined.stations, examined.sectors, examined.why_no_sector, strict=True)):
-        tell("judging faults", number, len(examined.faults))
-        verdicts.append(_judge_one(joint, number, stations, sector, why, limits) if joint else undetermined("no stress could be inferred"))
-    return verdicts
+    if joint is None:
+        return [undetermined("no stress could be inferred")] * len(examined.faults)
+    cases = list(enumerate(zip(examined.stations, examined.sectors, examined.why_no_sector, strict=True)))
+    return _for_each(lambda case: _judge_one(joint, case[0], *case[1], limits), cases, "judging faults", tell)
 
 
 def _judge_one(joint: Posterior, number: int, stations: Stations, sector: Sector | None, why: str, limits: VerdictLimits) -> Verdict:

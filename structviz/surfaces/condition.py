@@ -44,6 +44,11 @@ def _repeated(topology: Topology) -> Integers:
     """Return the triangles that stand on the same three places as an earlier one."""
     rows = np.flatnonzero(topology.good)
     corners = np.sort(topology.corners[rows], axis=1)
+    # Most surfaces repeat none: a hash that may collide, but never tells equal triangles apart, spares the full sort.
+    low, middle, high = corners.astype(np.uint64).T
+    mixed = (low * np.uint64(0x9E3779B97F4A7C15) + middle) * np.uint64(0xC2B2AE3D27D4EB4F) + high
+    if (np.diff(np.sort(mixed)) != 0).all():
+        return rows[:0]
     order = np.lexsort(corners.T)
     same = np.zeros(len(rows), bool)
     same[order[1:]] = (corners[order[1:]] == corners[order[:-1]]).all(1)
@@ -72,19 +77,16 @@ def _pinched(topology: Topology) -> int:
     Corners of triangles at one place are joined where their triangles share an edge that ends there; a place whose corners
     fall into more than one chain is pinched. Open fans at rims are one chain and do not count.
     """
-    rows = np.flatnonzero(topology.good)
-    corners = topology.corners[rows]
-    count = 3 * len(rows)
+    corners = topology.corners[topology.good]
+    count = corners.size
     place = corners.ravel()
-    start, end = corners, corners[:, [1, 2, 0]]
-    key = (np.minimum(start, end) * topology.places + np.maximum(start, end)).ravel()
-    at_start = np.arange(count)
-    at_end = np.arange(count).reshape(-1, 3)[:, [1, 2, 0]].ravel()
-    low_corner = np.where((start < end).ravel(), at_start, at_end)
-    high_corner = np.where((start < end).ravel(), at_end, at_start)
-    order = np.argsort(key, kind="stable")
-    meets = key[order][1:] == key[order][:-1]
-    one, two = order[:-1][meets], order[1:][meets]
+    after = np.arange(count).reshape(-1, 3)[:, [1, 2, 0]].ravel()  # corner at the end of the side that begins at each corner
+    rising = place < place[after]
+    low_corner, high_corner = np.where(rising, np.arange(count), after), np.where(rising, after, np.arange(count))
+    meets = np.ones(count, bool)
+    meets[topology.edge_start] = False  # every side but the first of its edge meets the one before it
+    two = np.flatnonzero(meets)
+    one, two = topology.sides[two - 1], topology.sides[two]
     links = np.concatenate([np.stack([low_corner[one], low_corner[two]], 1), np.stack([high_corner[one], high_corner[two]], 1)])
     chains, chain_of = connected_components(coo_matrix((np.ones(len(links), np.int8), links.T), shape=(count, count)), directed=False)
     place_of_chain = np.empty(chains, np.int64)

@@ -10,7 +10,7 @@ from structviz.orientation.planes import strike_dip_deg
 from structviz.orientation.statistics import fisher_mean
 from structviz.orientation.vectors import axial_angle_deg, unit
 from structviz.surfaces.condition import examine
-from structviz.surfaces.geometry import areas_and_normals, blocks
+from structviz.surfaces.geometry import areas_and_normals, panels
 from structviz.surfaces.surface import MeasuredSurface, Part, Surface
 from structviz.surfaces.topology import Topology, topology
 
@@ -22,7 +22,7 @@ STEEP_DEG = 80.0  # parts this steep share the hanging wall of the largest part
 STRAY_SHARE = 0.05  # parts under this share of the area say nothing about the mean
 APART_DEG = 45.0  # parts whose planes differ by more have no meaningful mean
 LEAST_RESULTANT = 0.6  # |sum of area times normal| over area; below, the surface faces every way
-CONE_BLOCKS = 16  # neighbouring triangles repeat each other: the cone counts blocks, not triangles
+CONE_PANELS = 16  # neighbouring triangles repeat each other: the cone counts panels of the surface, not triangles
 
 
 def measure(surface: Surface) -> MeasuredSurface:
@@ -89,10 +89,10 @@ def _signs(normals: Floats, areas: Floats, joined: Topology) -> Floats:
 
 def _mean_normal(normals: Floats, areas: Floats, *, branched: bool) -> Floats:
     """Return the unit mean normal (3,): the vector mean, which depends on the rim alone; of branched sheets the axial mean."""
-    vector = areas @ normals
+    vector = np.einsum("t,tk->k", areas, normals)
     if not branched:
         return unit(vector)
-    axis = np.linalg.eigh(np.einsum("t,tk,tl->kl", areas, normals, normals))[1][:, -1]
+    axis = np.linalg.eigh(np.einsum("t,tk,tl->kl", areas, normals, normals, optimize=True))[1][:, -1]
     return axis if axis @ vector >= 0 else -axis
 
 
@@ -119,15 +119,15 @@ def _why_no_mean(normals: Floats, areas: Floats, parts: tuple[Part, ...]) -> str
                 f"its parts lie {float(axial_angle_deg(np.array(part.normal), np.array(main.normal))):.0f} deg apart "
                 f"(strike/dip {main.strike_deg:03.0f}/{main.dip_deg:02.0f} and {part.strike_deg:03.0f}/{part.dip_deg:02.0f})"
             )
-    resultant = float(np.linalg.norm(areas @ normals) / total)
+    resultant = float(np.linalg.norm(np.einsum("t,tk->k", areas, normals)) / total)
     if resultant < LEAST_RESULTANT:
         return f"it faces every way (mean resultant {resultant:.2f})"
     return ""
 
 
 def _cone_deg(centroids: Floats, normals: Floats, areas: Floats) -> float:
-    """Return the 95 % cone about the mean normal by Fisher's statistics over blocks of equal area, degrees; 0 for one block."""
-    block = blocks(centroids, areas, CONE_BLOCKS)
+    """Return the 95 % cone about the mean normal by Fisher's statistics over panels of equal extent, degrees; 0 for one or two."""
+    block = panels(centroids, areas, CONE_PANELS)
     sums = np.stack([np.bincount(block, areas * normals[:, k]) for k in range(3)], 1)
     filled = np.bincount(block, areas) > 0
     means = unit(sums[filled])
