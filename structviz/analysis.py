@@ -284,7 +284,7 @@ def _judge_all(examined: _Examination, joint: Posterior | None, settings: Settin
     if joint is None:
         return [undetermined("no stress could be inferred")] * len(examined.faults)
     cases = list(enumerate(zip(examined.stations, examined.sectors, examined.why_no_sector, strict=True)))
-    return _for_each(lambda case: _judge_one(joint, case[0], *case[1], limits), cases, "judging faults", tell)
+    return _for_each(lambda case: _judge_one(joint, case[0], case[1][0], case[1][1], case[1][2], limits), cases, "judging faults", tell)
 
 
 def _judge_one(joint: Posterior, number: int, stations: Stations, sector: Sector | None, why: str, limits: VerdictLimits) -> Verdict:

@@ -10,6 +10,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -90,35 +91,37 @@ def gather(
     return FaultEvidence(padded, weight, edges, np.asarray(partnered, float), np.asarray(geometry_known, bool))
 
 
-def geometry_term(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel) -> Floats:
+def geometry_term(evidence: FaultEvidence, frames: NDArray[Any], odds: EvidenceModel) -> Floats:
     """Return the log-likelihood ratio of each fault's orientation against an inherited one, shape (F, G), for frames (G, 3, 3)."""
     inner = np.radians(90.0 - odds.friction_angle_deg) / 2
-    across1 = np.abs(evidence.normals @ frames[:, 0].T)
-    across3 = np.abs(evidence.normals @ frames[:, 2].T)
-    acute = _cap(np.sin(inner) * across1 + np.cos(inner) * across3, odds.plane_scatter_deg)
-    obtuse = _cap(np.cos(inner) * across1 + np.sin(inner) * across3, odds.plane_scatter_deg * odds.obtuse_scatter)
-    new = (odds.new_fault_share * evidence.partnered * evidence.geometry_known)[:, None, None]
+    normals = evidence.normals.astype(frames.dtype)
+    across1 = np.abs(normals @ frames[:, 0].T)
+    across3 = np.abs(normals @ frames[:, 2].T)
+    acute = _cap(float(np.sin(inner)) * across1 + float(np.cos(inner)) * across3, odds.plane_scatter_deg)
+    obtuse = _cap(float(np.cos(inner)) * across1 + float(np.sin(inner)) * across3, odds.plane_scatter_deg * odds.obtuse_scatter)
+    new = (odds.new_fault_share * evidence.partnered * evidence.geometry_known)[:, None, None].astype(frames.dtype)
     ratio = 1 - new + new * ((1 - odds.obtuse_share) * acute + odds.obtuse_share * obtuse)
-    return np.einsum("fm,fmg->fg", evidence.shares, np.log(ratio))
+    return np.einsum("fm,fmg->fg", evidence.shares.astype(frames.dtype), np.log(ratio))
 
 
-def _cap(cosine: Floats, scatter_deg: float) -> Floats:
+def _cap(cosine: NDArray[Any], scatter_deg: float) -> Floats:
     """Return the density of a plane near one of two ideal ones, as a ratio to all orientations being alike (Fisher [fisher1953])."""
-    concentration = 1 / np.radians(scatter_deg) ** 2
+    concentration = float(1 / np.radians(scatter_deg) ** 2)
     return concentration / 2 * np.exp(concentration * (np.minimum(cosine, 1.0) - 1))
 
 
-def sense_term(evidence: FaultEvidence, frames: Floats, shape_ratios: Floats, odds: EvidenceModel) -> Floats:
+def sense_term(evidence: FaultEvidence, frames: NDArray[Any], shape_ratios: Floats, odds: EvidenceModel) -> Floats:
     """Return the log-likelihood of each fault's declared movement, shape (F, G, R), zero where nothing was declared.
 
     With d in the plane the resolved shear of the reduced tensor (1, R, 0) on it is -(n1 d1 + R n2 d2), components on the axes:
-    no square root and no tensor is needed. A fault under little shear pulls little, whichever way it points.
+    no square root and no tensor is needed. A fault under little shear pulls little, whichever way it points. The work is done
+    in the precision of the frames: single is enough for the survey of all of them, and three times as fast.
     """
-    total = np.zeros((len(evidence), len(frames), len(shape_ratios)))
+    total = np.zeros((len(evidence), len(frames), len(shape_ratios)), frames.dtype)
     used = np.flatnonzero(evidence.declared)
     if used.size == 0:
         return total
-    n, d, share = evidence.normals[used], evidence.edges[used], evidence.shares[used]
+    n, d, share = (values[used].astype(frames.dtype) for values in (evidence.normals, evidence.edges, evidence.shares))
     first = n @ frames[:, 0].T, n @ frames[:, 1].T
     for edge in range(d.shape[2]):
         active = (np.abs(d[:, :, edge]).sum(-1) > 0)[..., None]
@@ -127,7 +130,7 @@ def sense_term(evidence: FaultEvidence, frames: Floats, shape_ratios: Floats, od
         pull1 = -first[0] * (d[:, :, edge] @ frames[:, 0].T)
         pull2 = -first[1] * (d[:, :, edge] @ frames[:, 1].T)
         for column, ratio in enumerate(shape_ratios):
-            towards = 2 * (pull1 + ratio * pull2)  # the greatest shear of (1, R, 0) is one half
+            towards = 2 * (pull1 + float(ratio) * pull2)  # the greatest shear of (1, R, 0) is one half
             right = odds.wrong_label_share + (1 - 2 * odds.wrong_label_share) / (1 + np.exp(-towards / odds.shear_softness))
-            total[used, :, column] += np.einsum("fm,fmg->fg", share, np.where(active, np.log(right), 0.0))
+            total[used, :, column] += np.einsum("fm,fmg->fg", share, np.log(right) if active.all() else np.where(active, np.log(right), 0))
     return total

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -35,9 +36,9 @@ class Terms:
     senses: bool = True
 
 
-def log_likelihood(evidence: FaultEvidence, frames: Floats, ratios: Floats, odds: EvidenceModel, terms: Terms) -> Floats:
+def log_likelihood(evidence: FaultEvidence, frames: NDArray[Any], ratios: Floats, odds: EvidenceModel, terms: Terms) -> Floats:
     """Return the log-likelihood of each fault, shape (F, G, R)."""
-    total = np.zeros((len(evidence), len(frames), len(ratios)))
+    total = np.zeros((len(evidence), len(frames), len(ratios)), frames.dtype)
     if terms.geometry:
         total += geometry_term(evidence, frames, odds)[..., None]
     if terms.senses:
@@ -51,10 +52,10 @@ def _part(evidence: FaultEvidence, rows: slice) -> FaultEvidence:
     )
 
 
-def _sums(evidence: FaultEvidence, frames: Floats, term: Callable[[FaultEvidence, Floats], Floats]) -> Floats:
+def _sums(evidence: FaultEvidence, frames: NDArray[Any], term: Callable[[FaultEvidence, NDArray[Any]], NDArray[Any]]) -> Floats:
     """Return a term of the likelihood summed over the faults, taken in chunks so that memory stays bounded."""
     chunks = range(0, len(evidence), CHUNK_FAULTS)
-    return sum((term(_part(evidence, slice(start, start + CHUNK_FAULTS)), frames).sum(0) for start in chunks), np.zeros(1))
+    return sum((term(_part(evidence, slice(start, start + CHUNK_FAULTS)), frames).sum(0, dtype=float) for start in chunks), np.zeros(1))
 
 
 def survey(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel, terms: Terms) -> tuple[Floats, EvidenceModel]:
@@ -63,14 +64,15 @@ def survey(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel, terms: 
     The candidates differ in how tightly new faults cluster, how many stand at the obtuse angle, and how far labels can be
     trusted. Each is weighed by its likelihood averaged over all stresses, so that none wins by fitting one stress alone.
     """
+    single: NDArray[Any] = frames.astype(np.float32)
     geometry: dict[EvidenceModel, Floats] = {odds: np.zeros(1)}
     if terms.geometry:
         shapes = [replace(odds, plane_scatter_deg=s, obtuse_share=o) for s in SCATTERS_DEG for o in OBTUSE_SHARES]
-        geometry = {o: _sums(evidence, frames, lambda e, f, o=o: geometry_term(e, f, o)) for o in shapes}  # type: ignore[misc]
+        geometry = {o: _sums(evidence, single, lambda e, f, o=o: geometry_term(e, f, o)) for o in shapes}  # type: ignore[misc]
     senses: dict[EvidenceModel, Floats] = {odds: np.zeros((1, len(COARSE_RATIOS)))}
     if terms.senses and evidence.declared.any():
         trust = [replace(odds, wrong_label_share=w, shear_softness=s) for w, s in LABEL_TRUST]
-        senses = {o: _sums(evidence, frames, lambda e, f, o=o: sense_term(e, f, COARSE_RATIOS, o)) for o in trust}  # type: ignore[misc]
+        senses = {o: _sums(evidence, single, lambda e, f, o=o: sense_term(e, f, COARSE_RATIOS, o)) for o in trust}  # type: ignore[misc]
     best, best_odds, best_total = -np.inf, odds, np.zeros((len(frames), len(COARSE_RATIOS)))
     for shape, on_axes in geometry.items():
         for label, on_senses in senses.items():
@@ -129,7 +131,8 @@ def infer(evidence: FaultEvidence, odds: EvidenceModel, terms: Terms, counts: ND
     frames = all_frames(COARSE_FRAMES)
     values, odds = survey(evidence, frames, odds, terms)
     over_frames = np.logaddexp.reduce(values, axis=1)
-    grids, logs = [], []
+    grids: list[Floats] = []
+    logs: list[NDArray[np.float32]] = []
     for mode in distinct_modes(frames, over_frames, MODES):
         frame, covariance = centre_and_spread(mode, evidence, odds, terms)
         if not grids and np.sqrt(np.linalg.eigvalsh(covariance)[-1]) > WIDEST_RAD:
@@ -137,13 +140,15 @@ def infer(evidence: FaultEvidence, odds: EvidenceModel, terms: Terms, counts: ND
             return replicate([frames], logs, COARSE_RATIOS, counts, odds, loose=True)
         grid = turned(frame, _fine_turns(covariance))
         grids.append(grid)
-        logs.append(log_likelihood(evidence, grid, FINE_RATIOS, odds, terms).astype(np.float32))
+        logs.append(log_likelihood(evidence, grid.astype(np.float32), FINE_RATIOS, odds, terms).astype(np.float32))
     return replicate(grids, logs, FINE_RATIOS, counts, odds, loose=False)
 
 
 def _in_chunks(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel, terms: Terms) -> NDArray[np.float32]:
     chunks = [_part(evidence, slice(at, at + CHUNK_FAULTS)) for at in range(0, len(evidence), CHUNK_FAULTS)]
-    return np.concatenate([log_likelihood(chunk, frames, COARSE_RATIOS, odds, terms).astype(np.float32) for chunk in chunks])
+    return np.concatenate(
+        [log_likelihood(chunk, frames.astype(np.float32), COARSE_RATIOS, odds, terms).astype(np.float32) for chunk in chunks]
+    )
 
 
 def _fine_turns(covariance: Floats) -> Floats:

@@ -13,6 +13,7 @@ from structviz.stress.evidence import EvidenceModel
 from structviz.stress.frames import turn_between, turned
 
 Floats = NDArray[np.float64]
+Floats32 = NDArray[np.float32]
 
 FEW_FAULTS = (
     8  # with fewer, the bootstrap alone is too sure of itself; with more it covers the truth as it says (tests/benchmarks/accuracy)
@@ -41,7 +42,7 @@ def bootstrap_counts(faults: int, replicates: int, random_state: int) -> NDArray
 
 def replicate(
     grids: Sequence[Floats],
-    logs: Sequence[NDArray[np.float32]],
+    logs: Sequence[Floats32],
     ratio_grid: Floats,
     counts: NDArray[np.int64],
     odds: EvidenceModel,
@@ -55,7 +56,9 @@ def replicate(
     """
     every = np.concatenate([np.ones((1, counts.shape[1])), counts]).astype(np.float32)
     chunks = [every[at : at + CHUNK_REPLICATES] for at in range(0, len(every), CHUNK_REPLICATES)]
-    mass, axes, shares = [], [], []
+    mass: list[Floats] = []
+    axes: list[Floats] = []
+    shares: list[Floats] = []
     for grid, values in zip(grids, logs, strict=True):
         found = [estimates(grid, values, ratio_grid, rows) for rows in chunks]
         for collected, column in zip((mass, axes, shares), zip(*found, strict=True), strict=True):
@@ -70,7 +73,7 @@ def replicate(
     return Posterior(frames[0], frames[1:], ratios[1:], ratio_grid, counts, logs[at][:, nearest].mean(-1), odds, loose)
 
 
-def estimates(grid: Floats, values: NDArray[np.float32], ratio_grid: Floats, rows: NDArray[np.float32]) -> tuple[Floats, Floats, Floats]:
+def estimates(grid: Floats, values: Floats32, ratio_grid: Floats, rows: Floats32) -> tuple[Floats, Floats, Floats]:
     """Return the log of the mass (B,), the mean frame (B, 3, 3) and the share of each shape ratio (B, R) for rows of counts."""
     sums = (rows @ values.reshape(len(values), -1)).reshape(len(rows), len(grid), -1)
     top = sums.max((1, 2), keepdims=True)
@@ -91,7 +94,7 @@ def _volume(grid: Floats) -> float:
     return float(np.sqrt(max(np.linalg.det(np.cov(turns.T)), 1e-300)))
 
 
-def _widened(frame: Floats, frames: Floats, grid: Floats, values: NDArray[np.float32]) -> Floats:
+def _widened(frame: Floats, frames: Floats, grid: Floats, values: Floats32) -> Floats:
     """Return the replicates, spread further where they spread less than the likelihood itself does.
 
     A bootstrap of two or three faults draws the same faults again and again and thinks itself sure; the likelihood knows

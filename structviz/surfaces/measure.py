@@ -131,4 +131,5 @@ def _cone_deg(centroids: Floats, normals: Floats, areas: Floats) -> float:
     sums = np.stack([np.bincount(block, areas * normals[:, k]) for k in range(3)], 1)
     filled = np.bincount(block, areas) > 0
     means = unit(sums[filled])
-    return min(float(fisher_mean(means).alpha95_deg), 180.0) if filled.sum() > 2 else 0.0
+    cone = fisher_mean(means).alpha95_deg if filled.sum() > 2 else 0.0
+    return 180.0 if cone is None else min(float(cone), 180.0)

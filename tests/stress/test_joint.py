@@ -84,7 +84,9 @@ def test_faults_add_up_and_chunks_do_not_matter(strike_slip_axes):
     evidence = evidence_of(planes, labels_of(strike_slip_axes, 0.5, planes))
     frames = all_frames(200)
     values, odds = survey(evidence, frames, EvidenceModel(), Terms())
-    assert np.allclose(values, log_likelihood(evidence, frames, COARSE_RATIOS, odds, Terms()).sum(0), atol=1e-9)
+    assert np.allclose(
+        values, log_likelihood(evidence, frames, COARSE_RATIOS, odds, Terms()).sum(0), atol=1e-3
+    )  # surveyed in single precision
 
 
 def test_few_loose_labels_give_wide_cones_not_false_precision():
