@@ -96,7 +96,7 @@ def many_conflicts(examined: Examined, limit: float) -> Iterator[Found]:
     unit="deg",
     limit=25.0,
     source="",
-    hint="look for cross-cutting that dates them; if they are older, give them a phase of their own in the model file",
+    hint="look for cross-cutting that dates them; older faults are best checked in a model of their own, and left without sense here",
     passes=lambda: samples.judged(*["conflicting"] * 3, *["consistent"] * 7, strike_step_deg=1.0),
     fails=lambda: samples.judged(*["consistent"] * 5, *["conflicting"] * 3, strike_step_deg=12.0),
     low=1.0,

@@ -208,7 +208,7 @@ def shape_ratio_open(examined: Examined, limit: float) -> Iterator[Found]:
     unit="share",
     limit=0.2,
     source="",
-    hint="give the phases in the model file where they are known, so that faults of different age are not paired",
+    hint="name the phases where they are known, so that faults of different age are not paired, and check each phase in a model of its own",
     passes=lambda: samples.judged("consistent"),
     fails=lambda: samples.judged(
         "consistent", regimes=(samples.regime(weight=0.6), samples.regime(_leaning(80.0), "normal", 80.0, weight=0.4))
