@@ -14,6 +14,7 @@ CellData = Mapping[str, NDArray]
 
 # What a format may be unable to store; the round-trip test and the table of formats read the same words.
 NAMES, SEVERAL, CELL_ARRAYS, FLOAT64, SHARED_VERTICES = "names", "several surfaces", "cell arrays", "float64", "shared vertices"
+OWN_LENGTH = "its own length"  # so a file cut short between two rows cannot be told from a whole one
 
 
 @dataclass(frozen=True, eq=False)

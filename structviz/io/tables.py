@@ -84,7 +84,7 @@ def parsed_lines(text: str, file: str) -> Iterable[tuple[int, list[str]]]:
     """Yield the line number and the cells of each line that is not blank."""
     head = text.split("\n", 1)[0]
     delimiter = max(",;\t", key=head.count)
-    reader = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter, strict=True)
+    reader = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter, skipinitialspace=True, strict=True)
     try:
         for cells in reader:
             if any(cell.strip() for cell in cells):
@@ -126,15 +126,15 @@ def number(row: Row, column: str, low: float = -math.inf, high: float = math.inf
         hint = "write a number with a decimal point, without unit"
         raise row.error(f"{column} {text!r}", "a number", hint) from None
     if not math.isfinite(value) or not low <= value <= high:
-        wanted = (
-            f"{low:g} to {high:g}"
-            if math.isfinite(low) and math.isfinite(high)
-            else f"{low:g} or more"
-            if math.isfinite(low)
-            else "a finite number"
-        )
-        raise row.error(f"{column} {text}", wanted, f"correct {column} in that row")
+        raise row.error(f"{column} {text}", span(low, high), f"correct {column} in that row")
     return value
+
+
+def span(low: float, high: float) -> str:
+    """Return a range in words."""
+    if math.isinf(low):
+        return "a finite number"
+    return f"{low:g} or more" if math.isinf(high) else f"{low:g} to {high:g}"
 
 
 def required(row: Row, column: str, low: float = -math.inf, high: float = math.inf) -> float:

@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 
 from structviz.errors import FormatError
 from structviz.io.cells import check_indices, counted, fan, no_triangles, used_only
-from structviz.io.format import CELL_ARRAYS, CellData, Format, Piece, start_of
+from structviz.io.format import CELL_ARRAYS, OWN_LENGTH, CellData, Format, Piece, start_of
 from structviz.io.text import EXPORT_AGAIN, integers, points, text_of
 from structviz.surfaces.surface import Integers, Surface
 
@@ -94,4 +94,4 @@ def write(surface: Surface, cell_data: CellData) -> bytes:
     return (head + vertices + faces).encode(errors="replace")
 
 
-FORMATS = (Format("obj", "Wavefront OBJ", (".obj",), sniff, read, write, (CELL_ARRAYS,)),)
+FORMATS = (Format("obj", "Wavefront OBJ", (".obj",), sniff, read, write, (CELL_ARRAYS, OWN_LENGTH)),)
