@@ -141,9 +141,7 @@ def _fault(result: FaultResult, mesh: str | None) -> Row:
 def _axes(axes: Floats, cones_deg: Sequence[float] = ()) -> Row:
     """Return trend and plunge of each axis, with its cone where there is one."""
     trends, plunges = trend_plunge_deg(axes)
-    rows: Row = {
-        name: {"trend_deg": azimuth(float(trends[k])), "plunge_deg": rounded(float(plunges[k]), 2)} for k, name in enumerate(AXES)
-    }
+    rows: Row = {name: {"trend_deg": azimuth(float(trends[k])), "plunge_deg": rounded(float(plunges[k]), 2)} for k, name in enumerate(AXES)}
     for name, cone in zip(AXES, cones_deg):
         rows[name]["cone_deg"] = rounded(cone, 2)
     return rows

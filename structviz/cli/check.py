@@ -1,0 +1,127 @@
+"""Judge the declared movement of every fault of a model by the stress that all the others tell of.
+
+PATH is a model file (TOML), a table of faults (CSV), a mesh file, or a folder of meshes. The exit code is 0 where nothing
+conflicts, 1 where conflicts were found, 2 where the input or the call cannot be used.
+"""
+
+from __future__ import annotations
+
+import argparse
+import signal
+import sys
+from collections.abc import Iterator
+from contextlib import contextmanager
+from dataclasses import Field, fields
+from types import FrameType
+
+from structviz.analysis import Analysis, Settings
+from structviz.analysis import run as analyse
+from structviz.checks import checked_limits
+from structviz.cli.progress import progress_bar
+from structviz.errors import ArgumentError
+from structviz.io import read_model
+from structviz.report.results_json import results_text
+from structviz.report.summary import show
+from structviz.report.write import Written, checked_target, write_outputs
+
+
+def add_arguments(parser: argparse.ArgumentParser) -> None:
+    """Add the path, what to write, and one option for each setting."""
+    parser.add_argument("path", metavar="PATH", help="model file, table of faults, mesh file, or folder")
+    parser.add_argument("--out", metavar="DIR", help="write results.json, tables, annotated meshes and pictures into this folder")
+    parser.add_argument("--json", action="store_true", help="print results.json instead of the summary")
+    parser.add_argument("--no-pictures", action="store_true", help="leave the pictures out")
+    parser.add_argument("--allow-outside", action="store_true", help="let the model use files outside its own folder")
+    parser.add_argument(
+        "--limit",
+        action="append",
+        default=[],
+        metavar="KEY=VALUE",
+        help="change the limit of a check (repeat as needed); see structviz checks",
+    )
+    group = parser.add_argument_group("settings")
+    for item in fields(Settings):
+        group.add_argument(option(item.name), metavar="N", help=_help(item))
+
+
+def run(args: argparse.Namespace) -> int:
+    """Read, analyse, write and show; return 0 where nothing conflicts, else 1."""
+    settings, limits = _settings(args), _limits(args.limit)
+    if args.out is not None:
+        checked_target(args.out)  # better told now than after the work
+    with _ending_like_an_interrupt(), progress_bar() as progress:
+        model = read_model(args.path, allow_outside=args.allow_outside, progress=progress)
+        analysis = analyse(model, settings, limits=limits, progress=progress)
+        written = None
+        if args.out is not None:
+            written = write_outputs(analysis, args.out, pictures=not args.no_pictures, progress=progress)
+    _show(analysis, written, as_json=args.json)
+    return 1 if analysis.conflicting else 0
+
+
+def option(name: str) -> str:
+    """Return the option of a setting.
+
+    >>> option("friction_angle_deg")
+    '--friction-angle-deg'
+    """
+    return "--" + name.replace("_", "-")
+
+
+def _help(item: Field) -> str:
+    known = item.metadata
+    bounds = f"{known['low']:g} to {known['high']:g} {known['unit']}".rstrip()
+    return f"{known['help']} ({bounds}; default {item.default:g})".replace("%", "%%")
+
+
+def _settings(args: argparse.Namespace) -> Settings:
+    """Return the settings with those given replaced; ArgumentError where a value is no number or out of range."""
+    given = {item.name: (getattr(args, item.name), item) for item in fields(Settings) if getattr(args, item.name) is not None}
+    return Settings(**{name: _number(text, option(name), whole=isinstance(item.default, int)) for name, (text, item) in given.items()})
+
+
+def _limits(given: list[str]) -> dict[str, float]:
+    """Return the limits by key; ArgumentError for a text without =, a value that is no number, an unknown key."""
+    limits: dict[str, float] = {}
+    for text in given:
+        key, found, value = text.partition("=")
+        if not found:
+            raise ArgumentError(f"--limit: found {text!r}; wanted KEY=VALUE", hint="structviz checks lists the keys")
+        limits[key.strip()] = float(_number(value, f"--limit {key.strip()}", whole=False))
+    checked_limits(limits)
+    return limits
+
+
+def _number(text: str, where: str, *, whole: bool) -> float | int:
+    try:
+        return int(text) if whole else float(text)
+    except ValueError:
+        wanted = "a whole number" if whole else "a number"
+        raise ArgumentError(f"{where}: found {text!r}; wanted {wanted}", hint="structviz check --help lists the settings") from None
+
+
+def _show(analysis: Analysis, written: Written | None, *, as_json: bool) -> None:
+    if as_json:
+        sys.stdout.write(results_text(analysis))
+        return
+    from rich.console import Console
+
+    show(Console(highlight=False, markup=False, emoji=False, soft_wrap=False), analysis, written)
+
+
+@contextmanager
+def _ending_like_an_interrupt() -> Iterator[None]:
+    """Let a request to end (SIGTERM) clean up as an interrupt does, where the system allows it."""
+
+    def stop(number: int, frame: FrameType | None) -> None:
+        raise KeyboardInterrupt
+
+    try:
+        before = signal.signal(signal.SIGTERM, stop)
+    except ValueError:  # not in the main thread
+        yield
+        return
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGTERM, before)

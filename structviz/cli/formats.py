@@ -1,0 +1,22 @@
+"""List the file formats that can be read and written, and what each cannot hold."""
+
+from __future__ import annotations
+
+import argparse
+
+from structviz.io import FORMATS
+
+
+def add_arguments(parser: argparse.ArgumentParser) -> None:
+    """Add nothing: the list is all there is."""
+
+
+def run(args: argparse.Namespace) -> int:
+    """Print the table of formats and return 0."""
+    rows = [("format", "suffixes", "", "cannot hold")]
+    rows += [(e.title, " ".join(e.suffixes), "read, write" if e.write else "read", ", ".join(e.cannot_store) or "-") for e in FORMATS]
+    widths = [max(len(row[k]) for row in rows) for k in range(3)]
+    for row in rows:
+        print("  ".join(cell.ljust(width) for cell, width in zip(row, [*widths, 0])).rstrip())
+    print("\nA model is a model file (.toml), a table of faults (.csv), one mesh file, or a folder of these.")
+    return 0

@@ -1,0 +1,273 @@
+"""The summary for the terminal: which regime, how sure, which faults conflict and why; the rest after that.
+
+Names and messages come from users' files: they are laid out as plain text, never as markup, without control characters.
+"""
+
+from __future__ import annotations
+
+from collections import Counter, defaultdict
+from collections.abc import Iterable, Iterator, Sequence
+from typing import TYPE_CHECKING, NamedTuple
+
+from structviz.analysis import Analysis, FaultResult
+from structviz.checks import CHECKS
+from structviz.kinematics.senses import describe_rake
+from structviz.model import Finding
+from structviz.orientation.lines import trend_plunge_deg
+from structviz.report.names import printable
+from structviz.report.write import Written
+from structviz.stress.regime import Regime
+
+if TYPE_CHECKING:
+    from rich.console import Console, RenderableType
+    from rich.table import Table
+
+MOST_CONFLICTS = 12
+MOST_ROWS = 5  # of reasons, findings of the model, kinds of findings
+LEAST_NAME = 16  # columns kept for names on a narrow terminal
+POINTS = ("N", "NNE", "NE", "ENE", "E", "ESE", "SE", "SSE", "S", "SSW", "SW", "WSW", "W", "WNW", "NW", "NNW")
+MARKS = {"error": ("!", "bold red"), "warning": ("!", "yellow"), "note": ("-", "dim")}
+COLOUR = {"conflicting": "bold red", "consistent": "green", "undetermined": "yellow"}
+SHORT_CAUTION = "A screening aid: it tests geometry against declared movement, not stress magnitude, stability or hazard."
+
+
+def show(console: Console, analysis: Analysis, written: Written | None = None) -> None:
+    """Print the summary of an analysis to a rich console, in about 40 lines or fewer."""
+    for block in blocks(analysis, written, console.width):
+        console.print(block, soft_wrap=False)
+
+
+def blocks(analysis: Analysis, written: Written | None, width: int) -> Iterator[RenderableType]:
+    """Return the pieces of the summary in order."""
+    yield from _head(analysis)
+    yield from _readings(analysis)
+    yield from _conflicts(analysis, width)
+    yield from _others(analysis)
+    yield from _findings(analysis)
+    yield _line(("", ""))
+    yield _line((SHORT_CAUTION, "dim italic"))
+    yield from _where(written)
+
+
+def middle_cut(name: str, most: int) -> str:
+    """Return a name with its middle left out where it is longer than `most`: names of one model differ towards the end.
+
+    >>> middle_cut("MJVA-CREC-EMRS-Emerson_fault-CFM5", 20)
+    'MJVA-…son_fault-CFM5'
+    """
+    clean = printable(name)
+    if len(clean) <= most:
+        return clean
+    head = (most - 1) // 4 + 1
+    return f"{clean[:head]}…{clean[len(clean) - (most - 1 - head) :]}"
+
+
+def _line(*pieces: tuple[str, str], indent: int = 0) -> RenderableType:
+    """Return a line of (text, style) pieces that wraps with a hanging indent."""
+    from rich.padding import Padding
+    from rich.text import Text
+
+    return Padding(Text.assemble(*pieces, overflow="fold"), (0, 0, 0, indent))
+
+
+def _heading(text: str, style: str = "bold") -> Iterator[RenderableType]:
+    yield _line(("", ""))
+    yield _line((text, style))
+
+
+def _grid(*columns: tuple[int | None, str]) -> Table:
+    """Return a table without lines, indented by two; each column has a fixed width or None, and left or right alignment."""
+    from rich.table import Table
+
+    table = Table.grid(padding=(0, 2, 0, 0))
+    table.add_column(width=0)
+    for width, side in columns:
+        table.add_column(width=width, justify="right" if side == "right" else "left", overflow="fold", no_wrap=width is not None)
+    return table
+
+
+def _row(table: Table, *cells: str | tuple[str, str]) -> None:
+    from rich.text import Text
+
+    pairs = [(cell, "") if isinstance(cell, str) else cell for cell in cells]
+    table.add_row("", *(Text(text, style=style, overflow="ellipsis") for text, style in pairs))
+
+
+def _count(number: int, one: str) -> str:
+    return f"{number:,} {one}{'' if number == 1 else 's'}"
+
+
+def _head(analysis: Analysis) -> Iterator[RenderableType]:
+    triangles = sum(len(result.measured.areas_m2) for result in analysis.faults)
+    title = printable(analysis.model.title or "untitled", 60)
+    yield _line((title, "bold"), (f"  {_count(len(analysis.faults), 'fault')}, {_count(triangles, 'triangle')}", "dim"))
+    yield _line(("", ""))
+    if not analysis.regimes:
+        yield _line(("No stress could be inferred", "bold yellow"), (": no movement was judged.", ""), indent=2)
+        return
+    for regime in analysis.regimes:
+        share = f"  {100 * regime.weight:.0f} % of the evidence" if len(analysis.regimes) > 1 else ""
+        pieces = ((f"{regime.kind.upper()} stress", "bold cyan"), (f"   SHmax {_shmax(regime)}", "bold"), (share, "dim"))
+        yield _line(*pieces, indent=2)
+        yield _axes(regime)
+        yield _line((_ratio(regime), "dim"), indent=2)
+
+
+def _shmax(regime: Regime) -> str:
+    azimuth = round(regime.shmax_deg) % 180
+    return f"{azimuth:03d} ± {regime.shmax_half_width_deg:.0f}° ({POINTS[round(azimuth / 22.5) % 16]}-{POINTS[(round(azimuth / 22.5) + 8) % 16]})"
+
+
+def _axes(regime: Regime) -> RenderableType:
+    trends, plunges = trend_plunge_deg(regime.axes)
+    shown = [f"sigma{k + 1} {round(float(trends[k])) % 360:03d}/{float(plunges[k]):02.0f} ± {regime.cones_deg[k]:.0f}°" for k in range(3)]
+    return _line(("   ".join(shown), ""), ("   trend/plunge", "dim"), indent=2)
+
+
+def _ratio(regime: Regime) -> str:
+    ratio = regime.shape_ratio
+    if ratio is None:
+        return "R not resolved by the data: every prediction covers its whole range."
+    return f"R = {ratio.value:.2f} ({ratio.low:.2f} to {ratio.high:.2f}), resolved by the data."
+
+
+def _readings(analysis: Analysis) -> Iterator[RenderableType]:
+    told = [reading for reading in analysis.readings if reading.key != "joint"]
+    if not told:
+        return
+    yield from _heading("Three readings of the evidence")
+    table = _grid((21, "left"), (15, "left"), (None, "left"))
+    for reading in told:
+        if reading.regime is None:
+            _row(table, reading.title, ("none", "dim"), (printable(reading.why_not), "dim"))
+        else:
+            carried = _count(reading.count, "fault" if reading.key == "senses" else "pair")
+            _row(table, reading.title, reading.regime.kind, f"SHmax {_shmax(reading.regime)}  from {carried}")
+    yield table
+
+
+def _conflicts(analysis: Analysis, width: int) -> Iterator[RenderableType]:
+    found = sorted(analysis.conflicting, key=lambda r: (-(r.verdict.conflict_probability or 0), -(r.verdict.misfit_deg or 0), r.fault.name))
+    total = len(analysis.faults)
+    if not found:
+        yield from _heading(f"No fault of {total} conflicts with the others", "bold green" if analysis.regimes else "bold")
+        return
+    yield from _heading(
+        f"{len(found)} of {_count(total, 'fault')} conflict{'s' if len(found) == 1 else ''} with the others", COLOUR["conflicting"]
+    )
+    longest = max(len(printable(result.fault.name)) for result in found[:MOST_CONFLICTS])
+    senses = [(_declared(result), _predicted(result)) for result in found[:MOST_CONFLICTS]]
+    wide = [max(len(pair[k]) for pair in [*senses, ("declared", "predicted")]) for k in (0, 1)]
+    name = max(LEAST_NAME, min(longest, width - sum(wide) - 36))
+    table = _grid((name, "left"), (wide[0], "left"), (wide[1], "left"), (5, "right"), (4, "right"), (None, "left"))
+    _row(table, *((text, "dim") for text in ("fault", "declared", "predicted", "prob.", "off", "likely cause")))
+    for result, (declared, predicted) in zip(found, senses):
+        verdict = result.verdict
+        cause = verdict.causes[0].key.replace("_", " ") if verdict.causes else "none found"
+        certain = f"{100 * (verdict.conflict_probability or 0):.0f} %"
+        _row(
+            table,
+            (middle_cut(result.fault.name, name), "bold"),
+            declared,
+            (predicted, "red"),
+            certain,
+            f"{verdict.misfit_deg or 0:.0f}°",
+            cause,
+        )
+    yield table
+    if len(found) > MOST_CONFLICTS:
+        yield _line((f"and {len(found) - MOST_CONFLICTS} more, in faults.csv and results.json (--out DIR)", "dim"), indent=2)
+
+
+def _declared(result: FaultResult) -> str:
+    return result.fault.declared.text if result.fault.declared else "-"
+
+
+def _predicted(result: FaultResult) -> str:
+    rake = result.verdict.predicted_rake_deg
+    return "-" if rake is None else describe_rake(rake)
+
+
+def _others(analysis: Analysis) -> Iterator[RenderableType]:
+    """Return how many are consistent, and why the undetermined ones are."""
+    words = Counter(result.verdict.word for result in analysis.faults)
+    if words["consistent"]:
+        yield _line((f"{words['consistent']} consistent", COLOUR["consistent"]), (" with the others.", ""))
+    groups: dict[str, list[str]] = defaultdict(list)
+    for result in analysis.faults:
+        if result.verdict.word == "undetermined":
+            groups[_group(result)].append(result.fault.name)
+    if not groups:
+        return
+    yield _line((f"{words['undetermined']} undetermined", COLOUR["undetermined"]), (":", ""))
+    ranked = sorted(groups.items(), key=lambda item: (-len(item[1]), item[0]))
+    table = _grid((4, "right"), (None, "left"))
+    for reason, names in ranked[:MOST_ROWS]:
+        _row(table, str(len(names)), f"{reason}: {_listed(names)}" if len(names) < len(analysis.faults) else reason)
+    for rest in [sum(len(names) for _, names in ranked[MOST_ROWS:])]:
+        if rest:
+            _row(table, str(rest), "for other reasons")
+    yield table
+
+
+def _group(result: FaultResult) -> str:
+    """Return the reason for an undetermined verdict without the numbers that differ from fault to fault."""
+    reason = printable(result.verdict.reasons[0]) if result.verdict.reasons else "no reason given"
+    for mark in (" (", ": "):
+        head, found, _ = reason.partition(mark)
+        if found and len(head) > 8:
+            reason = head
+    return " ".join(word for word in reason.split() if not word.isdigit()) if "outside the declared" in reason else reason
+
+
+def _listed(names: Sequence[str], most: int = 3) -> str:
+    shown = ", ".join(middle_cut(name, 24) for name in names[:most])
+    return shown if len(names) <= most else f"{shown} and {len(names) - most} more"
+
+
+def _findings(analysis: Analysis) -> Iterator[RenderableType]:
+    """Return the findings on the whole model one by one, and those on single faults as counts by check."""
+    whole = [finding for finding in analysis.findings if finding.subject == "model" and finding.severity != "note"]
+    rest = [finding for finding in analysis.findings if finding.subject != "model"]
+    notes = sum(finding.subject == "model" and finding.severity == "note" for finding in analysis.findings)
+    if not (whole or rest or notes):
+        return
+    yield from _heading("Findings")
+    table = _grid((1, "left"), (None, "left"))
+    for finding in whole[:MOST_ROWS]:
+        _row(table, MARKS[finding.severity], printable(finding.message))
+    for severity, text in list(_by_check(rest))[:MOST_ROWS]:
+        _row(table, MARKS[severity], text)
+    left = max(0, len(whole) - MOST_ROWS) + max(0, len({finding.check for finding in rest}) - MOST_ROWS)
+    more = [text for text in (_count(left, "more kind") if left else "", _count(notes, "note") + " on the model" if notes else "") if text]
+    if more:
+        _row(table, MARKS["note"], (f"{' and '.join(more)}, in results.json (--out DIR)", "dim"))
+    yield table
+
+
+class _Group(NamedTuple):
+    severity: str
+    text: str
+
+
+def _by_check(findings: Iterable[Finding]) -> Iterator[_Group]:
+    """Return one text a check, worst and most frequent first."""
+    groups: dict[tuple[str, str], list[str]] = defaultdict(list)
+    for finding in findings:
+        groups[(finding.severity, finding.check)].append(finding.subject)
+    order = list(MARKS)
+    for (severity, key), names in sorted(groups.items(), key=lambda item: (order.index(item[0][0]), -len(item[1]), item[0][1])):
+        title = CHECKS[key].title if key in CHECKS else "while reading"
+        yield _Group(severity, f"{title}: {_listed(names, 2) if len(names) < 3 else _count(len(names), 'fault')}")
+
+
+def _where(written: Written | None) -> Iterator[RenderableType]:
+    if written is None:
+        yield _line(("Nothing was written: add --out DIR for tables, annotated meshes and pictures.", "dim"))
+        return
+    meshes = sum(name.startswith("faults/") for name in written.files)
+    plain = [name for name in written.files if not name.startswith("faults/")]
+    inside = f"{', '.join(plain)}, and {meshes:,} mesh{'' if meshes == 1 else 'es'} in faults/"
+    yield _line(("Written to ", ""), (printable(str(written.folder)), "bold"), (f": {inside}", ""))
+    for reason in written.skipped:
+        yield _line((printable(reason), "yellow"))
