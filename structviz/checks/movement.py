@@ -80,7 +80,7 @@ def many_conflicts(examined: Examined, limit: float) -> Iterator[Found]:
     wrong = [verdict for _, verdict in judged if verdict.word == "conflicting"]
     share = 100 * len(wrong) / max(len(judged), 1)
     if len(wrong) >= 3 and share > limit:
-        text = f"{len(wrong)} of {len(judged)} judged faults conflict: labels or surfaces seem to be wrong in one common way"
+        text = f"{len(wrong)} of {len(judged)} judged faults conflict, too many for single slips: look for a cause they share"
         yield Found(
             "model",
             "warning",
@@ -158,6 +158,4 @@ def _common_cause(wrong: list[Verdict]) -> str:
     if not first:
         return ""
     key, count = first.most_common(1)[0]
-    return (
-        f"; {count} of the {len(wrong)} share the likely cause {key.replace('_', ' ').replace('-', ' ')}" if 2 * count > len(wrong) else ""
-    )
+    return f"; first likely cause of {count} of them: {key.replace('_', ' ')}" if 2 * count > len(wrong) else ""

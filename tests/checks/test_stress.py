@@ -133,7 +133,7 @@ def test_the_common_cause_is_told_once() -> None:
     causes = [Cause("dips_other_way", "it dips the other way", 0.9)] * 3 + [Cause("label_swapped", "swapped", 0.8)]
     verdicts = tuple(replace(v, causes=(c,)) for v, c in zip(known.verdicts, causes)) + known.verdicts[4:]
     (only,) = found("many-conflicts", replace(known, verdicts=verdicts))
-    assert only.message.endswith("3 of the 4 share the likely cause dips other way")
+    assert only.message.endswith("first likely cause of 3 of them: dips other way")
 
 
 def test_a_set_that_conflicts_as_one_is_told_apart_from_single_labels() -> None:
