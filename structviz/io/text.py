@@ -19,13 +19,14 @@ def text_of(content: bytes, file: str) -> str:
     return text.replace("\r\n", "\n").replace("\r", "\n") if "\r" in text else text
 
 
-def floats(words: list[str], what: str, file: str) -> NDArray[np.float64]:
+def floats(words: list[str] | list[bytes], what: str, file: str) -> NDArray[np.float64]:
     """Return words as float64; FormatError shows the first that is no number."""
     try:
         return np.array(words, dtype=np.float64)
     except ValueError:
         bad = next(word for word in words if not _is(float, word))
-        raise FormatError(file, f"{bad!r} among {what}", "numbers", hint=EXPORT_AGAIN) from None
+        shown = bad.decode("latin-1") if isinstance(bad, bytes) else bad
+        raise FormatError(file, f"{shown!r} among {what}", "numbers", hint=EXPORT_AGAIN) from None
 
 
 def integers(words: list[str], what: str, file: str) -> NDArray[np.int64]:
@@ -37,7 +38,7 @@ def integers(words: list[str], what: str, file: str) -> NDArray[np.int64]:
         raise FormatError(file, f"{bad!r} among {what}", "whole numbers", hint=EXPORT_AGAIN) from None
 
 
-def _is(kind: type, word: str) -> bool:
+def _is(kind: type, word: str | bytes) -> bool:
     try:
         kind(word)
     except ValueError:

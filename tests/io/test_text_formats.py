@@ -83,6 +83,11 @@ class TestStl:
         assert [(piece.name, len(piece.triangles)) for piece in found] == [("North fault", 1), ("South", 2)]
         assert found[1].vertices[:, 2].tolist() == [2, 2, 2, 3, 3, 3]
 
+    def test_capitals_marks_and_line_ends_do_not_matter(self):
+        text = f"\ufeffSOLID İstanbul\n{FACET.format(1).upper()}ENDSOLID\n".replace("\n", "\r")
+        (piece,) = read_pieces(text.encode(), "a.stl")
+        assert (piece.name, len(piece.triangles)) == ("İstanbul", 1)
+
     def test_text_keeps_float64(self):
         (piece,) = read_pieces(f"solid a\n{FACET.format('4123456.789012345')}endsolid\n".encode(), "a.stl")
         assert piece.vertices[0, 2] == 4123456.789012345
@@ -106,7 +111,10 @@ class TestStl:
             (f"solid a\n{FACET.format(0)}", "a solid that is not closed"),
             ("solid a\nendsolid a\n", "no facets"),
             (f"solid a\n{FACET.format('up')}endsolid\n", "'up' among vertices"),
-            ("solid a\nfacet\nouter loop\nvertex 0 0 0\nvertex 1 0 0\nendloop\nendfacet\nendsolid\n", "6 coordinates for 1 facets"),
+            (
+                "solid a\nfacet normal 0 0 1\nouter loop\nvertex 0 0 0\nvertex 1 0 0\nendloop\nendfacet\nendsolid\n",
+                "facets of another shape among the 1 of solid 'a'",
+            ),
         ],
     )
     def test_bad_text_is_told(self, text, message):

@@ -176,7 +176,7 @@ def text_element(words: list[bytes], at: int, element: Element, file: str) -> tu
 
 def numbers(words: list[bytes], element: Element, file: str) -> NDArray[np.float64]:
     """Return words of a text file as numbers."""
-    return floats([word.decode("latin-1") for word in words], f"the {element.name} rows", file)
+    return floats(words, f"the {element.name} rows", file)
 
 
 def surface_of(columns: dict[str, dict], file: str) -> Piece:

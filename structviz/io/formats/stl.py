@@ -18,6 +18,11 @@ from structviz.surfaces.surface import Surface
 
 FACET = np.dtype([("normal", "<f4", 3), ("corners", "<f4", (3, 3)), ("extra", "<u2")])
 HEADER = 84
+PER_FACET = 21  # words of one facet of a text file; those that are always the same, and where its coordinates stand
+KEYWORDS = {
+    0: b"facet", 1: b"normal", 5: b"outer", 6: b"loop", 7: b"vertex", 11: b"vertex", 15: b"vertex", 19: b"endloop", 20: b"endfacet",
+}  # fmt: skip
+COORDINATES = (8, 9, 10, 12, 13, 14, 16, 17, 18)
 
 
 def promised(content: bytes) -> int:
@@ -58,27 +63,30 @@ def read(content: bytes, file: str) -> tuple[Piece, ...]:
 
 def read_text(content: bytes, file: str) -> tuple[Piece, ...]:
     """Return one surface for each solid that holds a facet."""
-    text = text_of(content, file)
-    marks = list(re.finditer(r"^[ \t]*solid\b[ \t]*(.*)$", text, re.MULTILINE | re.IGNORECASE))
-    ends = [mark.start() for mark in marks[1:]] + [len(text)]
-    if not re.search(r"\bendsolid\b", text[ends[-2] if len(ends) > 1 else 0 :], re.IGNORECASE):
-        raise FormatError(file, "a solid that is not closed", "a line 'endsolid' at the end", hint=EXPORT_AGAIN)
-    pieces = [solid(mark.group(1).strip(), text[mark.end() : end], file) for mark, end in zip(marks, ends)]
+    lowered = content.lower()  # of bytes, so that every place stays where it is
+    starts = [mark.end() for mark in re.finditer(rb"(?:\A(?:\xef\xbb\xbf)?|[\r\n])\s*solid(?!\S)", lowered)]
+    pieces = []
+    for start, following in zip(starts, [*starts[1:], len(content)]):
+        closing = lowered.rfind(b"endsolid", start, following)
+        if closing < 0:
+            raise FormatError(file, "a solid that is not closed", "a line 'endsolid' at the end", hint=EXPORT_AGAIN)
+        name, *body = re.split(rb"[\r\n]", content[start:closing], maxsplit=1)
+        pieces.append(solid(text_of(name, file).strip(), b"".join(body).split(), file))
     kept = tuple(piece for piece in pieces if len(piece.triangles))
     if not kept:
         raise SurfaceError(file, "no facets", "a surface of triangles", hint="export the fault surface itself, then try again")
     return kept
 
 
-def solid(name: str, body: str, file: str) -> Piece:
-    """Return the surface of one solid."""
-    words = [word for line in re.findall(r"^[ \t]*vertex[ \t]+(.*)$", body, re.MULTILINE | re.IGNORECASE) for word in line.split()]
-    corners = floats(words, "vertices", file)
-    facets = len(re.findall(r"\bendfacet\b", body, re.IGNORECASE))
-    if len(corners) != 9 * facets:
-        raise FormatError(
-            file, f"{len(corners)} coordinates for {facets} facets", f"{9 * facets}, three corners a facet", hint=EXPORT_AGAIN
-        )
+def solid(name: str, words: list[bytes], file: str) -> Piece:
+    """Return the surface of the words between the name of a solid and its end."""
+    columns = [words[place::PER_FACET] for place in range(PER_FACET)]
+    fits = len(words) % PER_FACET == 0 and all({w.lower() for w in set(columns[place])} <= {word} for place, word in KEYWORDS.items())
+    if not fits:
+        found = sum(word.lower() == b"facet" for word in words)
+        wanted = "'facet normal', three numbers, 'outer loop', three times 'vertex' and three numbers, 'endloop', 'endfacet'"
+        raise FormatError(file, f"facets of another shape among the {found} of solid {name!r}", wanted, hint=EXPORT_AGAIN)
+    corners = np.stack([floats(columns[place], "vertices", file) for place in COORDINATES], axis=1)
     return soup(name, corners.reshape(-1, 3), ())
 
 
