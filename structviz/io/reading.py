@@ -143,11 +143,14 @@ def checked_names(rows: list[Row] | tuple[Row, ...]) -> list[str]:
     return list(seen)
 
 
-def inside(ledger: Ledger, text: str, named_in: str) -> Path:
-    """Return a path relative to the folder of the model; InputError where it leaves that folder, links followed, and may not."""
+def inside(ledger: Ledger, text: str, named_in: str, base: Path | None = None) -> Path:
+    """Return a path relative to `base`, the folder of the model by default.
+
+    InputError where it leaves the folder of the model, links followed, and may not.
+    """
     if "\0" in text:
         raise TableError(named_in, f"path {text!r}", "a path", hint="correct the path")
-    path = ledger.folder / text
+    path = (ledger.folder if base is None else base) / text
     try:
         leaves = not path.resolve().is_relative_to(ledger.folder.resolve())
     except (OSError, RuntimeError):
@@ -163,15 +166,15 @@ def located(ledger: Ledger, row: Row) -> tuple[Path, str]:
     text = row.text("surface")
     if not text:
         raise row.error("no surface", "the path of a mesh file", "fill in the surface")
-    where = f"{row.file}, {row.where}"
-    path = inside(ledger, text, where)
+    where, base = f"{row.file}, {row.where}", (ledger.folder / row.file).parent  # a table in a subfolder names files beside itself
+    path = inside(ledger, text, where, base)
     marks = [place for place, letter in enumerate(text) if letter == "#"]
     if os.path.isfile(path) or not marks:
         return path, ""
     for mark in marks:
-        if os.path.isfile(found := inside(ledger, text[:mark], where)):
+        if os.path.isfile(found := inside(ledger, text[:mark], where, base)):
             return found, text[mark + 1 :]
-    return inside(ledger, text[: marks[0]], where), text[marks[0] + 1 :]
+    return inside(ledger, text[: marks[0]], where, base), text[marks[0] + 1 :]
 
 
 def named_surface(ledger: Ledger, row: Row, name: str, frame: Frame) -> Surface:

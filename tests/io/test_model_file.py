@@ -216,6 +216,13 @@ class TestModelFile:
         with pytest.raises(TableError, match=r"faults\.csv, row 2: found name 'A', as in model\.toml, fault 1"):
             read_model(toml(folder, 'faults = "faults.csv"\n[[fault]]\nname = "A"\nsurface = "a.off"\n'))
 
+    def test_a_table_in_a_subfolder_names_files_beside_itself(self, folder):
+        (folder / "inner").mkdir()
+        (folder / "inner" / "b.obj").write_text(OBJ)
+        csv(folder / "inner", "name,surface\nA,b.obj#South\nB,../a.off\n")
+        model = read_model(toml(folder, 'faults = "inner/faults.csv"\n'))
+        assert [fault.surface.source for fault in model.faults] == ["inner/b.obj#South", "a.off"]
+
 
 class TestOutside:
     @pytest.mark.parametrize("where", ["../a.off", "deep/../../a.off", "ABSOLUTE", "link.off"])
