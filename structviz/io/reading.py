@@ -180,8 +180,10 @@ def located(ledger: Ledger, row: Row) -> tuple[Path, str]:
 def named_surface(ledger: Ledger, row: Row, name: str, frame: Frame) -> Surface:
     """Return the surface of a row: the part it names, else all of the file as one surface."""
     path, part = located(ledger, row)
-    pieces = pieces_of(ledger, path)
     shown = ledger.shown(path)
+    if not os.path.exists(path):
+        raise missing(path, f"{shown} (named in {row.file}, {row.where})")
+    pieces = pieces_of(ledger, path)
     if part:
         chosen = next((piece for piece in pieces if piece.name == part), None)
         if chosen is None:

@@ -102,12 +102,15 @@ class TestTable:
             ("name,surface,down_side\nA,a.off,NNN\n", r"found down_side 'NNN'; wanted one of N, NNE.*\n  next: did you mean 'N"),
             ("name,surface\nA,a.off,x\n", "row 2: found 3 cells; wanted 2, as in the header"),
             ('name,surface\nA,"a.off\n', "row 2: found a row that cannot be parted"),
-            ("name,surface\nA,b.off\n", r"b\.off: found no such file; wanted an existing file\n  next: did you mean 'a\.off'\?"),
+            (
+                "name,surface\nA,b.off\n",
+                r"b\.off \(named in faults\.csv, row 2\): found no such file; wanted an existing file\n  next: did you mean 'a\.off'\?",
+            ),
             ("name,surface\nA,x\\a.off\n", "write the path with forward slashes"),
             ("name,surface\nA,two.obj#East\n", r"row 2: found part 'East' of two\.obj; wanted 'North', 'South'"),
             ("name,surface\nA,a.off#East\n", "wanted a file with named parts"),
             ("name,surface\nA,.\n", r"\.: found a path that cannot be read \(Is a directory\)"),
-            ("name,surface\nA," + "x" * 5000 + "\n", "a path that cannot be read"),
+            ("name,surface\nA," + "x" * 5000 + "\n", r"x \(named in faults\.csv, row 2\): found no such file"),
         ],
     )
     def test_bad_rows_are_refused_with_file_row_and_next_step(self, folder, text, message):
