@@ -12,6 +12,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from importlib import import_module
 from os import PathLike
+from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from structviz._version import __version__
@@ -120,7 +121,7 @@ def check(
     from structviz.io import read_model
     from structviz.model import FaultModel
 
-    whole = model if isinstance(model, FaultModel) else read_model(model)
+    whole = model if isinstance(model, FaultModel) else read_model(Path(model))
     return run(whole, settings, limits=limits, progress=progress)
 
 

@@ -13,6 +13,7 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import Field, fields
 from types import FrameType
+from typing import Any
 
 from structviz.analysis import Analysis, Settings
 from structviz.analysis import run as analyse
@@ -27,6 +28,7 @@ from structviz.report.write import Written, checked_target, write_outputs
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Add the path, what to write, and one option for each setting."""
+    parser.usage = "structviz check PATH [--out DIR] [options]"
     parser.add_argument("path", metavar="PATH", help="model file, table of faults, mesh file, or folder")
     parser.add_argument("--out", metavar="DIR", help="write results.json, tables, annotated meshes and pictures into this folder")
     parser.add_argument("--json", action="store_true", help="print results.json instead of the summary")
@@ -37,7 +39,7 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
         action="append",
         default=[],
         metavar="KEY=VALUE",
-        help="change the limit of a check (repeat as needed); see structviz checks",
+        help="change the limit of a check (repeatable); structviz checks lists them",
     )
     group = parser.add_argument_group("settings")
     for item in fields(Settings):
@@ -70,14 +72,18 @@ def option(name: str) -> str:
 
 def _help(item: Field) -> str:
     known = item.metadata
-    bounds = f"{known['low']:g} to {known['high']:g} {known['unit']}".rstrip()
-    return f"{known['help']} ({bounds}; default {item.default:g})".replace("%", "%%")
+    bounds = f"{known['low']} to {known['high']} {known['unit']}".rstrip()
+    return f"{known['help']} ({bounds}; default {item.default})".replace("%", "%%")
 
 
 def _settings(args: argparse.Namespace) -> Settings:
     """Return the settings with those given replaced; ArgumentError where a value is no number or out of range."""
-    given = {item.name: (getattr(args, item.name), item) for item in fields(Settings) if getattr(args, item.name) is not None}
-    return Settings(**{name: _number(text, option(name), whole=isinstance(item.default, int)) for name, (text, item) in given.items()})
+    chosen: dict[str, Any] = {}
+    for item in fields(Settings):
+        text = getattr(args, item.name)
+        if text is not None:
+            chosen[item.name] = _number(text, option(item.name), whole=isinstance(item.default, int))
+    return Settings(**chosen)
 
 
 def _limits(given: list[str]) -> dict[str, float]:

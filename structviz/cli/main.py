@@ -42,11 +42,18 @@ class Command(Protocol):
 
 
 class Parser(argparse.ArgumentParser):
-    """An argument parser that raises instead of printing and leaving."""
+    """An argument parser that raises ArgumentError instead of printing and leaving."""
 
     def error(self, message: str) -> NoReturn:
-        """Raise ArgumentError with what argparse saw."""
-        raise ArgumentError(f"{self.prog}: {message}", hint=f"{self.prog} --help lists what it takes")
+        """Raise ArgumentError with what was seen, in our words."""
+        unknown = message.removeprefix("unrecognized arguments: ")
+        missing = message.removeprefix("the following arguments are required: ")
+        if unknown != message:
+            near = difflib.get_close_matches(unknown.split()[0], self._option_string_actions, n=1)
+            offer = f"did you mean {near[0]}? " if near else ""
+            raise ArgumentError(f"found {unknown}, which {self.prog} does not know", hint=f"{offer}{self.prog} --help lists what it takes")
+        text = f"{missing} is missing" if missing != message else message
+        raise ArgumentError(f"{self.prog}: {text}", hint=f"{self.prog} --help lists what it takes")
 
 
 def entry(argv: Sequence[str] | None = None) -> int:
@@ -58,7 +65,7 @@ def entry(argv: Sequence[str] | None = None) -> int:
         sys.stdout.flush()
         return code
     except StructvizError as error:
-        return _say(f"structviz: {error}", UNUSABLE)
+        return _say(f"structviz: {str(error).removeprefix('structviz: ')}", UNUSABLE)
     except BrokenPipeError:  # the reader of our output has left, as `| head` does: that is its right
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return OK

@@ -26,11 +26,11 @@ def mesh_files(analysis: Analysis) -> dict[str, str]:
 
 
 def write_annotated(result: FaultResult, regime: Regime | None, path: Path) -> None:
-    """Write the surface of a fault with the values of `annotations`; OutputError where it cannot be written."""
-    write_surface(path, result.fault.surface, annotations(result, regime))
+    """Write the surface of a fault with the values of `triangle_values`; OutputError where it cannot be written."""
+    write_surface(path, result.fault.surface, triangle_values(result, regime))
 
 
-def annotations(result: FaultResult, regime: Regime | None) -> dict[str, NDArray]:
+def triangle_values(result: FaultResult, regime: Regime | None) -> dict[str, NDArray]:
     """Return one float32 value a triangle for each name, degrees, NaN where nothing is known; `normal` is (T, 3), to the hanging wall.
 
     Predictions are those of the one regime given, with R = 0.5 where R is open. The verdict is that of the whole fault, which

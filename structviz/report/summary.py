@@ -17,6 +17,7 @@ from structviz.orientation.lines import trend_plunge_deg
 from structviz.report.names import printable
 from structviz.report.write import Written
 from structviz.stress.regime import Regime
+from structviz.stress.tensor import frame_angle_deg
 
 if TYPE_CHECKING:
     from rich.console import Console, RenderableType
@@ -26,6 +27,9 @@ MOST_CONFLICTS = 12
 MOST_ROWS = 5  # of reasons, findings of the model, kinds of findings
 LEAST_NAME = 16  # columns kept for names on a narrow terminal
 POINTS = ("N", "NNE", "NE", "ENE", "E", "ESE", "SE", "SSE", "S", "SSW", "SW", "WSW", "W", "WNW", "NW", "NNW")
+LOOSE_DEG = 30.0  # a regime with a wider cone is called poorly determined
+FAR_DEG = 30.0  # a reading further than this from the stress that is followed is marked
+TOLD_ALREADY = {"conflict", "undetermined", "no-regime", "shape-ratio-open"}  # checks whose findings the lines above them tell
 MARKS = {"error": ("!", "bold red"), "warning": ("!", "yellow"), "note": ("-", "dim")}
 COLOUR = {"conflicting": "bold red", "consistent": "green", "undetermined": "yellow"}
 SHORT_CAUTION = "A screening aid: it tests geometry against declared movement, not stress magnitude, stability or hazard."
@@ -33,8 +37,11 @@ SHORT_CAUTION = "A screening aid: it tests geometry against declared movement, n
 
 def show(console: Console, analysis: Analysis, written: Written | None = None) -> None:
     """Print the summary of an analysis to a rich console, in about 40 lines or fewer."""
-    for block in blocks(analysis, written, console.width):
-        console.print(block, soft_wrap=False)
+    with console.capture() as captured:
+        for block in blocks(analysis, written, console.width):
+            console.print(block)
+    lines = captured.get().splitlines()
+    console.file.write("\n".join(line.rstrip() for line in lines) + "\n")
 
 
 def blocks(analysis: Analysis, written: Written | None, width: int) -> Iterator[RenderableType]:
@@ -43,7 +50,7 @@ def blocks(analysis: Analysis, written: Written | None, width: int) -> Iterator[
     yield from _readings(analysis)
     yield from _conflicts(analysis, width)
     yield from _others(analysis)
-    yield from _findings(analysis)
+    yield from _findings(analysis, width)
     yield _line(("", ""))
     yield _line((SHORT_CAUTION, "dim italic"))
     yield from _where(written)
@@ -67,7 +74,8 @@ def _line(*pieces: tuple[str, str], indent: int = 0) -> RenderableType:
     from rich.padding import Padding
     from rich.text import Text
 
-    return Padding(Text.assemble(*pieces, overflow="fold"), (0, 0, 0, indent))
+    text = Text.assemble(*pieces, overflow="fold")
+    return Padding(text, (0, 0, 0, indent), expand=False) if indent else text
 
 
 def _heading(text: str, style: str = "bold") -> Iterator[RenderableType]:
@@ -75,14 +83,14 @@ def _heading(text: str, style: str = "bold") -> Iterator[RenderableType]:
     yield _line((text, style))
 
 
-def _grid(*columns: tuple[int | None, str]) -> Table:
-    """Return a table without lines, indented by two; each column has a fixed width or None, and left or right alignment."""
+def _grid(*sides: str) -> Table:
+    """Return a table without lines, indented by two, its columns aligned "left" or "right"; only the last one wraps."""
     from rich.table import Table
 
     table = Table.grid(padding=(0, 2, 0, 0))
     table.add_column(width=0)
-    for width, side in columns:
-        table.add_column(width=width, justify="right" if side == "right" else "left", overflow="fold", no_wrap=width is not None)
+    for number, side in enumerate(sides):
+        table.add_column(justify="right" if side == "right" else "left", overflow="fold", no_wrap=number < len(sides) - 1)
     return table
 
 
@@ -103,19 +111,22 @@ def _head(analysis: Analysis) -> Iterator[RenderableType]:
     yield _line((title, "bold"), (f"  {_count(len(analysis.faults), 'fault')}, {_count(triangles, 'triangle')}", "dim"))
     yield _line(("", ""))
     if not analysis.regimes:
-        yield _line(("No stress could be inferred", "bold yellow"), (": no movement was judged.", ""), indent=2)
+        why = next((f": {printable(reading.why_not)}" for reading in analysis.readings if reading.key == "joint" and reading.why_not), "")
+        yield _line(("No stress could be inferred", "bold yellow"), (f"{why}.", ""), indent=2)
         return
     for regime in analysis.regimes:
         share = f"  {100 * regime.weight:.0f} % of the evidence" if len(analysis.regimes) > 1 else ""
-        pieces = ((f"{regime.kind.upper()} stress", "bold cyan"), (f"   SHmax {_shmax(regime)}", "bold"), (share, "dim"))
-        yield _line(*pieces, indent=2)
+        loose = "   poorly determined" if max(regime.cones_deg) > LOOSE_DEG else ""
+        kind, azimuth = (f"{regime.kind.upper()} stress", "bold cyan"), (f"   SHmax {_shmax(regime)}", "bold")
+        yield _line(kind, azimuth, (loose, "bold yellow"), (share, "dim"), indent=2)
         yield _axes(regime)
         yield _line((_ratio(regime), "dim"), indent=2)
 
 
 def _shmax(regime: Regime) -> str:
     azimuth = round(regime.shmax_deg) % 180
-    return f"{azimuth:03d} ± {regime.shmax_half_width_deg:.0f}° ({POINTS[round(azimuth / 22.5) % 16]}-{POINTS[(round(azimuth / 22.5) + 8) % 16]})"
+    point = round(azimuth / 22.5) % 8
+    return f"{azimuth:03d} ± {regime.shmax_half_width_deg:.0f}° ({POINTS[point]}-{POINTS[point + 8]})"
 
 
 def _axes(regime: Regime) -> RenderableType:
@@ -132,51 +143,58 @@ def _ratio(regime: Regime) -> str:
 
 
 def _readings(analysis: Analysis) -> Iterator[RenderableType]:
+    """Return the readings of the evidence beside each other, and how far the axes of each stand from the stress that is followed."""
     told = [reading for reading in analysis.readings if reading.key != "joint"]
     if not told:
         return
-    yield from _heading("Three readings of the evidence")
-    table = _grid((21, "left"), (15, "left"), (None, "left"))
+    yield from _heading("Three readings of the evidence" if len(told) == 3 else "Readings of the evidence")
+    table = _grid("left", "left", "left", "right", "right")
     for reading in told:
         if reading.regime is None:
-            _row(table, reading.title, ("none", "dim"), (printable(reading.why_not), "dim"))
-        else:
-            carried = _count(reading.count, "fault" if reading.key == "senses" else "pair")
-            _row(table, reading.title, reading.regime.kind, f"SHmax {_shmax(reading.regime)}  from {carried}")
+            continue
+        followed = analysis.regimes[0] if analysis.regimes else None
+        apart = float(frame_angle_deg(reading.regime.axes, followed.axes)) if followed else None
+        far = "bold yellow" if apart is not None and apart > FAR_DEG else ""
+        carried = _count(reading.count, "fault" if reading.key == "senses" else "pair")
+        off = "" if apart is None else f"{apart:.0f}° away"
+        _row(table, reading.title, reading.regime.kind, _shmax(reading.regime), carried, (off, far))
     yield table
+    for reading in told:
+        if reading.regime is None:
+            yield _line((f"{reading.title}: none; {printable(reading.why_not)}", "dim"), indent=2)
 
 
 def _conflicts(analysis: Analysis, width: int) -> Iterator[RenderableType]:
-    found = sorted(analysis.conflicting, key=lambda r: (-(r.verdict.conflict_probability or 0), -(r.verdict.misfit_deg or 0), r.fault.name))
-    total = len(analysis.faults)
-    if not found:
-        yield from _heading(f"No fault of {total} conflicts with the others", "bold green" if analysis.regimes else "bold")
-        return
-    yield from _heading(
-        f"{len(found)} of {_count(total, 'fault')} conflict{'s' if len(found) == 1 else ''} with the others", COLOUR["conflicting"]
+    found = sorted(
+        analysis.conflicting, key=lambda r: (-round(r.verdict.conflict_probability or 0, 2), -(r.verdict.misfit_deg or 0), r.fault.name)
     )
-    longest = max(len(printable(result.fault.name)) for result in found[:MOST_CONFLICTS])
-    senses = [(_declared(result), _predicted(result)) for result in found[:MOST_CONFLICTS]]
-    wide = [max(len(pair[k]) for pair in [*senses, ("declared", "predicted")]) for k in (0, 1)]
-    name = max(LEAST_NAME, min(longest, width - sum(wide) - 36))
-    table = _grid((name, "left"), (wide[0], "left"), (wide[1], "left"), (5, "right"), (4, "right"), (None, "left"))
+    total = len(analysis.faults)
+    judged = sum(result.verdict.word != "undetermined" for result in analysis.faults)
+    if not judged:
+        yield from _heading("No fault could be judged", COLOUR["undetermined"])
+    elif not found:
+        yield from _heading(f"None of the {_count(judged, 'judged fault')} conflicts with the others", COLOUR["consistent"])
+    else:
+        verb = "conflicts" if len(found) == 1 else "conflict"
+        yield from _heading(f"{len(found)} of {_count(total, 'fault')} {verb} with the others", COLOUR["conflicting"])
+        yield _conflict_table(found[:MOST_CONFLICTS], width)
+    if len(found) > MOST_CONFLICTS:
+        yield _line((f"and {len(found) - MOST_CONFLICTS} more, in faults.csv and results.json", "dim"), indent=2)
+
+
+def _conflict_table(found: Sequence[FaultResult], width: int) -> Table:
+    """Return one line a conflicting fault: declared, predicted, how sure, how far off, and the likeliest cause."""
+    senses = [(_declared(result), _predicted(result)) for result in found]
+    wide = sum(max(len(pair[k]) for pair in [*senses, ("declared", "predicted")]) for k in (0, 1))
+    name = max(LEAST_NAME, width - wide - 36)
+    table = _grid("left", "left", "left", "right", "right", "left")
     _row(table, *((text, "dim") for text in ("fault", "declared", "predicted", "prob.", "off", "likely cause")))
     for result, (declared, predicted) in zip(found, senses):
         verdict = result.verdict
         cause = verdict.causes[0].key.replace("_", " ") if verdict.causes else "none found"
-        certain = f"{100 * (verdict.conflict_probability or 0):.0f} %"
-        _row(
-            table,
-            (middle_cut(result.fault.name, name), "bold"),
-            declared,
-            (predicted, "red"),
-            certain,
-            f"{verdict.misfit_deg or 0:.0f}°",
-            cause,
-        )
-    yield table
-    if len(found) > MOST_CONFLICTS:
-        yield _line((f"and {len(found) - MOST_CONFLICTS} more, in faults.csv and results.json (--out DIR)", "dim"), indent=2)
+        shown, sure = (middle_cut(result.fault.name, name), "bold"), f"{100 * (verdict.conflict_probability or 0):.0f} %"
+        _row(table, shown, declared, (predicted, "red"), sure, f"{verdict.misfit_deg or 0:.0f}°", cause)
+    return table
 
 
 def _declared(result: FaultResult) -> str:
@@ -201,12 +219,12 @@ def _others(analysis: Analysis) -> Iterator[RenderableType]:
         return
     yield _line((f"{words['undetermined']} undetermined", COLOUR["undetermined"]), (":", ""))
     ranked = sorted(groups.items(), key=lambda item: (-len(item[1]), item[0]))
-    table = _grid((4, "right"), (None, "left"))
+    table = _grid("right", "left")
     for reason, names in ranked[:MOST_ROWS]:
         _row(table, str(len(names)), f"{reason}: {_listed(names)}" if len(names) < len(analysis.faults) else reason)
-    for rest in [sum(len(names) for _, names in ranked[MOST_ROWS:])]:
-        if rest:
-            _row(table, str(rest), "for other reasons")
+    rest = sum(len(names) for _, names in ranked[MOST_ROWS:])
+    if rest:
+        _row(table, str(rest), "for other reasons")
     yield table
 
 
@@ -221,28 +239,37 @@ def _group(result: FaultResult) -> str:
 
 
 def _listed(names: Sequence[str], most: int = 3) -> str:
-    shown = ", ".join(middle_cut(name, 24) for name in names[:most])
+    longest = 28 if len(names) > 2 else 44
+    shown = ", ".join(middle_cut(name, longest) for name in names[:most])
     return shown if len(names) <= most else f"{shown} and {len(names) - most} more"
 
 
-def _findings(analysis: Analysis) -> Iterator[RenderableType]:
+def _findings(analysis: Analysis, width: int) -> Iterator[RenderableType]:
     """Return the findings on the whole model one by one, and those on single faults as counts by check."""
-    whole = [finding for finding in analysis.findings if finding.subject == "model" and finding.severity != "note"]
-    rest = [finding for finding in analysis.findings if finding.subject != "model"]
-    notes = sum(finding.subject == "model" and finding.severity == "note" for finding in analysis.findings)
-    if not (whole or rest or notes):
+    told = [finding for finding in analysis.findings if finding.check not in TOLD_ALREADY]
+    whole = [finding for finding in told if finding.subject == "model" and finding.severity != "note"]
+    notes = [finding for finding in told if finding.subject == "model" and finding.severity == "note"]
+    rest = list(_by_check(finding for finding in told if finding.subject != "model"))
+    if not told:
         return
     yield from _heading("Findings")
-    table = _grid((1, "left"), (None, "left"))
+    table = _grid("left", "left")
     for finding in whole[:MOST_ROWS]:
-        _row(table, MARKS[finding.severity], printable(finding.message))
-    for severity, text in list(_by_check(rest))[:MOST_ROWS]:
+        _row(table, MARKS[finding.severity], _cut(printable(finding.message), 2 * (width - 8)))
+    for severity, text in rest[:MOST_ROWS]:
         _row(table, MARKS[severity], text)
-    left = max(0, len(whole) - MOST_ROWS) + max(0, len({finding.check for finding in rest}) - MOST_ROWS)
-    more = [text for text in (_count(left, "more kind") if left else "", _count(notes, "note") + " on the model" if notes else "") if text]
+    left = max(0, len(whole) - MOST_ROWS) + max(0, len(rest) - MOST_ROWS)
+    more = [
+        text for text in (_count(left, "more kind") if left else "", _count(len(notes), "note") + " on the model" if notes else "") if text
+    ]
     if more:
-        _row(table, MARKS["note"], (f"{' and '.join(more)}, in results.json (--out DIR)", "dim"))
+        _row(table, MARKS["note"], (f"{' and '.join(more)}, in results.json", "dim"))
     yield table
+
+
+def _cut(text: str, most: int) -> str:
+    """Return a text cut at the end of a word where it is longer than `most`; results.json holds all of it."""
+    return text if len(text) <= most else text[: most - 1].rsplit(" ", 1)[0] + "…"
 
 
 class _Group(NamedTuple):

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import csv
 import io
+import math
 from collections.abc import Callable, Mapping
 from typing import TYPE_CHECKING
 
@@ -112,4 +113,4 @@ def _cells(column: NDArray) -> list:
     values = column.tolist()
     if column.dtype.kind == "U":
         return [f"'{text}" if text.startswith(FORMULA_STARTS) else text for text in values]
-    return ["" if value != value else value for value in values] if column.dtype.kind == "f" else values
+    return ["" if math.isnan(value) else value for value in values] if column.dtype.kind == "f" else values

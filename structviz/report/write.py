@@ -63,10 +63,10 @@ def checked_target(folder: str | os.PathLike[str]) -> Path:
     if exists and not is_folder:
         raise OutputError(f"{shown}: found a file; wanted a folder", hint="name a folder that does not exist yet")
     above = next(place for place in target.parents if os.path.lexists(place))
-    if not above.is_dir() or not os.access(above, os.W_OK):
-        raise _failed(
-            shown, OSError(errno.EACCES if above.is_dir() else errno.ENOTDIR, "not permitted" if above.is_dir() else "a file is in the way")
-        )
+    if not above.is_dir():
+        raise _failed(shown, NotADirectoryError(errno.ENOTDIR, "part of the path is a file"))
+    if not os.access(above, os.W_OK):
+        raise _failed(shown, PermissionError(errno.EACCES, os.strerror(errno.EACCES)))
     if target == Path.cwd():
         raise OutputError(f"{shown}: found the folder you are in; wanted one of its own", hint="name a folder in it, such as --out results")
     _refuse_strangers(shown, target, held)
@@ -193,7 +193,7 @@ def _failed(shown: str, error: BaseException) -> OutputError:
         errno.EACCES: "name a folder you may write to",
         errno.EPERM: "name a folder you may write to",
         errno.EROFS: "that disk can only be read: name a folder on another",
-        errno.ENOTDIR: "part of the path is a file: name another folder",
+        errno.ENOTDIR: "name a folder below an existing one",
         errno.ENAMETOOLONG: "choose a shorter name",
         errno.EBUSY: "the folder itself cannot be replaced (a mounted disk?): name a folder in it",
     }
