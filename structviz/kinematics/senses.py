@@ -67,7 +67,9 @@ def sector_of_words(text: str) -> Sector:
 def sector_of_rake(rake_deg: float) -> Sector:
     """Return the sector about a declared rake, degrees within [-180, 180]."""
     if not -180.0 <= rake_deg <= 180.0:
-        raise ArgumentError(f"rake_deg: found {rake_deg:g}; wanted -180 to 180 degrees", hint="0 sinistral, 90 reverse, 180 dextral, -90 normal")
+        raise ArgumentError(
+            f"rake_deg: found {rake_deg:g}; wanted -180 to 180 degrees", hint="0 sinistral, 90 reverse, 180 dextral, -90 normal"
+        )
     return Sector(180.0 if rake_deg == -180.0 else float(rake_deg), 45.0)
 
 

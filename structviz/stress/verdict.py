@@ -195,6 +195,7 @@ def mirrored(normals: Floats, signs: Sequence[float]) -> Floats:
     return flipped if up > 0 or (up == 0 and dot(flipped, normals).sum() >= 0) else -flipped
 
 
+LABEL_BELIEF = 0.9
 MIRRORS: tuple[tuple[str, tuple[float, float, float], str, float], ...] = (
     (
         "dips_other_way",
@@ -216,7 +217,7 @@ def likely_causes(
     """
     frames, ratios = replicates_without(posterior, fault)
     opposite = sector.opposite()
-    causes = [Cause("label_swapped", f"the label may be swapped: as {opposite.text} it would fit", share_inside(prediction, opposite))]
+    causes = [Cause("label_swapped", f"the label may be swapped: as {opposite.text} it would fit", LABEL_BELIEF * share_inside(prediction, opposite))]
     tensor = reduced_tensor(posterior.frame, 0.5)
     stands = float(shares @ slip_tendency(tensor, normals))
     for key, signs, text, belief in MIRRORS:
