@@ -85,9 +85,12 @@ def pair_table(analysis: Analysis) -> Table:
 def csv_text(table: Mapping[str, NDArray]) -> str:
     """Return a table as CSV: a header, commas, one line a row; an empty cell where a number is not known."""
     written = io.StringIO()
-    writer = csv.writer(written, lineterminator="\n")
+    rows = list(zip(*(_cells(column) for column in table.values())))
+    # The writer leaves a bare carriage return unquoted, and readers would end the row there.
+    returns = any("\r" in cell for row in rows for cell in row if isinstance(cell, str))
+    writer = csv.writer(written, lineterminator="\n", quoting=csv.QUOTE_NONNUMERIC if returns else csv.QUOTE_MINIMAL)
     writer.writerow(table)
-    writer.writerows(zip(*(_cells(column) for column in table.values())))
+    writer.writerows(rows)
     return written.getvalue()
 
 
