@@ -1,0 +1,31 @@
+"""Pictures as data, then drawn. `render` writes those of an analysis; the table of views is in `registry`."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+from structviz.analysis import Analysis
+from structviz.errors import RenderingUnavailable
+from structviz.views.gl import require_gl
+from structviz.views.registry import draw, views
+
+__all__ = ["render", "views"]
+
+
+def render(
+    analysis: Analysis, folder: Path, *, progress: Callable[[str, int, int], None] | None = None
+) -> tuple[tuple[str, ...], tuple[str, ...]]:
+    """Return the names of the pictures written into a folder, and one reason for those that were skipped."""
+    written, skipped = [], []
+    for number, entry in enumerate(views().values()):
+        if progress:
+            progress("drawing pictures", number, len(views()))
+        try:
+            if entry.needs_gl:
+                require_gl()
+            draw(entry, entry.build(analysis), folder / entry.file_name)
+            written.append(entry.file_name)
+        except RenderingUnavailable as error:
+            skipped.append(f"{error.message}; install it with: {error.hint}")
+    return tuple(written), tuple(dict.fromkeys(skipped))

@@ -1,0 +1,124 @@
+"""Draws the net with matplotlib, without a screen and without the state of pyplot."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+from matplotlib.axes import Axes
+from matplotlib.backends.backend_agg import FigureCanvasAgg
+from matplotlib.figure import Figure
+from matplotlib.patches import Circle
+
+from structviz.views.palette import FAINT, HAIR, INK, PAPER, SIGMA, VERDICTS
+from structviz.views.stereonet import Net, NetAxis, NetPlane, NetSlip
+
+FONT = "DejaVu Sans"
+SIGMA_MARKS = ("o", "D", "s")
+
+
+def draw(net: Net, path: Path) -> None:
+    """Write the net as a PNG of 1800 by 1300 pixels; the same net gives the same bytes."""
+    figure = Figure(figsize=(9.0, 6.5), dpi=200, facecolor=PAPER)
+    FigureCanvasAgg(figure)
+    axes = figure.add_axes((0.02, 0.03, 0.64, 0.86))
+    _frame(axes)
+    for plane in sorted(net.planes, key=lambda p: p.verdict == "conflicting"):
+        _plane(axes, plane)
+    for slip in net.slips:
+        _slip(axes, slip)
+    for number, axis in enumerate(net.axes):
+        _axis(axes, axis, number)
+    figure.text(0.03, 0.955, net.title, fontsize=15, color=INK, va="center", weight="bold", family=FONT)
+    figure.text(0.03, 0.912, net.subtitle, fontsize=9, color=INK, va="center", family=FONT)
+    _key(figure, net)
+    figure.savefig(path, metadata={"Software": None})
+
+
+def _frame(axes: Axes) -> None:
+    axes.set_aspect("equal")
+    axes.set_xlim(-1.13, 1.13)
+    axes.set_ylim(-1.13, 1.13)
+    axes.axis("off")
+    axes.add_patch(Circle((0, 0), 1.0, facecolor="white", edgecolor=INK, linewidth=1.2, zorder=0))
+    for azimuth in range(0, 360, 10):
+        a = np.radians(azimuth)
+        length = 0.035 if azimuth % 30 == 0 else 0.018
+        axes.plot([np.sin(a), np.sin(a) * (1 + length)], [np.cos(a), np.cos(a) * (1 + length)], color=INK, linewidth=0.7)
+    axes.plot([-0.02, 0.02], [0, 0], color=FAINT, linewidth=0.7)
+    axes.plot([0, 0], [-0.02, 0.02], color=FAINT, linewidth=0.7)
+    for azimuth, word in ((0, "N"), (90, "E"), (180, "S"), (270, "W")):
+        a = np.radians(azimuth)
+        axes.text(1.085 * np.sin(a), 1.085 * np.cos(a), word, ha="center", va="center", fontsize=10, color=INK, family=FONT)
+
+
+def _plane(axes: Axes, plane: NetPlane) -> None:
+    look = VERDICTS[plane.verdict]
+    style = (0, look.dash) if look.dash else "solid"
+    depth = 4 if plane.verdict == "conflicting" else 2
+    axes.plot(*plane.circle.T, color=look.colour, linewidth=look.width, linestyle=style, zorder=depth, alpha=0.95)
+    axes.plot(*plane.pole, marker="x", markersize=4.5, color=look.colour, markeredgewidth=max(0.9, look.width / 1.6), zorder=depth)
+
+
+def _slip(axes: Axes, slip: NetSlip) -> None:
+    """A triangle at the slip line: point down where the hanging wall goes down; hollow for what is declared."""
+    look = VERDICTS[slip.verdict]
+    big = slip.verdict == "conflicting"
+    axes.plot(
+        *slip.point, marker="^" if slip.upward else "v", markersize=8 if big else 4.5, color=look.colour, zorder=6 if big else 3,
+        markerfacecolor=PAPER if slip.declared else look.colour, markeredgewidth=1.5 if big else 0.6,
+    )  # fmt: skip
+
+
+def _axis(axes: Axes, axis: NetAxis, number: int) -> None:
+    for line in axis.cone:
+        axes.plot(*line.T, color=SIGMA[number], linewidth=1.4, zorder=7)
+        axes.fill(*line.T, color=SIGMA[number], alpha=0.13, zorder=1, linewidth=0)
+    axes.plot(
+        *axis.point, marker=SIGMA_MARKS[number], markersize=10, color=SIGMA[number], zorder=8, markeredgecolor="white", markeredgewidth=1.2
+    )
+    off = 0.075 if axis.point[0] < 0.85 else -0.075
+    axes.annotate(
+        axis.label, axis.point, (axis.point[0] + off, axis.point[1] + 0.045), fontsize=13, color=INK, weight="bold", family=FONT, zorder=9,
+        ha="center", bbox={"boxstyle": "round,pad=0.12", "facecolor": "white", "edgecolor": "none", "alpha": 0.75},
+    )  # fmt: skip
+
+
+def _key(figure: Figure, net: Net) -> None:
+    axes = figure.add_axes((0.68, 0.03, 0.30, 0.86))
+    axes.set_xlim(0, 1)
+    axes.set_ylim(0, 1)
+    axes.axis("off")
+    at = 0.96
+    at = _heading(axes, "Principal axes, 95 % cones", at)
+    for number, axis in enumerate(net.axes):
+        axes.plot(0.05, at, marker=SIGMA_MARKS[number], markersize=8, color=SIGMA[number])
+        axes.text(0.14, at, f"{axis.label}   {axis.text}", fontsize=9.5, va="center", color=INK, family=FONT)
+        at -= 0.052
+    if not net.axes:
+        axes.text(0.02, at, "none could be inferred", fontsize=9.5, va="center", color=INK, family=FONT)
+        at -= 0.052
+    at = _heading(axes, "Faults, as judged by the others", at - 0.035)
+    for word, count in net.counts:
+        look = VERDICTS[word]
+        axes.plot([0.0, 0.1], [at, at], color=look.colour, linewidth=look.width + 0.8, linestyle=(0, look.dash) if look.dash else "solid")
+        axes.text(0.14, at, f"{count} {word}", fontsize=9.5, va="center", color=INK, family=FONT)
+        at -= 0.052
+    at = _heading(axes, "Slip of the hanging wall", at - 0.035)
+    for marker, filled, text in (
+        ("v", True, "predicted, down"),
+        ("^", True, "predicted, up"),
+        ("v", False, "declared, where it conflicts"),
+    ):
+        axes.plot(0.05, at, marker=marker, markersize=7, color=INK, markerfacecolor=INK if filled else PAPER)
+        axes.text(0.14, at, text, fontsize=9.5, va="center", color=INK, family=FONT)
+        at -= 0.052
+    axes.plot(0.05, at, marker="x", markersize=6, color=INK)
+    axes.text(0.14, at, "pole of the mean plane", fontsize=9.5, va="center", color=INK, family=FONT)
+    axes.text(0.0, 0.0, "Equal-area, lower hemisphere.\nScreening aid; directions, not magnitudes.", fontsize=7.5, color=FAINT, family=FONT)
+
+
+def _heading(axes: Axes, text: str, at: float) -> float:
+    axes.text(0.0, at, text, fontsize=9.5, va="center", color=INK, weight="bold", family=FONT)
+    axes.plot([0, 0.95], [at - 0.028, at - 0.028], color=HAIR, linewidth=0.8)
+    return at - 0.065
