@@ -104,7 +104,7 @@ def many_conflicts(examined: Examined, limit: float) -> Iterator[Found]:
     needs="stress",
 )
 def conflicting_set(examined: Examined, limit: float) -> Iterator[Found]:
-    """Return a note on the largest group of three or more conflicting faults within the limit of one of them and declared alike.
+    """Return a warning on the largest group of three or more conflicting faults within the limit of one of them and declared alike.
 
     It is told only where no more than twice as many faults of that orientation agree with the rest; else single labels are suspect.
     """
@@ -121,7 +121,7 @@ def conflicting_set(examined: Examined, limit: float) -> Iterator[Found]:
         count, lack, names = max(groups)
         text = f"{listed(names)} conflict, lie within {limit:.0f} deg of one plane and are declared alike: an older phase could explain all"
         but = f", though {many(-lack, 'fault')} of that orientation moved with the rest" if lack else ""
-        yield Found("model", "note", text + but, (("conflicting", count), ("agreeing", -lack)))
+        yield Found("model", "warning", text + but, (("conflicting", count), ("agreeing", -lack)))
 
 
 def _near(examined: Examined, leader: int, those: list[int], limit_deg: float) -> list[int]:
