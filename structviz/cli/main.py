@@ -70,7 +70,7 @@ def entry(argv: Sequence[str] | None = None) -> int:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return OK
     except KeyboardInterrupt:
-        return _say("structviz: interrupted; nothing was written", INTERRUPTED)
+        return _say("structviz: interrupted; nothing was left half written", INTERRUPTED)
     except Exception as error:
         if "--debug" in arguments:
             raise
