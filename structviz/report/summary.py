@@ -254,8 +254,9 @@ def _findings(analysis: Analysis, width: int) -> Iterator[RenderableType]:
         return
     yield from _heading("Findings")
     table = _grid("left", "left")
+    lines = 3 if len(whole) <= 2 else 2
     for finding in whole[:MOST_ROWS]:
-        _row(table, MARKS[finding.severity], _cut(printable(finding.message), 2 * (width - 8)))
+        _row(table, MARKS[finding.severity], _cut(printable(finding.message), lines * (width - 9)))
     for severity, text in rest[:MOST_ROWS]:
         _row(table, MARKS[severity], text)
     left = max(0, len(whole) - MOST_ROWS) + max(0, len(rest) - MOST_ROWS)

@@ -22,6 +22,7 @@ from structviz.report.annotated import mesh_files, write_annotated
 from structviz.report.names import printable
 from structviz.report.results_json import results_text
 from structviz.report.tables import csv_text, fault_table, pair_table
+from structviz.views import render
 
 RESULTS = "results.json"
 LITTER = {".DS_Store", "Thumbs.db", "desktop.ini"}  # left by file browsers, missed by nobody
@@ -166,17 +167,10 @@ def _fill(new: Path, analysis: Analysis, pictures: bool, tell: Progress) -> tupl
         write_annotated(result, regime, new / meshes[result.fault.name])
     _write_text(new / "faults.csv", csv_text(fault_table(analysis)))
     _write_text(new / "pairs.csv", csv_text(pair_table(analysis)))
-    drawn, skipped = _draw(analysis, new, tell) if pictures else ((), ())
-    files = (RESULTS, "faults.csv", "pairs.csv", *(Path(file).name for file in drawn), *meshes.values())
+    skipped = render(analysis, new, progress=tell)[1] if pictures else ()
+    files = (RESULTS, *sorted(_all_files(new), key=lambda name: ("/" in name, name)))
     _write_text(new / RESULTS, results_text(analysis, meshes=meshes, outputs=files))
     return files, tuple(skipped)
-
-
-def _draw(analysis: Analysis, new: Path, tell: Progress) -> tuple[Sequence[str | Path], Sequence[str]]:
-    """Draw the pictures; return their files and why any is missing."""
-    from structviz import views
-
-    return views.render(analysis, new, progress=tell) if hasattr(views, "render") else ((), ("no pictures yet",))
 
 
 def _write_text(path: Path, text: str) -> None:

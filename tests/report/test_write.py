@@ -155,14 +155,36 @@ def test_paths_that_cannot_be_a_folder(tmp_path: Path, monkeypatch: pytest.Monke
         checked_target(".")
 
 
-@pytest.mark.skipif(os.name == "nt" or os.geteuid() == 0, reason="the superuser may write everywhere")
-def test_a_folder_without_permission_is_told_before_the_work(tmp_path: Path) -> None:
-    tmp_path.chmod(0o500)
-    try:
-        with pytest.raises(OutputError, match=r"Permission denied.*\n  next: name a folder you may write to"):
-            checked_target(tmp_path / "out")
-    finally:
-        tmp_path.chmod(0o700)
+def test_a_folder_without_permission_is_told_before_the_work(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(os, "access", lambda path, mode: Path(path) != tmp_path)
+    with pytest.raises(OutputError, match=r"out: cannot be written \(Permission denied\).*\n  next: name a folder you may write to"):
+        checked_target(tmp_path / "out")
+
+
+def test_a_folder_that_cannot_be_replaced_is_told_so(no_stress: Analysis, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    def busy(self: Path, target: Path) -> Path:
+        raise OSError(errno.EBUSY, "Device or resource busy")
+
+    (tmp_path / "out").mkdir()
+    monkeypatch.setattr(Path, "rename", busy)
+    with pytest.raises(OutputError, match=r"Device or resource busy\); nothing was changed\n  next: .*name a folder in it"):
+        write_outputs(no_stress, tmp_path / "out", pictures=False)
+    assert [path.name for path in tmp_path.iterdir()] == ["out"]
+
+
+def test_pictures_are_listed_or_their_absence_explained(no_stress: Analysis, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    def drawing(analysis: Analysis, folder: Path, progress: Callable[[str, int, int], None]) -> tuple[tuple[str, ...], tuple[str, ...]]:
+        (folder / "net.png").write_bytes(b"png")
+        return ("net.png",), ("no scene: no OpenGL",)
+
+    monkeypatch.setattr(write, "render", drawing)
+    written = write_outputs(no_stress, tmp_path / "out")
+    assert written.skipped == ("no scene: no OpenGL",)
+    assert "net.png" in written.files
+    assert "net.png" in json.loads((tmp_path / "out" / "results.json").read_text(encoding="utf-8"))["outputs"]
+    without = write_outputs(no_stress, tmp_path / "out", pictures=False)
+    assert not (tmp_path / "out" / "net.png").exists()
+    assert without.skipped == ()
 
 
 def test_a_link_to_a_folder_stays_a_link(no_stress: Analysis, tmp_path: Path) -> None:
