@@ -23,13 +23,13 @@ def count_line(analysis: Analysis) -> tuple[tuple[str, int], ...]:
 
 
 def shortened(name: str, most: int = 26) -> str:
-    """Return a name shortened in its middle, without control characters.
+    """Return a name shortened before its end, where names of one family differ, without control characters.
 
-    >>> shortened("a-very-long-name-of-a-fault-surface-file", 20)
-    'a-very-lo\u2026rface-file'
+    >>> shortened("SURVEY-SOUTH-Long_name_of_a_fault", 20)
+    'SURV\u2026name of a fault'
     """
-    clean = "".join(c if c.isprintable() else "\ufffd" for c in name)
+    clean = "".join(c if c.isprintable() else "\ufffd" for c in name).replace("_", " ")
     if len(clean) <= most:
         return clean
-    tail = most // 2
-    return clean[: most - tail - 1] + "\u2026" + clean[-tail:]
+    head = most // 5
+    return clean[:head] + "\u2026" + clean[head + 1 - most :]

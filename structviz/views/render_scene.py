@@ -1,0 +1,234 @@
+"""Draws the scene: surfaces and glyphs off-screen with PyVista, words and frame over it with matplotlib.
+
+Words are set by matplotlib because VTK's fonts lack the Greek letters and its labels cannot give way to each other.
+"""
+
+from __future__ import annotations
+
+from itertools import product
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pyvista as pv
+from matplotlib.axes import Axes
+from matplotlib.backends.backend_agg import FigureCanvasAgg
+from matplotlib.figure import Figure
+from matplotlib.patches import Rectangle
+from numpy.typing import NDArray
+
+from structviz.views.captions import WORDS
+from structviz.views.glyphs import placed, stress_glyph
+from structviz.views.palette import FAINT, HAIR, INK, PAPER, SIGMA, VERDICTS
+from structviz.views.scene import Label, Scene
+
+Floats = NDArray[np.float64]
+
+PIXELS = (2000, 1400)
+ELEVATION_DEG = 33.0
+FONT = "DejaVu Sans"
+GLYPH_COLOURS = {"lens": "#efe3c4", "thumb": SIGMA[0]}
+CONTEXT_OPACITY = 0.55  # faults that nobody doubts step back, so that the others and the glyphs are seen
+
+
+def draw(scene: Scene, path: Path) -> None:
+    """Write the scene as a PNG of 2000 by 1400 pixels; the same scene gives the same bytes."""
+    plotter = pv.Plotter(off_screen=True, window_size=list(PIXELS), lighting="light kit")
+    try:
+        image, project = _photograph(plotter, scene)
+    finally:
+        plotter.close()
+    figure = Figure(figsize=(PIXELS[0] / 200, PIXELS[1] / 200), dpi=200, facecolor=PAPER)
+    FigureCanvasAgg(figure)
+    axes = figure.add_axes((0.0, 0.0, 1.0, 1.0))
+    axes.imshow(image, extent=(0, PIXELS[0], 0, PIXELS[1]), interpolation="nearest")
+    axes.set_xlim(0, PIXELS[0])
+    axes.set_ylim(0, PIXELS[1])
+    axes.axis("off")
+    _frame(axes, scene, project)
+    _names(axes, scene, project)
+    _words(axes, scene)
+    figure.savefig(path, metadata={"Software": None})
+
+
+def _photograph(plotter: Any, scene: Scene) -> tuple[NDArray[np.uint8], Any]:
+    plotter.set_background(PAPER)
+    for word in reversed(WORDS):
+        mesh = _merged([(s.vertices, s.triangles) for s in scene.surfaces if s.kind == word])
+        if mesh is None:
+            continue
+        look = VERDICTS[word]
+        opacity = CONTEXT_OPACITY if word == "consistent" else 0.95
+        plotter.add_mesh(mesh, color=look.colour, opacity=opacity, smooth_shading=False, specular=0.0, ambient=0.35, diffuse=0.7)
+        rims = mesh.extract_feature_edges(boundary_edges=True, feature_edges=False, manifold_edges=False, non_manifold_edges=False)
+        if rims.n_cells:
+            plotter.add_mesh(rims, color=INK if word == "conflicting" else look.colour, line_width=3.5 if word == "conflicting" else 1.5)
+    parts = stress_glyph()
+    for role, colour in GLYPH_COLOURS.items():
+        pieces = [(placed(p, g.axes, g.place, g.size_m), p.triangles) for g in scene.glyphs for p in parts if p.role == role]
+        mesh = _merged(pieces)
+        if mesh is not None:
+            plotter.add_mesh(mesh, color=colour, smooth_shading=True, split_sharp_edges=True, specular=0.1, ambient=0.3)
+    for line in _box(scene):
+        plotter.add_mesh(pv.Line(*line), color=FAINT, line_width=1.5)
+    _aim(plotter, scene)
+    plotter.enable_depth_peeling(8)
+    plotter.enable_anti_aliasing("ssaa")
+    image = plotter.screenshot(return_img=True)
+    return image, _projector(plotter)
+
+
+def _merged(pieces: list[tuple[Floats, NDArray[np.int64]]]) -> Any:
+    """Return many triangle meshes as one, or None: two hundred actors are slow to draw, three are not."""
+    if not pieces:
+        return None
+    starts = np.cumsum([0] + [len(vertices) for vertices, _ in pieces[:-1]])
+    vertices = np.concatenate([vertices for vertices, _ in pieces]).astype(np.float32)
+    triangles = np.concatenate([triangles + start for (_, triangles), start in zip(pieces, starts, strict=True)])
+    faces = np.concatenate([np.full((len(triangles), 1), 3), triangles], 1)
+    return pv.PolyData(vertices, faces.ravel())
+
+
+def _box(scene: Scene) -> list[tuple[Floats, Floats]]:
+    """Return the edges of the floor of the frame and its four posts, as pairs of corners."""
+    (w, s, b), (e, n, t) = scene.low, scene.high
+    floor = [np.array(corner) for corner in ((w, s, b), (e, s, b), (e, n, b), (w, n, b))]
+    posts = [(corner, np.array([corner[0], corner[1], t])) for corner in floor]
+    return [(floor[k], floor[(k + 1) % 4]) for k in range(4)] + posts
+
+
+def _aim(plotter: Any, scene: Scene) -> None:
+    """Look at the middle of the scene from its azimuth, in parallel projection so that lengths compare."""
+    centre = (scene.low + scene.high) / 2
+    a, up = np.radians(scene.view_from_deg), np.radians(ELEVATION_DEG)
+    towards = np.array([np.cos(up) * np.sin(a), np.cos(up) * np.cos(a), np.sin(up)])
+    size = float(np.linalg.norm(scene.high - scene.low))
+    camera = plotter.camera
+    camera.focal_point, camera.position, camera.up = centre, centre + 3 * size * towards, (0.0, 0.0, 1.0)
+    camera.enable_parallel_projection()
+    right = np.array([-np.cos(a), np.sin(a), 0.0])
+    above = np.cross(towards, -right)
+    seen = np.array(list(product(*zip(scene.low, scene.high, strict=True))))
+    seen = np.concatenate([seen, *[g.place + g.size_m * np.concatenate([g.axes, -g.axes]) for g in scene.glyphs]]) - centre
+    across, high = seen @ right, seen @ above
+    camera.parallel_scale = max(np.ptp(high) / 0.78, np.ptp(across) / 0.90 / (PIXELS[0] / PIXELS[1])) / 2
+    # The title stands above the model: its middle sits a little under that of the picture.
+    shift = above * ((high.max() + high.min()) / 2 + 0.09 * camera.parallel_scale) + right * (across.max() + across.min()) / 2
+    camera.focal_point, camera.position = centre + shift, centre + shift + 3 * size * towards
+    plotter.reset_camera_clipping_range()
+
+
+def _projector(plotter: Any) -> Any:
+    """Return a function from places (N, 3) to pixels (N, 2), origin at the lower left, for the camera as it stands."""
+    matrix = plotter.camera.GetCompositeProjectionTransformMatrix(PIXELS[0] / PIXELS[1], -1, 1)
+    m = np.array([[matrix.GetElement(i, j) for j in range(4)] for i in range(4)])
+
+    def project(places: Floats) -> Floats:
+        homogeneous = np.concatenate([np.atleast_2d(places), np.ones((len(np.atleast_2d(places)), 1))], 1) @ m.T
+        return (homogeneous[:, :2] / homogeneous[:, 3:] + 1) / 2 * PIXELS
+
+    return project
+
+
+def _frame(axes: Axes, scene: Scene, project: Any) -> None:
+    """Write eastings and northings along the two near edges of the floor, heights along a post, and a north arrow."""
+    (w, s, b), (e, n, t) = scene.low, scene.high
+    side = e if scene.view_from_deg <= 180 else w
+    _ticks(axes, project, scene.origin, 0, np.array([w, s, b]), np.array([e, s, b]), (0, -26), "easting")
+    _ticks(axes, project, scene.origin, 1, np.array([side, s, b]), np.array([side, n, b]), (26 if side == e else -26, -12), "northing")
+    other = w if side == e else e
+    _ticks(axes, project, scene.origin, 2, np.array([other, s, b]), np.array([other, s, t]), (-14 if other == w else 14, 0), "up")
+    start = np.array([other, n, b])
+    length = 0.09 * float(np.linalg.norm((scene.high - scene.low)[:2]))
+    tail, tip = project(np.stack([start + [0, 0.02 * length, 0], start + [0, length, 0]]))
+    axes.annotate("", tip, tail, arrowprops={"arrowstyle": "-|>", "color": INK, "linewidth": 1.6, "shrinkA": 0, "shrinkB": 0})
+    axes.text(tip[0], tip[1] + 20, "N", fontsize=10, color=INK, ha="center", weight="bold", family=FONT)
+
+
+def _ticks(axes: Axes, project: Any, origin: Floats, axis: int, start: Floats, end: Floats, off: tuple[float, float], word: str) -> None:
+    low, high = start[axis] + origin[axis], end[axis] + origin[axis]
+    step = _round_step(abs(high - low) / 3.5)
+    values = np.arange(np.ceil(low / step), np.floor(high / step) + 1) * step
+    if axis != 2 and np.ptp(project(np.stack([start, end])), axis=0).max() < 200:
+        values = values[:1]
+    places = np.repeat(start[None], len(values), 0)
+    places[:, axis] = values - origin[axis]
+    align = "center" if off[0] == 0 else ("left" if off[0] > 0 else "right")
+    for value, (x, y) in zip(values, project(places) if len(values) else [], strict=True):
+        axes.plot([x, x + off[0] * 0.4], [y, y + off[1] * 0.4], color=FAINT, linewidth=0.8)
+        axes.text(
+            x + off[0], y + off[1], f"{value:,.0f}".replace(",", "\u2009"), fontsize=6.5, color=FAINT, ha=align, va="center", family=FONT
+        )
+    x, y = project(np.stack([start, end])).mean(0)
+    push = 4.2 if axis == 1 else 2.6
+    if axis == 2:
+        x, y = project(end[None])[0]
+        axes.text(x + off[0], y + 26, f"{word}, m", fontsize=6.5, color=FAINT, ha="center", family=FONT)
+    else:
+        axes.text(x + push * off[0], y + push * off[1], f"{word}, m", fontsize=7, color=FAINT, ha=align, va="center", family=FONT)
+
+
+def _round_step(length: float) -> float:
+    """Return the round number (1, 2 or 5 times a power of ten) at or above a length."""
+    power = 10.0 ** np.floor(np.log10(max(length, 1e-9)))
+    return float(next(m * power for m in (1, 2, 5, 10) if m * power >= length * 0.999))
+
+
+def _names(axes: Axes, scene: Scene, project: Any) -> None:
+    """Write names at their faults; one that would cover an earlier, more wanted one is left out."""
+    taken: list[tuple[float, float, float, float]] = []
+    for label in scene.labels:
+        x, y = project(label.place[None])[0]
+        half, tall = 6.4 * len(label.text) + 10, 15.0
+        box = (x - half, y + 22 - tall, x + half, y + 22 + tall)
+        if any(box[0] < b[2] and b[0] < box[2] and box[1] < b[3] and b[1] < box[3] for b in taken):
+            continue
+        taken.append(box)
+        _name(axes, label, float(x), float(y))
+
+
+def _name(axes: Axes, label: Label, x: float, y: float) -> None:
+    strong = label.kind == "conflicting"
+    axes.plot([x, x], [y, y + 8], color=INK, linewidth=0.7)
+    edge = VERDICTS["conflicting"].colour if strong else "none"
+    axes.text(
+        x,
+        y + 22,
+        label.text,
+        fontsize=8 if strong else 6.5,
+        weight="bold" if strong else "normal",
+        color=INK,
+        ha="center",
+        va="center",
+        family=FONT,
+        bbox={"boxstyle": "round,pad=0.15", "facecolor": PAPER, "edgecolor": edge, "linewidth": 0.9, "alpha": 0.85},
+    )
+
+
+def _words(axes: Axes, scene: Scene) -> None:
+    axes.text(50, PIXELS[1] - 62, scene.title, fontsize=17, weight="bold", color=INK, va="center", family=FONT)
+    axes.text(50, PIXELS[1] - 118, scene.subtitle, fontsize=9.5, color=INK, va="center", family=FONT)
+    x, y = PIXELS[0] - 470, PIXELS[1] - 60
+    for word, count in scene.counts:
+        look = VERDICTS[word]
+        edge = INK if word == "conflicting" else look.colour
+        axes.add_patch(
+            Rectangle((x, y - 12), 40, 24, facecolor=look.colour, edgecolor=edge, linewidth=1.6 if word == "conflicting" else 0.8)
+        )
+        axes.text(x + 58, y, f"{count} {word}", fontsize=9, color=INK, va="center", family=FONT)
+        y -= 42
+    axes.plot([x, PIXELS[0] - 50], [y + 14, y + 14], color=HAIR, linewidth=0.8)
+    if scene.glyphs:
+        text = (
+            "stress: dark cones press along \u03c31, the lens\nis long along \u03c33; large: all faults together,\n"
+            "small: pairs of faults, where they meet"
+        )
+        axes.text(x, y - 2, text, fontsize=7, color=INK, va="top", family=FONT, linespacing=1.4)
+    axes.text(
+        50,
+        34,
+        "Screening aid: directions, not magnitudes. Parallel projection, no vertical exaggeration.",
+        fontsize=7,
+        color=FAINT,
+        family=FONT,
+    )

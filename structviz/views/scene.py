@@ -1,0 +1,139 @@
+"""The model in 3D as data: surfaces by verdict, stress glyphs where the evidence lies, names, frame and legend.
+
+Everything is relative to a float64 origin, so that it survives float32; the origin comes back in the frame's numbers.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from structviz.analysis import Analysis, FaultResult
+from structviz.views.captions import count_line, regime_line, shortened
+from structviz.views.registry import view
+
+Floats = NDArray[np.float64]
+
+MOST_GLYPHS = 9
+MOST_NAMES = 24
+VIEW_AZIMUTHS_DEG = (150.0, 165.0, 180.0, 195.0, 210.0)  # from the south, so that north is at the back
+
+
+@dataclass(frozen=True, eq=False)
+class SceneSurface:
+    """One surface, relative to the origin of the scene."""
+
+    name: str
+    kind: str  # a verdict, or "horizon"
+    vertices: Floats  # (V, 3) m from the origin
+    triangles: NDArray[np.int64]
+
+
+@dataclass(frozen=True, eq=False)
+class StressGlyph:
+    """Three axes at a place."""
+
+    place: Floats  # (3,) m from the origin
+    axes: Floats  # (3, 3) rows sigma1, sigma2, sigma3
+    size_m: float
+
+
+@dataclass(frozen=True, eq=False)
+class Label:
+    """A name at a place."""
+
+    text: str
+    place: Floats  # (3,) m from the origin
+    kind: str
+
+
+@dataclass(frozen=True, eq=False)
+class Scene:
+    """The whole picture, without a camera library."""
+
+    title: str
+    subtitle: str
+    origin: Floats  # (3,) easting, northing, up, m
+    surfaces: tuple[SceneSurface, ...]
+    glyphs: tuple[StressGlyph, ...]
+    labels: tuple[Label, ...]  # most wanted first
+    low: Floats  # (3,) corner of the frame, m from the origin
+    high: Floats
+    view_from_deg: float  # azimuth from which the scene is seen
+    counts: tuple[tuple[str, int], ...]
+
+
+@view("scene", title="Faults by verdict, with the stress they speak for", file_name="scene.png", needs_gl=True, renderer="render_scene")
+def build_scene(analysis: Analysis) -> Scene:
+    """Return the scene of an analysis."""
+    everything = np.concatenate([result.fault.surface.vertices for result in analysis.faults])
+    origin = np.round((everything.min(0) + everything.max(0)) / 2)
+    low, high = everything.min(0) - origin, everything.max(0) - origin
+    size, azimuth = float(np.linalg.norm((high - low)[:2])), _best_azimuth(analysis.faults)
+    return Scene(
+        title=regime_line(analysis),
+        subtitle=analysis.model.title,
+        origin=origin,
+        surfaces=tuple(_surface(result, origin) for result in analysis.faults),
+        glyphs=_glyphs(analysis, origin, size, azimuth),
+        labels=_labels(analysis.faults, origin),
+        low=low,
+        high=high,
+        view_from_deg=azimuth,
+        counts=count_line(analysis),
+    )
+
+
+def _surface(result: FaultResult, origin: Floats) -> SceneSurface:
+    surface = result.fault.surface
+    return SceneSurface(result.fault.name, result.verdict.word, surface.vertices - origin, surface.triangles)
+
+
+def _glyphs(analysis: Analysis, origin: Floats, size: float, azimuth_deg: float) -> tuple[StressGlyph, ...]:
+    """Return one glyph for the regime, beside the model at the near left, and small ones where the heaviest pairs meet, well apart."""
+    if not analysis.regimes:
+        return ()
+    glyphs = [StressGlyph(_beside(azimuth_deg, size), analysis.regimes[0].axes, 0.075 * size)]
+    apart = 0.13 * size
+    for axes, place in zip(analysis.pairs.axes, analysis.pairs.places - origin, strict=True):
+        if len(glyphs) > MOST_GLYPHS:
+            break
+        if all(np.linalg.norm(place - other.place) > apart for other in glyphs[1:]):
+            glyphs.append(StressGlyph(place, axes, 0.033 * size))
+    return tuple(glyphs)
+
+
+def _beside(azimuth_deg: float, size: float) -> Floats:
+    """Return a place at the near left of the model as seen from an azimuth, (3,) m from the origin."""
+    a = np.radians(azimuth_deg)
+    towards, right = np.array([np.sin(a), np.cos(a), 0.0]), np.array([-np.cos(a), np.sin(a), 0.0])
+    return size * (0.42 * towards - 0.34 * right)
+
+
+def _labels(results: Sequence[FaultResult], origin: Floats) -> tuple[Label, ...]:
+    """Return the names of the faults at their highest stations: conflicting ones first, then the largest."""
+    rank = {"conflicting": 0, "undetermined": 1, "consistent": 2}
+    ordered = sorted(results, key=lambda r: (rank[r.verdict.word], -r.measured.area_m2, r.fault.name))
+    return tuple(Label(shortened(r.fault.name), _top(r) - origin, r.verdict.word) for r in ordered[:MOST_NAMES])
+
+
+def _top(result: FaultResult) -> Floats:
+    """Return the middle of the upper edge of a fault, (3,) m."""
+    places = result.stations.places
+    upper = places[places[:, 2] >= np.quantile(places[:, 2], 0.75)]
+    middle = upper.mean(0)
+    return upper[((upper - middle) ** 2).sum(1).argmin()]
+
+
+def _best_azimuth(results: Sequence[FaultResult]) -> float:
+    """Return the azimuth, degrees, from which the faults show most of their area."""
+    normals = np.array([r.measured.normal for r in results])
+    areas = np.array([r.measured.area_m2 for r in results])
+    shown = []
+    for azimuth in VIEW_AZIMUTHS_DEG:
+        a = np.radians(azimuth)
+        shown.append(areas @ np.abs(normals @ [np.sin(a), np.cos(a), 0.6]))
+    return VIEW_AZIMUTHS_DEG[int(np.argmax(np.round(shown, 3)))]
