@@ -23,7 +23,7 @@ from structviz.errors import ArgumentError
 from structviz.io import read_model
 from structviz.report.results_json import results_text
 from structviz.report.summary import show
-from structviz.report.write import Written, checked_target, write_outputs
+from structviz.report.write import RESULTS, Written, checked_target, write_outputs
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -108,7 +108,9 @@ def _number(text: str, where: str, *, whole: bool) -> float | int:
 
 def _show(analysis: Analysis, written: Written | None, *, as_json: bool) -> None:
     if as_json:
-        sys.stdout.write(results_text(analysis))
+        text = (written.folder / RESULTS).read_bytes() if written else results_text(analysis).encode("utf-8", "backslashreplace")
+        sys.stdout.flush()
+        sys.stdout.buffer.write(text)  # UTF-8 whatever the terminal speaks: it is meant for programs
         return
     from rich.console import Console
 

@@ -5,6 +5,7 @@ Names and messages come from users' files: they are laid out as plain text, neve
 
 from __future__ import annotations
 
+import re
 from collections import Counter, defaultdict
 from collections.abc import Iterable, Iterator, Sequence
 from typing import TYPE_CHECKING, NamedTuple
@@ -31,6 +32,7 @@ LOOSE_DEG = 30.0  # a regime with a wider cone is called poorly determined
 FAR_DEG = 30.0  # a reading further than this from the stress that is followed is marked
 TOLD_ALREADY = {"conflict", "undetermined", "no-regime", "shape-ratio-open"}  # checks whose findings the lines above them tell
 MARKS = {"error": ("!", "bold red"), "warning": ("!", "yellow"), "note": ("-", "dim")}
+NUMBER = re.compile(r"\d+(?:\.\d+)?")
 COLOUR = {"conflicting": "bold red", "consistent": "green", "undetermined": "yellow"}
 SHORT_CAUTION = "A screening aid: it tests geometry against declared movement, not stress magnitude, stability or hazard."
 
@@ -126,7 +128,8 @@ def _head(analysis: Analysis) -> Iterator[RenderableType]:
 def _shmax(regime: Regime) -> str:
     azimuth = round(regime.shmax_deg) % 180
     point = round(azimuth / 22.5) % 8
-    return f"{azimuth:03d} ± {regime.shmax_half_width_deg:.0f}° ({POINTS[point]}-{POINTS[point + 8]})"
+    ends = (POINTS[point], POINTS[point + 8]) if point <= 4 else (POINTS[point + 8], POINTS[point])  # NW-SE rather than SE-NW
+    return f"{azimuth:03d} ± {regime.shmax_half_width_deg:.0f}° ({'-'.join(ends)})"
 
 
 def _axes(regime: Regime) -> RenderableType:
@@ -211,14 +214,11 @@ def _others(analysis: Analysis) -> Iterator[RenderableType]:
     words = Counter(result.verdict.word for result in analysis.faults)
     if words["consistent"]:
         yield _line((f"{words['consistent']} consistent", COLOUR["consistent"]), (" with the others.", ""))
-    groups: dict[str, list[str]] = defaultdict(list)
-    for result in analysis.faults:
-        if result.verdict.word == "undetermined":
-            groups[_group(result)].append(result.fault.name)
-    if not groups:
+    unknown = [result for result in analysis.faults if result.verdict.word == "undetermined"]
+    if not unknown:
         return
     yield _line((f"{words['undetermined']} undetermined", COLOUR["undetermined"]), (":", ""))
-    ranked = sorted(groups.items(), key=lambda item: (-len(item[1]), item[0]))
+    ranked = _by_reason(unknown)
     table = _grid("right", "left")
     for reason, names in ranked[:MOST_ROWS]:
         _row(table, str(len(names)), f"{reason}: {_listed(names)}" if len(names) < len(analysis.faults) else reason)
@@ -228,14 +228,27 @@ def _others(analysis: Analysis) -> Iterator[RenderableType]:
     yield table
 
 
-def _group(result: FaultResult) -> str:
-    """Return the reason for an undetermined verdict without the numbers that differ from fault to fault."""
-    reason = printable(result.verdict.reasons[0]) if result.verdict.reasons else "no reason given"
-    for mark in (" (", ": "):
-        head, found, _ = reason.partition(mark)
-        if found and len(head) > 8:
-            reason = head
-    return " ".join(word for word in reason.split() if not word.isdigit()) if "outside the declared" in reason else reason
+def _by_reason(results: Iterable[FaultResult]) -> list[tuple[str, list[str]]]:
+    """Return reasons with the faults they hold for, commonest first; reasons that differ only in their numbers are one."""
+    groups: dict[str, list[tuple[str, str]]] = defaultdict(list)
+    for result in results:
+        reason = printable(result.verdict.reasons[0]) if result.verdict.reasons else "no reason given"
+        short = re.sub(r" \([^()]*\)", "", reason)
+        groups[NUMBER.sub("#", short)].append((short, result.fault.name))
+    rows = [(_ranged([short for short, _ in found]), [name for _, name in found]) for found in groups.values()]
+    return sorted(rows, key=lambda row: (-len(row[1]), row[0]))
+
+
+def _ranged(texts: Sequence[str]) -> str:
+    """Return texts that differ only in their numbers as one, each number as the range it goes over.
+
+    >>> _ranged(["dips 86 deg", "dips 90 deg", "dips 88 deg"])
+    'dips 86-90 deg'
+    """
+    columns = zip(*(NUMBER.findall(text) for text in texts))
+    ends = [(min(column, key=float), max(column, key=float)) for column in columns]
+    ranges = iter([low if low == high else f"{low}-{high}" for low, high in ends])
+    return NUMBER.sub(lambda found: next(ranges), texts[0])
 
 
 def _listed(names: Sequence[str], most: int = 3) -> str:

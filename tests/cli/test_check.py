@@ -58,6 +58,15 @@ def test_json_goes_to_standard_output_alone(wrong: Path, capsys: pytest.CaptureF
     assert err == ""
 
 
+def test_json_is_that_of_the_folder_and_utf8_everywhere(structviz: Run, wrong: Path, tmp_path: Path) -> None:
+    shutil.copytree(wrong, tmp_path / "m")
+    table = tmp_path / "m" / "faults.csv"
+    table.write_text(table.read_text(encoding="utf-8").replace("F01,", "Føre 断层,", 1), encoding="utf-8")
+    done = structviz("check", tmp_path / "m", "--json", "--out", tmp_path / "out", "--no-pictures", *QUICK, PYTHONIOENCODING="ascii")
+    assert done.stdout == (tmp_path / "out" / "results.json").read_text(encoding="utf-8")
+    assert json.loads(done.stdout)["faults"][0]["name"] == "Føre 断层"
+
+
 def test_the_same_call_prints_the_same_bytes(structviz: Run, wrong: Path) -> None:
     first, second = (structviz("check", wrong, "--json", *QUICK, PYTHONHASHSEED=seed) for seed in ("1", "2"))
     assert first.stdout == second.stdout != ""

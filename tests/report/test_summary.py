@@ -80,6 +80,14 @@ def test_the_regime_comes_first_then_the_conflicts(analysis: Analysis) -> None:
         assert result.fault.declared.text in row
 
 
+@pytest.mark.parametrize(
+    ("azimuth", "want"), [(0.2, "000 ± 5° (N-S)"), (179.9, "000 ± 5° (N-S)"), (135.0, "135 ± 5° (NW-SE)"), (90.0, "090 ± 5° (E-W)")]
+)
+def test_shmax_has_its_compass_points(analysis: Analysis, azimuth: float, want: str) -> None:
+    regime = replace(analysis.regimes[0], shmax_deg=azimuth, shmax_half_width_deg=5.0)
+    assert f"SHmax {want}" in shown(replace(analysis, regimes=(regime,)))
+
+
 def test_r_is_told_in_both_cases(analysis: Analysis) -> None:
     def with_ratio(ratio: ShapeRatio | None) -> str:
         return shown(replace(analysis, regimes=(replace(analysis.regimes[0], shape_ratio=ratio),)))
@@ -119,6 +127,7 @@ def test_undetermined_faults_are_grouped_by_reason(analysis: Analysis) -> None:
         for result, reason in zip(analysis.faults, reasons)
     ]
     text = shown(replace(analysis, faults=(*faults, *analysis.faults[3:])))
+    assert re.search(r"2  no movement is declared: ", text)
     assert re.search(r"2  the slip is near the edge of the declared sector: ", text)
 
 
