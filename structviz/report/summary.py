@@ -135,14 +135,14 @@ def _shmax(regime: Regime) -> str:
 def _axes(regime: Regime) -> RenderableType:
     trends, plunges = trend_plunge_deg(regime.axes)
     shown = [f"sigma{k + 1} {round(float(trends[k])) % 360:03d}/{float(plunges[k]):02.0f} ± {regime.cones_deg[k]:.0f}°" for k in range(3)]
-    return _line(("   ".join(shown), ""), ("   trend/plunge", "dim"), indent=2)
+    return _line(("   ".join(shown), ""), indent=2)
 
 
 def _ratio(regime: Regime) -> str:
     ratio = regime.shape_ratio
     if ratio is None:
-        return "R not resolved by the data: every prediction covers its whole range."
-    return f"R = {ratio.value:.2f} ({ratio.low:.2f} to {ratio.high:.2f}), resolved by the data."
+        return "Trend/plunge ± 95 % cone. R is not resolved: predictions cover all of it."
+    return f"Trend/plunge ± 95 % cone. R = {ratio.value:.2f} ({ratio.low:.2f} to {ratio.high:.2f}), resolved by the data."
 
 
 def _readings(analysis: Analysis) -> Iterator[RenderableType]:

@@ -92,7 +92,7 @@ def test_r_is_told_in_both_cases(analysis: Analysis) -> None:
     def with_ratio(ratio: ShapeRatio | None) -> str:
         return shown(replace(analysis, regimes=(replace(analysis.regimes[0], shape_ratio=ratio),)))
 
-    assert "R not resolved by the data" in with_ratio(None)
+    assert "R is not resolved: predictions cover all of it" in with_ratio(None)
     assert "R = 0.40 (0.30 to 0.55), resolved" in with_ratio(ShapeRatio(0.4, 0.3, 0.55))
 
 
