@@ -25,4 +25,4 @@ VERDICTS = {
     "conflicting": Look("#a33a1c", 2.2, ()),
     "undetermined": Look("#d9cba6", 1.0, (4.0, 2.5)),
 }
-SIGMA = ("#22303c", "#8a7a9c", "#c98f1b")  # sigma1 dark, sigma2 middling, sigma3 light
+SIGMA = ("#22303c", "#7a6a8e", "#d9a12b")  # sigma1 dark, sigma2 middling, sigma3 light

@@ -111,7 +111,7 @@ def _aim(plotter: Any, scene: Scene) -> None:
     seen = np.array(list(product(*zip(scene.low, scene.high, strict=True))))
     seen = np.concatenate([seen, *[g.place + g.size_m * np.concatenate([g.axes, -g.axes]) for g in scene.glyphs]]) - centre
     across, high = seen @ right, seen @ above
-    camera.parallel_scale = max(np.ptp(high) / 0.78, np.ptp(across) / 0.90 / (PIXELS[0] / PIXELS[1])) / 2
+    camera.parallel_scale = max(np.ptp(high) / 0.78, np.ptp(across) / 0.84 / (PIXELS[0] / PIXELS[1])) / 2
     # The title stands above the model: its middle sits a little under that of the picture.
     shift = above * ((high.max() + high.min()) / 2 + 0.09 * camera.parallel_scale) + right * (across.max() + across.min()) / 2
     camera.focal_point, camera.position = centre + shift, centre + shift + 3 * size * towards

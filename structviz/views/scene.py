@@ -78,7 +78,7 @@ def build_scene(analysis: Analysis) -> Scene:
         subtitle=analysis.model.title,
         origin=origin,
         surfaces=tuple(_surface(result, origin) for result in analysis.faults),
-        glyphs=_glyphs(analysis, origin, size, azimuth),
+        glyphs=_glyphs(analysis, origin, _beside(azimuth, size, low, high), size),
         labels=_labels(analysis.faults, origin),
         low=low,
         high=high,
@@ -92,11 +92,11 @@ def _surface(result: FaultResult, origin: Floats) -> SceneSurface:
     return SceneSurface(result.fault.name, result.verdict.word, surface.vertices - origin, surface.triangles)
 
 
-def _glyphs(analysis: Analysis, origin: Floats, size: float, azimuth_deg: float) -> tuple[StressGlyph, ...]:
+def _glyphs(analysis: Analysis, origin: Floats, beside: Floats, size: float) -> tuple[StressGlyph, ...]:
     """Return one glyph for the regime, beside the model at the near left, and small ones where the heaviest pairs meet, well apart."""
     if not analysis.regimes:
         return ()
-    glyphs = [StressGlyph(_beside(azimuth_deg, size), analysis.regimes[0].axes, 0.075 * size)]
+    glyphs = [StressGlyph(beside, analysis.regimes[0].axes, 0.075 * size)]
     apart = 0.13 * size
     for axes, place in zip(analysis.pairs.axes, analysis.pairs.places - origin, strict=True):
         if len(glyphs) > MOST_GLYPHS:
@@ -106,11 +106,12 @@ def _glyphs(analysis: Analysis, origin: Floats, size: float, azimuth_deg: float)
     return tuple(glyphs)
 
 
-def _beside(azimuth_deg: float, size: float) -> Floats:
+def _beside(azimuth_deg: float, size: float, low: Floats, high: Floats) -> Floats:
     """Return a place at the near left of the model as seen from an azimuth, (3,) m from the origin."""
     a = np.radians(azimuth_deg)
     towards, right = np.array([np.sin(a), np.cos(a), 0.0]), np.array([-np.cos(a), np.sin(a), 0.0])
-    return size * (0.42 * towards - 0.34 * right)
+    corners = np.array([[x, y, 0.0] for x in (low[0], high[0]) for y in (low[1], high[1])])
+    return (0.72 * (corners @ towards).max() + 0.09 * size) * towards + 0.68 * (corners @ right).min() * right
 
 
 def _labels(results: Sequence[FaultResult], origin: Floats) -> tuple[Label, ...]:
