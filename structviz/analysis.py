@@ -101,6 +101,7 @@ class Analysis:
     findings: tuple[Finding, ...]
     cautions: tuple[str, ...]
     version: str
+    limits: Mapping[str, float] = field(default_factory=dict)  # of every check that was run
 
     @property
     def conflicting(self) -> tuple[FaultResult, ...]:
@@ -145,8 +146,9 @@ def run(
     regimes = tuple(reading.regime for reading in readings if reading.key == "joint" and reading.regime)
     tell("checking", 0, 1)
     evidence_for_checks = Examined(model, tuple(r.measured for r in results), pairs, readings, regimes, tuple(r.verdict for r in results))
-    findings = model.findings + checks.run(evidence_for_checks, limits or {})
-    return Analysis(model, settings, results, pairs, readings, regimes, findings, CAUTIONS, __version__)
+    used = checks.checked_limits(limits or {})
+    findings = model.findings + checks.run(evidence_for_checks, used)
+    return Analysis(model, settings, results, pairs, readings, regimes, findings, CAUTIONS, __version__, used)
 
 
 def _examine(model: FaultModel, settings: Settings, tell: Progress) -> tuple[_Examination, NDArray[np.int64]]:

@@ -59,6 +59,8 @@ class Parser(argparse.ArgumentParser):
 def entry(argv: Sequence[str] | None = None) -> int:
     """Return the exit code of a command line; every message goes to standard error, every result to standard output."""
     arguments = list(sys.argv[1:] if argv is None else argv)
+    # Our arrays are many and short: threads inside one product cost more than they save. Must be set before NumPy is loaded.
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
     _tolerate_any_text()
     try:
         code = _dispatch(arguments)

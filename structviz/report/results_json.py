@@ -40,6 +40,7 @@ def results(analysis: Analysis, *, meshes: Mapping[str, str] | None = None, outp
         "structviz": analysis.version,
         "model": _model(analysis.model),
         "settings": asdict(analysis.settings),
+        "limits": dict(analysis.limits),
         "cautions": list(analysis.cautions),
         "summary": {word: words.count(word) for word in ("consistent", "conflicting", "undetermined")},
         "faults": [_fault(result, (meshes or {}).get(result.fault.name)) for result in analysis.faults],

@@ -25,7 +25,7 @@ from structviz.views.scene import Label, Scene
 Floats = NDArray[np.float64]
 
 PIXELS = (2000, 1400)
-ELEVATION_DEG = 33.0
+ELEVATION_DEG = 38.0
 FONT = "DejaVu Sans"
 GLYPH_COLOURS = {"lens": "#efe3c4", "thumb": SIGMA[0]}
 CONTEXT_OPACITY = 0.55  # faults that nobody doubts step back, so that the others and the glyphs are seen
@@ -165,7 +165,8 @@ def _ticks(axes: Axes, project: Any, origin: Floats, axis: int, start: Floats, e
         x, y = project(end[None])[0]
         axes.text(x + off[0], y + 26, f"{word}, m", fontsize=6.5, color=FAINT, ha="center", family=FONT)
     else:
-        axes.text(x + push * off[0], y + push * off[1], f"{word}, m", fontsize=7, color=FAINT, ha=align, va="center", family=FONT)
+        x, y = np.clip(x + push * off[0], 80, PIXELS[0] - 80), y + push * off[1]
+        axes.text(x, y, f"{word}, m", fontsize=7, color=FAINT, ha="center", va="center", family=FONT)
 
 
 def _round_step(length: float) -> float:

@@ -111,7 +111,7 @@ def _beside(azimuth_deg: float, size: float, low: Floats, high: Floats) -> Float
     a = np.radians(azimuth_deg)
     towards, right = np.array([np.sin(a), np.cos(a), 0.0]), np.array([-np.cos(a), np.sin(a), 0.0])
     corners = np.array([[x, y, 0.0] for x in (low[0], high[0]) for y in (low[1], high[1])])
-    return (0.72 * (corners @ towards).max() + 0.09 * size) * towards + 0.68 * (corners @ right).min() * right
+    return (0.85 * (corners @ towards).max() + 0.14 * size) * towards + 0.74 * (corners @ right).min() * right
 
 
 def _labels(results: Sequence[FaultResult], origin: Floats) -> tuple[Label, ...]:
