@@ -17,7 +17,9 @@ from structviz.checks.registry import Examined
 from structviz.errors import ArgumentError
 from structviz.kinematics.declared import usable_sector
 from structviz.kinematics.senses import Sector
-from structviz.model import Fault, FaultModel, Finding
+from structviz.model import Fault, FaultModel, Finding, Stria
+from structviz.orientation.planes import normals as plane_normals
+from structviz.orientation.planes import slip_vectors
 from structviz.stress.conjugate import PairLimits, Pairs
 from structviz.stress.evidence import EvidenceModel, FaultEvidence, gather, sector_edges
 from structviz.stress.joint import Terms, infer
@@ -25,6 +27,7 @@ from structviz.stress.pairing import CURVED_DEG, PairSubjects, admissible_pairs,
 from structviz.stress.readings import pair_frames, regime_of_frames, shape_ratio_of
 from structviz.stress.regime import Reading, Regime
 from structviz.stress.replicates import Posterior, bootstrap_counts
+from structviz.stress.slip_lines import OFF_PLANE_DEG, SlipLines, gather_lines, off_plane_deg
 from structviz.stress.verdict import Verdict, VerdictLimits, judge, likely_causes, undetermined
 from structviz.surfaces.measure import measure
 from structviz.surfaces.proximity import candidate_pairs, nearest_approach
@@ -134,7 +137,7 @@ def run(
     tell("pairing faults", 0, 1)
     subjects, geometric, pairs = _pair(examined, settings)
     tell("inferring stress", 0, 1)
-    evidence = _evidence(examined, subjects, geometric)
+    evidence = _evidence(examined, model.striae, subjects, geometric)
     counts = bootstrap_counts(len(examined.faults), settings.replicates, settings.random_state)
     readings, joint = _read(evidence, geometric, pairs, counts, settings)
     verdicts = _judge_all(examined, joint, settings, tell)
@@ -231,10 +234,34 @@ def _facets(measured: MeasuredSurface, stations: Stations) -> tuple[Floats, Floa
     return stations.normals[rows], np.ones(len(rows))
 
 
-def _evidence(examined: _Examination, subjects: PairSubjects, geometric: Pairs) -> FaultEvidence:
+def _evidence(examined: _Examination, striae: Sequence[Stria], subjects: PairSubjects, geometric: Pairs) -> FaultEvidence:
     facets = [_facets(m, s) for m, s in zip(examined.measured, examined.stations, strict=True)]
     support = partner_support(geometric, len(examined.faults))
-    return gather([f[0] for f in facets], [f[1] for f in facets], examined.sectors, support, subjects.known)
+    slips = _slip_lines(examined, striae)
+    return gather([f[0] for f in facets], [f[1] for f in facets], examined.sectors, support, subjects.known, slips)
+
+
+def _slip_lines(examined: _Examination, striae: Sequence[Stria]) -> SlipLines:
+    """Return the striae of each fault that lie on its surface; those farther off it are told by a check and not used.
+
+    The plane of a stria is the one it was measured on; where its sense is known the line points with the hanging wall.
+    """
+    rows = []
+    for fault, stations in zip(examined.faults, examined.stations, strict=True):
+        mine = [stria for stria in striae if stria.fault == fault.name]
+        normals = plane_normals([s.strike_deg for s in mine], [s.dip_deg for s in mine]).reshape(-1, 3)
+        lines = slip_vectors(normals, np.array([s.rake_deg for s in mine], float)).reshape(-1, 3)
+        here = np.array([_nearest_normal(stations, stria.place) for stria in mine]).reshape(-1, 3)
+        on = off_plane_deg(lines, here) <= OFF_PLANE_DEG
+        signed, weights = np.array([s.declared is not None for s in mine], bool), np.array([s.weight for s in mine], float)
+        rows.append((normals[on], lines[on], signed[on], weights[on]))
+    return gather_lines(*zip(*rows, strict=True))  # type: ignore[arg-type]
+
+
+def _nearest_normal(stations: Stations, place: Sequence[float]) -> Floats:
+    if not np.isfinite(place).all():
+        return stations.normals.mean(0)
+    return stations.normals[((stations.places - np.asarray(place)) ** 2).sum(1).argmin()]
 
 
 def _read(
@@ -250,14 +277,14 @@ def _read(
         _pair_reading("pairs", "pairs with senses", pairs, some, "no admissible pair has senses that agree on one stress"),
     ]
     declared = int(evidence.declared.sum())
-    senses = infer(evidence, odds, Terms(geometry=False), some) if declared >= 2 else None
+    senses = infer(evidence, odds, Terms(geometry=False, lines=False), some) if declared >= 2 else None
     readings.append(
         _posterior_reading(
             "senses", "senses of all faults", senses, declared, "fewer than two faults declare a movement that can be tested"
         )
     )
-    joint = infer(evidence, odds, Terms(), counts) if declared >= 2 or len(geometric) else None
-    speaking = int((evidence.declared | (evidence.partnered > 0)).sum())
+    speaking = int((evidence.declared | evidence.measured | (evidence.partnered > 0)).sum())
+    joint = infer(evidence, odds, Terms(), counts) if speaking >= 2 else None
     readings.append(
         _posterior_reading("joint", "all evidence together", joint, speaking, "no admissible pair and fewer than two declared movements")
     )

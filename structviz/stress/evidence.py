@@ -17,6 +17,7 @@ from numpy.typing import NDArray
 
 from structviz.kinematics.senses import RAKE_OF_WORD, Sector
 from structviz.orientation.planes import slip_vectors
+from structviz.stress.slip_lines import SlipLines, no_lines
 
 Floats = NDArray[np.float64]
 
@@ -34,6 +35,8 @@ class EvidenceModel:
     obtuse_share: float = 0.1  # of those, the share at the obtuse angle
     wrong_label_share: float = 0.2
     shear_softness: float = 0.5  # in shares of the greatest shear: how blurred the edge of a sector is
+    line_scatter_deg: float = 15.0  # of measured slip about the resolved shear
+    wrong_line_share: float = 0.25  # of slip lines that tell of something else; a third is still outvoted
     obtuse_scatter: float = 1.5  # scatter at the obtuse angle, in units of plane_scatter_deg
 
 
@@ -46,6 +49,7 @@ class FaultEvidence:
     edges: Floats  # (F, M, 2, 3) unit in-plane directions towards which the slip must point; zero where not declared
     partnered: Floats  # (F,) 0 to 1, how good a conjugate partner the fault has
     geometry_known: NDArray[np.bool_]  # (F,) False where a mean plane says nothing
+    slips: SlipLines  # measured slip lines of each fault
 
     def __len__(self) -> int:
         return len(self.normals)
@@ -54,6 +58,16 @@ class FaultEvidence:
     def declared(self) -> NDArray[np.bool_]:
         """Whether a movement is declared, (F,)."""
         return np.abs(self.edges).sum((1, 2, 3)) > 0
+
+    @property
+    def measured(self) -> NDArray[np.bool_]:
+        """Whether slip was measured, (F,)."""
+        return self.slips.weights.sum(1) > 0
+
+    def part(self, rows: slice) -> FaultEvidence:
+        """Return the evidence of some of the faults."""
+        arrays = (self.normals, self.shares, self.edges, self.partnered, self.geometry_known)
+        return FaultEvidence(*(values[rows] for values in arrays), self.slips.part(rows))
 
 
 def sector_edges(normals: Floats, sector: Sector | None) -> Floats:
@@ -79,6 +93,7 @@ def gather(
     sectors: Sequence[Sector | None],
     partnered: Floats,
     geometry_known: NDArray[np.bool_],
+    slips: SlipLines | None = None,
 ) -> FaultEvidence:
     """Return the evidence of faults given by their facets, padded to one shape with facets of no weight."""
     most = max((len(rows) for rows in normals), default=1)
@@ -88,7 +103,8 @@ def gather(
         padded[number, : len(rows)] = rows
         weight[number, : len(rows)] = share / share.sum()
         edges[number, : len(rows)] = sector_edges(rows, sector)
-    return FaultEvidence(padded, weight, edges, np.asarray(partnered, float), np.asarray(geometry_known, bool))
+    known = np.asarray(geometry_known, bool)
+    return FaultEvidence(padded, weight, edges, np.asarray(partnered, float), known, slips or no_lines(count))
 
 
 def geometry_term(evidence: FaultEvidence, frames: NDArray[Any], odds: EvidenceModel) -> Floats:

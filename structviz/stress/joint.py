@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from structviz.stress.evidence import EvidenceModel, FaultEvidence, geometry_term, sense_term
 from structviz.stress.frames import all_frames, ball, turn_between, turned
 from structviz.stress.replicates import Posterior, replicate
+from structviz.stress.slip_lines import slip_term
 
 Floats = NDArray[np.float64]
 
@@ -34,6 +35,7 @@ class Terms:
 
     geometry: bool = True
     senses: bool = True
+    lines: bool = True
 
 
 def log_likelihood(evidence: FaultEvidence, frames: NDArray[Any], ratios: Floats, odds: EvidenceModel, terms: Terms) -> Floats:
@@ -43,19 +45,15 @@ def log_likelihood(evidence: FaultEvidence, frames: NDArray[Any], ratios: Floats
         total += geometry_term(evidence, frames, odds)[..., None]
     if terms.senses:
         total += sense_term(evidence, frames, ratios, odds)
+    if terms.lines and evidence.measured.any():
+        total += slip_term(evidence.slips, frames, ratios, odds.line_scatter_deg, odds.wrong_line_share)
     return total
-
-
-def _part(evidence: FaultEvidence, rows: slice) -> FaultEvidence:
-    return FaultEvidence(
-        evidence.normals[rows], evidence.shares[rows], evidence.edges[rows], evidence.partnered[rows], evidence.geometry_known[rows]
-    )
 
 
 def _sums(evidence: FaultEvidence, frames: NDArray[Any], term: Callable[[FaultEvidence, NDArray[Any]], NDArray[Any]]) -> Floats:
     """Return a term of the likelihood summed over the faults, taken in chunks so that memory stays bounded."""
     chunks = range(0, len(evidence), CHUNK_FAULTS)
-    return sum((term(_part(evidence, slice(start, start + CHUNK_FAULTS)), frames).sum(0, dtype=float) for start in chunks), np.zeros(1))
+    return sum((term(evidence.part(slice(start, start + CHUNK_FAULTS)), frames).sum(0, dtype=float) for start in chunks), np.zeros(1))
 
 
 def survey(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel, terms: Terms) -> tuple[Floats, EvidenceModel]:
@@ -73,10 +71,13 @@ def survey(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel, terms: 
     if terms.senses and evidence.declared.any():
         trust = [replace(odds, wrong_label_share=w, shear_softness=s) for w, s in LABEL_TRUST]
         senses = {o: _sums(evidence, single, lambda e, f, o=o: sense_term(e, f, COARSE_RATIOS, o)) for o in trust}  # type: ignore[misc]
+    lines = np.zeros((1, len(COARSE_RATIOS)))
+    if terms.lines and evidence.measured.any():
+        lines = _sums(evidence, single, lambda e, f: slip_term(e.slips, f, COARSE_RATIOS, odds.line_scatter_deg, odds.wrong_line_share))
     best, best_odds, best_total = -np.inf, odds, np.zeros((len(frames), len(COARSE_RATIOS)))
     for shape, on_axes in geometry.items():
         for label, on_senses in senses.items():
-            total = on_axes[:, None] + on_senses
+            total = on_axes[:, None] + on_senses + lines
             support = np.logaddexp.reduce(total, axis=None) + (np.log(OBTUSE_PRIOR) if shape.obtuse_share > 0.5 else 0.0)
             if support > best:
                 best, best_total = support, total
@@ -145,7 +146,7 @@ def infer(evidence: FaultEvidence, odds: EvidenceModel, terms: Terms, counts: ND
 
 
 def _in_chunks(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel, terms: Terms) -> NDArray[np.float32]:
-    chunks = [_part(evidence, slice(at, at + CHUNK_FAULTS)) for at in range(0, len(evidence), CHUNK_FAULTS)]
+    chunks = [evidence.part(slice(at, at + CHUNK_FAULTS)) for at in range(0, len(evidence), CHUNK_FAULTS)]
     return np.concatenate(
         [log_likelihood(chunk, frames.astype(np.float32), COARSE_RATIOS, odds, terms).astype(np.float32) for chunk in chunks]
     )
