@@ -105,3 +105,19 @@ def test_the_python_block_runs(tmp_path: Path) -> None:
     assert done.returncode == 0, done.stderr
     assert done.stdout.startswith("normal ")
     assert (tmp_path / "out" / "results.json").is_file()
+
+
+def test_the_tour_shows_what_the_tool_says() -> None:
+    """Numbers may move by a unit with the versions of the libraries; every word may not."""
+    shown = re.search(r"```console\n\$ structviz check meshes/model.toml --out out\n(.*?)```", README, re.S)
+    assert shown
+    command = [sys.executable, "-m", "structviz", "check", "meshes/model.toml"]
+    environment = {**os.environ, "COLUMNS": "100", "PYTHONIOENCODING": "utf-8"}
+    done = subprocess.run(command, check=False, cwd=PROJECT, env=environment, capture_output=True, timeout=120)
+    assert done.returncode == 1, done.stderr
+    said = done.stdout.decode("utf-8").split("\nNothing was written")[0]
+
+    def words(text: str) -> list[str]:
+        return re.sub(r"[\d\s]+", " ", text).split()
+
+    assert words(shown.group(1)) == words(said)
