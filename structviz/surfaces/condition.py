@@ -8,47 +8,59 @@ from scipy.sparse import coo_matrix
 from scipy.sparse.csgraph import connected_components
 
 from structviz.surfaces.surface import Condition
-from structviz.surfaces.topology import Topology
+from structviz.surfaces.topology import Topology, connected_rows
 
 Floats = NDArray[np.float64]
 Integers = NDArray[np.int64]
 
 
 def examine(vertices: Floats, triangles: Integers, areas_m2: Floats, topology: Topology) -> Condition:
-    """Return the condition of a surface: rows of defective triangles, edges by vertex, and counts of the rest."""
+    """Return the condition of a surface: rows of defective triangles and vertices, edges by vertex, and counts of the rest."""
     used = np.zeros(len(vertices), bool)
     used[triangles.ravel()] = True
     rims, holes = _rims(topology)
+    pinched = _pinched(topology)
     return Condition(
         duplicate_vertices=len(vertices) - topology.places,
         unused_vertices=int((~used).sum()),
-        zero_area=np.flatnonzero((areas_m2 == 0) | ~topology.good),
+        zero_area=np.flatnonzero(areas_m2 == 0),
         flipped=np.flatnonzero(topology.turned),
         repeated=_repeated(topology),
-        nonmanifold_edges=_edges_by_vertex(topology, topology.edges[topology.edge_uses > 2]),
-        not_orientable=not topology.orientable,
+        nonmanifold_edges=_nonmanifold(topology),
+        not_orientable=bool(topology.unorientable.size),
         rims=rims,
         holes=holes,
-        pinched_vertices=_pinched(topology),
+        pinched_vertices=len(pinched),
+        pinched=_vertices_at(topology, pinched),
+        unorientable_parts=tuple(topology.unorientable.tolist()),
     )
 
 
-def _edges_by_vertex(topology: Topology, edges: Integers) -> Integers:
-    """Return edges given by place as edges given by the first vertex at each place."""
-    first = np.full(topology.places, -1, np.int64)
+def _vertices_at(topology: Topology, places: Integers) -> Integers:
+    """Return the first vertex at each place, in the shape given."""
+    if not places.size:
+        return places
+    first = np.empty(topology.places, np.int64)
     first[topology.welded[::-1]] = np.arange(len(topology.welded))[::-1]
-    return first[edges].reshape(-1, 2)
+    return first[places]
+
+
+def _nonmanifold(topology: Topology) -> Integers:
+    """Return the edges of three or more triangles as pairs of vertices (N, 2), in order of place."""
+    many = np.flatnonzero(topology.uses > 2)
+    ends = np.sort(np.stack([topology.start[many], topology.start[topology.onward[many]]], 1), axis=1)
+    edges = np.unique(ends[:, 0] * topology.places + ends[:, 1]) if many.size else many
+    return _vertices_at(topology, np.stack([edges // topology.places, edges % topology.places], 1))
 
 
 def _repeated(topology: Topology) -> Integers:
     """Return the triangles that stand on the same three places as an earlier one."""
-    rows = np.flatnonzero(topology.good)
+    # A twin shares all three edges: with the same neighbour on each, or with a crowd on one.
+    beside = topology.partner.reshape(-1, 3) // 3
+    shared, crowded = topology.uses.reshape(-1, 3) > 1, topology.uses.reshape(-1, 3) > 2
+    twin = (beside[:, 0] == beside[:, 1]) & (beside[:, 1] == beside[:, 2])
+    rows = topology.rows[shared.all(1) & (twin | crowded.any(1))]
     corners = np.sort(topology.corners[rows], axis=1)
-    # Most surfaces repeat none: a hash that may collide, but never tells equal triangles apart, spares the full sort.
-    low, middle, high = corners.astype(np.uint64).T
-    mixed = (low * np.uint64(0x9E3779B97F4A7C15) + middle) * np.uint64(0xC2B2AE3D27D4EB4F) + high
-    if (np.diff(np.sort(mixed)) != 0).all():
-        return rows[:0]
     order = np.lexsort(corners.T)
     same = np.zeros(len(rows), bool)
     same[order[1:]] = (corners[order[1:]] == corners[order[:-1]]).all(1)
@@ -56,39 +68,35 @@ def _repeated(topology: Topology) -> Integers:
 
 
 def _rims(topology: Topology) -> tuple[int, int]:
-    """Return how many boundary loops there are and how many of them are holes: all but one of each part that has any."""
-    rim = topology.edges[topology.edge_uses == 1]
-    if not len(rim):
+    """Return how many boundary loops there are and how many of them are holes: all but one of each part that has any.
+
+    Loops that touch in a point count as one.
+    """
+    rim = np.flatnonzero(topology.uses == 1)
+    if not rim.size:
         return 0, 0
-    place, at = np.unique(rim, return_inverse=True)
-    at = at.reshape(-1, 2)
-    loops, loop_of = connected_components(coo_matrix((np.ones(len(at)), at.T), shape=(len(place),) * 2), directed=False)
-    part_at = np.full(topology.places, -1, np.int64)
-    rows = topology.good
-    part_at[topology.corners[rows].ravel()] = np.repeat(topology.part_of[rows], 3)
+    ends = np.stack([topology.start[rim], topology.start[topology.onward[rim]]])
+    place, at = np.unique(ends, return_inverse=True)
+    at = at.reshape(2, -1)
+    loops, loop_of = connected_components(coo_matrix((np.ones(len(rim), np.int8), at), shape=(len(place),) * 2), directed=False)
     part_of_loop = np.empty(loops, np.int64)
-    part_of_loop[loop_of] = part_at[place]
+    part_of_loop[loop_of[at[0]]] = topology.part_of[topology.rows[rim // 3]]
     return int(loops), int(loops - len(np.unique(part_of_loop)))
 
 
-def _pinched(topology: Topology) -> int:
-    """Return at how many places the surface touches itself in a point: triangles meet there without a chain of shared edges.
+def _pinched(topology: Topology) -> Integers:
+    """Return the places where the surface touches itself in a point: triangles meet there without a chain of shared edges.
 
     Corners of triangles at one place are joined where their triangles share an edge that ends there; a place whose corners
     fall into more than one chain is pinched. Open fans at rims are one chain and do not count.
     """
-    corners = topology.corners[topology.good]
-    count = corners.size
-    place = corners.ravel()
-    after = np.arange(count).reshape(-1, 3)[:, [1, 2, 0]].ravel()  # corner at the end of the side that begins at each corner
-    rising = place < place[after]
-    low_corner, high_corner = np.where(rising, np.arange(count), after), np.where(rising, after, np.arange(count))
-    meets = np.ones(count, bool)
-    meets[topology.edge_start] = False  # every side but the first of its edge meets the one before it
-    two = np.flatnonzero(meets)
-    one, two = topology.sides[two - 1], topology.sides[two]
-    links = np.concatenate([np.stack([low_corner[one], low_corner[two]], 1), np.stack([high_corner[one], high_corner[two]], 1)])
-    chains, chain_of = connected_components(coo_matrix((np.ones(len(links), np.int8), links.T), shape=(count, count)), directed=False)
+    partner, onward = topology.partner, topology.onward
+    beyond = onward[partner]
+    # Corner c begins side c. A partner that runs the other way has its own beginning at the far end.
+    at_start = np.where(topology.against, partner, beyond)
+    at_end = np.empty_like(at_start)
+    at_end[onward] = np.where(topology.against, beyond, partner)
+    chain_of, chains = connected_rows(np.stack([at_start, at_end], 1))
     place_of_chain = np.empty(chains, np.int64)
-    place_of_chain[chain_of] = place
-    return int((np.bincount(place_of_chain, minlength=1) > 1).sum())
+    place_of_chain[chain_of] = topology.start
+    return np.flatnonzero(np.bincount(place_of_chain, minlength=1) > 1)

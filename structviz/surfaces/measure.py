@@ -8,9 +8,9 @@ from numpy.typing import NDArray
 from structviz.errors import SurfaceError
 from structviz.orientation.planes import strike_dip_deg
 from structviz.orientation.statistics import fisher_mean
-from structviz.orientation.vectors import axial_angle_deg, unit
+from structviz.orientation.vectors import angle_deg, unit
 from structviz.surfaces.condition import examine
-from structviz.surfaces.geometry import areas_and_normals, panels
+from structviz.surfaces.geometry import areas_and_normals, middles, panels
 from structviz.surfaces.surface import MeasuredSurface, Part, Surface
 from structviz.surfaces.topology import Topology, topology
 
@@ -22,6 +22,7 @@ STEEP_DEG = 80.0  # parts this steep share the hanging wall of the largest part
 STRAY_SHARE = 0.05  # parts under this share of the area say nothing about the mean
 APART_DEG = 45.0  # parts whose planes differ by more have no meaningful mean
 LEAST_RESULTANT = 0.6  # |sum of area times normal| over area; below, the surface faces every way
+FARTHEST_M = 1e10  # no map frame of the earth reaches so far; beyond, squares of lengths overflow
 CONE_PANELS = 16  # neighbouring triangles repeat each other: the cone counts panels of the surface, not triangles
 
 
@@ -34,18 +35,18 @@ def measure(surface: Surface) -> MeasuredSurface:
     """
     _check(surface)
     origin = surface.vertices.mean(0)
-    corners = (surface.vertices - origin)[surface.triangles]
-    areas, normals = areas_and_normals(corners)
+    corners = np.take(surface.vertices - origin, surface.triangles, axis=0)
+    areas, normals = areas_and_normals(corners, rounding=4 * np.finfo(float).eps * float(np.abs(surface.vertices).max()))
     if not areas.sum() > 0:
         raise SurfaceError(
             surface.source or surface.name, "only triangles without area", "at least one triangle with area", hint="export again"
         )
-    joined = topology(surface.vertices, surface.triangles)
+    joined = topology(surface.vertices, surface.triangles, areas)
+    centroids = middles(corners)
     normals[joined.turned] *= -1
-    centroids = corners.mean(1)
-    normals = normals * _signs(normals, areas, joined)[joined.sheet_of, None]
+    normals *= _signs(normals, areas, joined)[joined.sheet_of, None]
     parts = _part_list(normals, areas, joined.part_of, joined.parts)
-    mean = _mean_normal(normals, areas, branched=joined.sheets > joined.parts or not joined.orientable)
+    mean = _mean_normal(normals, areas, branched=joined.sheets > joined.parts or bool(joined.unorientable.size))
     strike, dip = strike_dip_deg(mean)
     why_not = _why_no_mean(normals, areas, parts)
     return MeasuredSurface(
@@ -65,6 +66,11 @@ def _check(surface: Surface) -> None:
         raise SurfaceError(
             name, found, "finite coordinates", hint="remove the undefined nodes where the surface was gridded, and export again"
         )
+    if np.abs(vertices).max() > FARTHEST_M:
+        raise SurfaceError(
+            name, f"coordinates up to {np.abs(vertices).max():.3g} m", f"coordinates within {FARTHEST_M:.0e} m",
+            hint="undefined nodes of a grid are often written as 1e30: remove them, and export again",
+        )  # fmt: skip
     if triangles.min() < 0 or triangles.max() >= len(vertices):
         raise SurfaceError(
             name, f"a triangle that names vertex {triangles.max()}", f"vertices 0 to {len(vertices) - 1}", hint="export again"
@@ -101,8 +107,9 @@ def _part_list(normals: Floats, areas: Floats, part_of: Integers, parts: int) ->
     sums = np.stack([np.bincount(part_of, areas * normals[:, k], minlength=parts) for k in range(3)], 1)
     means = unit(sums)
     strikes, dips = strike_dip_deg(means)
-    off = axial_angle_deg(normals, means[part_of]) ** 2 * (areas > 0)
-    spread = np.sqrt(np.bincount(part_of, areas * off, minlength=parts) / np.where(size > 0, size, 1.0))
+    agree = np.abs(np.einsum("tk,tk->t", normals, means[part_of]))
+    off = np.degrees(np.arccos(np.minimum(agree, 1.0)))
+    spread = np.sqrt(np.bincount(part_of, areas * off**2, minlength=parts) / size)
     count = np.bincount(part_of, minlength=parts)
     return tuple(
         Part(int(count[k]), float(size[k]), tuple(means[k].tolist()), float(strikes[k]), float(dips[k]), float(spread[k]))
@@ -111,18 +118,27 @@ def _part_list(normals: Floats, areas: Floats, part_of: Integers, parts: int) ->
 
 
 def _why_no_mean(normals: Floats, areas: Floats, parts: tuple[Part, ...]) -> str:
-    total = areas.sum()
-    main = max(parts, key=lambda part: part.area_m2)
-    for part in parts:
-        if part.area_m2 >= STRAY_SHARE * total and axial_angle_deg(np.array(part.normal), np.array(main.normal)) > APART_DEG:
-            return (
-                f"its parts lie {float(axial_angle_deg(np.array(part.normal), np.array(main.normal))):.0f} deg apart "
-                f"(strike/dip {main.strike_deg:03.0f}/{main.dip_deg:02.0f} and {part.strike_deg:03.0f}/{part.dip_deg:02.0f})"
-            )
+    """Return in words why the mean plane says nothing; empty where it does."""
+    total = float(areas.sum())
+    notable = [part for part in parts if part.area_m2 >= STRAY_SHARE * total]
+    if len(notable) > 1:
+        apart = angle_deg(np.array([part.normal for part in notable[1:]]), np.array(notable[0].normal))
+        planes = np.minimum(apart, 180.0 - apart)
+        # Parts that dip opposite ways first: their mean dips as neither of them, even where the planes are steep and not far apart.
+        worst = int(np.argmax(np.where(apart > 90.0, 180.0, 0.0) + planes))
+        pair = f"(strike/dip {_plane(notable[0])} and {_plane(notable[1 + worst])})"
+        if apart[worst] > 90.0:
+            return f"its parts dip opposite ways {pair}"
+        if planes[worst] > APART_DEG:
+            return f"its parts lie {planes[worst]:.0f} deg apart {pair}"
     resultant = float(np.linalg.norm(np.einsum("t,tk->k", areas, normals)) / total)
     if resultant < LEAST_RESULTANT:
         return f"it faces every way (mean resultant {resultant:.2f})"
     return ""
+
+
+def _plane(part: Part) -> str:
+    return f"{part.strike_deg:03.0f}/{part.dip_deg:02.0f}"
 
 
 def _cone_deg(centroids: Floats, normals: Floats, areas: Floats) -> float:

@@ -47,7 +47,9 @@ class Condition:
     not_orientable: bool = False  # no consistent winding exists (a Moebius strip)
     rims: int = 0  # closed boundary loops
     holes: int = 0  # boundary loops beyond the outer one of each part
-    pinched_vertices: int = 0  # vertices where the surface touches itself in a point
+    pinched_vertices: int = 0  # places where the surface touches itself in a point
+    pinched: Integers = field(default_factory=lambda: np.zeros(0, np.int64))  # the first vertex at each of them
+    unorientable_parts: tuple[int, ...] = ()  # parts without a consistent winding
 
 
 @dataclass(frozen=True, eq=False)

@@ -1,4 +1,8 @@
-"""How triangles hang together: welding by place, edges, parts, one winding a part. The geometry itself is never changed."""
+"""How triangles hang together: welding by place, edges, parts, one winding a part. The geometry itself is never changed.
+
+A side is one of the three sides of a triangle; the sides of all triangles that lie on the same edge are partners. Side 3g + k
+runs from corner k to the next corner of the g-th triangle that has three different places.
+"""
 
 from __future__ import annotations
 
@@ -6,11 +10,12 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.sparse import coo_matrix
+from scipy.sparse import csr_matrix
 from scipy.sparse.csgraph import breadth_first_order, connected_components
 
 Floats = NDArray[np.float64]
 Integers = NDArray[np.int64]
+Booleans = NDArray[np.bool_]
 
 
 @dataclass(frozen=True, eq=False)
@@ -20,17 +25,18 @@ class Topology:
     welded: Integers  # (V,) number of the place of each vertex
     places: int
     corners: Integers  # (T, 3) triangles by place
-    good: NDArray[np.bool_]  # (T,) three different places
-    edges: Integers  # (E, 2) undirected edges by place, first < second
-    edge_uses: Integers  # (E,) triangles at each edge
-    edge_start: Integers  # (E,) where the sides of each edge begin in `sides`
-    sides: Integers  # (3 T_good,) sides of the good triangles, numbered triangle by triangle, sorted by edge
-    part_of: Integers  # (T,) part number, parts numbered by falling count of triangles
+    rows: Integers  # (G,) triangles of three different places; sides belong to these
+    start: Integers  # (3G,) place where each side begins
+    onward: Integers  # (3G,) the side after each side in its triangle
+    partner: Integers  # (3G,) the next side on the same edge, going round; itself at a rim
+    uses: Integers  # (3G,) sides on the edge of each side
+    against: Booleans  # (3G,) True where a side runs the same way along the edge as its partner
+    part_of: Integers  # (T,) part number, parts numbered by falling area
     parts: int
     sheet_of: Integers  # (T,) sheet number: a part falls into sheets where three or more triangles share an edge
     sheets: int
-    turned: NDArray[np.bool_]  # (T,) True where the triangle is wound against the rest of its sheet
-    orientable: bool
+    turned: Booleans  # (T,) True where the triangle is wound against the rest of its sheet
+    unorientable: Integers  # numbers of the parts that have no consistent winding (a Moebius strip)
 
 
 def weld(vertices: Floats) -> tuple[Integers, int]:
@@ -52,104 +58,132 @@ def weld(vertices: Floats) -> tuple[Integers, int]:
     return number, int(new.sum())
 
 
-def _same_as_before(rows: Floats) -> NDArray[np.bool_]:
+def _same_as_before(rows: Floats) -> Booleans:
     return (rows[1:, 0] == rows[:-1, 0]) & (rows[1:, 1] == rows[:-1, 1]) & (rows[1:, 2] == rows[:-1, 2])
 
 
-def topology(vertices: Floats, triangles: Integers) -> Topology:
-    """Return the adjacency of triangles: edges, parts by shared edges, and which triangles are wound against their part."""
+def topology(vertices: Floats, triangles: Integers, areas_m2: Floats) -> Topology:
+    """Return the adjacency of triangles (T, 3) with areas (T,): partners, parts by shared edges, and who is wound against whom.
+
+    Triangles without three different places, and pieces without any area, found no part of their own: they are counted
+    with the part they touch, or else with the largest.
+    """
     welded, places = weld(vertices)
     corners = welded[triangles]
-    good = (corners[:, 0] != corners[:, 1]) & (corners[:, 1] != corners[:, 2]) & (corners[:, 2] != corners[:, 0])
-    owner = np.repeat(np.flatnonzero(good), 3)
-    start = corners[good].ravel()
-    end = corners[good][:, [1, 2, 0]].ravel()
-    low, high = np.minimum(start, end), np.maximum(start, end)
-    key = low * places + high
+    rows = np.flatnonzero((corners[:, 0] != corners[:, 1]) & (corners[:, 1] != corners[:, 2]) & (corners[:, 2] != corners[:, 0]))
+    start = (corners if len(rows) == len(corners) else corners[rows]).ravel()
+    onward = np.arange(1, len(start) + 1)
+    onward[2::3] -= 3
+    partner, uses, against = _partners(start, start[onward], places)
+    beside = partner.reshape(-1, 3) // 3
+    alone = uses.reshape(-1, 3) == 2  # two triangles alone on an edge: their windings can be compared
+    group, groups = connected_rows(beside)
+    branched = not alone.all() and bool((uses > 2).any())
+    sheet, sheets = connected_rows(np.where(alone, beside, np.arange(len(rows))[:, None])) if branched else (group, groups)
+    turned, crooked = _winding(beside, against.reshape(-1, 3) & alone, alone, sheet, sheets)
+    part_of, parts = _parts(group, groups, corners, rows, areas_m2)
+    return Topology(
+        welded, places, corners, rows, start, onward, partner, uses, against, part_of, parts,
+        _on_all(sheet, rows, len(triangles)), sheets, _on_all(turned, rows, len(triangles)), np.unique(part_of[rows[crooked]]),
+    )  # fmt: skip
+
+
+def _on_all(values: NDArray, rows: Integers, count: int) -> NDArray:
+    """Return values of some rows as values of all, zero elsewhere."""
+    full = np.zeros(count, values.dtype)
+    full[rows] = values
+    return full
+
+
+def _partners(start: Integers, end: Integers, places: int) -> tuple[Integers, Integers, Booleans]:
+    """Return the next side round the edge of each side, the number of sides there, and whether the two run the same way."""
+    forward = start < end
+    key = np.where(forward, start * places + end, end * places + start)
     order = np.argsort(key, kind="stable")
-    first = np.ones(len(key), bool)
-    first[1:] = key[order][1:] != key[order][:-1]
-    at = np.flatnonzero(first)
-    uses = np.diff(np.append(at, len(key)))
-    edges = np.stack([low[order][at], high[order][at]], 1)
-    owner, forward = owner[order], (start < end)[order]
-    links, against = _neighbours(at, uses, owner, forward)
-    branches = _branches(at, uses, owner)
-    sheet_of, sheets = _numbered(len(triangles), links)
-    part_of, parts = _numbered(len(triangles), np.concatenate([links, branches])) if len(branches) else (sheet_of, sheets)
-    turned, orientable = _winding(len(triangles), links, against)
-    return Topology(welded, places, corners, good, edges, uses, at, order, part_of, parts, sheet_of, sheets, turned, orientable)
+    ranked = key[order]
+    at = np.flatnonzero(np.concatenate([[True], ranked[1:] != ranked[:-1]]))
+    many = np.diff(at, append=len(key))
+    step = np.arange(1, len(key) + 1)
+    step[at + many - 1] = at
+    partner, uses = np.empty_like(order), np.empty_like(order)
+    partner[order] = order[step]
+    uses[order] = np.repeat(many, many)
+    return partner, uses, forward == forward[partner]
 
 
-def _neighbours(at: Integers, uses: Integers, owner: Integers, forward: NDArray[np.bool_]) -> tuple[Integers, NDArray[np.bool_]]:
-    """Return the pairs of triangles that alone share an edge (L, 2), and whether the two are wound against each other.
+def connected_rows(neighbours: Integers) -> tuple[Integers, int]:
+    """Return the group of each row (N,) of a table of neighbours (N, K), and how many there are, numbered by their first row.
 
-    Two neighbours are wound alike when they run along their edge in opposite directions.
+    A row without a K-th neighbour names itself. Each neighbour must name back, or pass the link on round a circle.
     """
-    two = at[uses == 2]
-    return np.stack([owner[two], owner[two + 1]], 1), forward[two] == forward[two + 1]
+    count, each = neighbours.shape
+    flat = neighbours.astype(np.int32).ravel()
+    graph = csr_matrix((np.ones(flat.size, np.int8), flat, np.arange(0, flat.size + 1, each, dtype=np.int32)), shape=(count, count))
+    # Links run round in circles, so strong connection is connection; it spares the transpose.
+    groups, label = connected_components(graph, directed=True, connection="strong")
+    first = np.empty(groups, np.int64)
+    first[label[::-1]] = np.arange(count)[::-1]
+    number = np.empty(groups, np.int64)
+    number[np.argsort(first)] = np.arange(groups)
+    return number[label], int(groups)
 
 
-def _branches(at: Integers, uses: Integers, owner: Integers) -> Integers:
-    """Return pairs of triangles that share an edge with yet others (L, 2): they are one part, but their winding is not comparable."""
-    many = at[uses > 2]
-    if not many.size:
-        return np.zeros((0, 2), np.int64)
-    after = np.concatenate([start + np.arange(1, count) for start, count in zip(many, uses[uses > 2], strict=True)])
-    first = np.repeat(many, uses[uses > 2] - 1)
-    return np.stack([owner[first], owner[after]], 1)
+def _parts(group: Integers, groups: int, corners: Integers, rows: Integers, areas_m2: Floats) -> tuple[Integers, int]:
+    """Return the part of each triangle (T,), parts numbered by falling area, then by first triangle, and how many there are."""
+    if groups == 1 and len(rows) == len(corners):
+        return group, 1
+    size = np.bincount(group, areas_m2[rows], minlength=groups)
+    number = np.empty(groups, np.int64)
+    number[np.argsort(-size, kind="stable")] = np.arange(groups)
+    parts = int((size > 0).sum())
+    part_of = np.full(len(corners), -1, np.int64)
+    part_of[rows] = np.where(size > 0, number, -1)[group]
+    homeless = np.flatnonzero(part_of < 0)
+    if homeless.size:
+        part_at = np.full(corners.max() + 1, -1, np.int64)
+        housed = part_of >= 0
+        part_at[corners[housed].ravel()] = np.repeat(part_of[housed], 3)
+        part_of[homeless] = np.maximum(part_at[corners[homeless]].max(1), 0)
+    return part_of, parts
 
 
-def _numbered(count: int, links: Integers) -> tuple[Integers, int]:
-    """Return the group of each triangle (T,) joined by links, largest group first, and how many there are."""
-    graph = coo_matrix((np.ones(len(links), np.int8), links.T), shape=(count, count))
-    parts, label = connected_components(graph, directed=False)
-    sizes = np.bincount(label, minlength=parts)
-    # Largest first; ties by the first triangle, which is the order the labels are given in.
-    rank = np.empty(parts, np.int64)
-    rank[np.argsort(-sizes, kind="stable")] = np.arange(parts)
-    return rank[label], int(parts)
-
-
-def _winding(count: int, links: Integers, against: NDArray[np.bool_]) -> tuple[NDArray[np.bool_], bool]:
-    """Return which triangles are wound against the majority of their part, and whether every part can be wound one way.
+def _winding(beside: Integers, against: Booleans, alone: Booleans, sheet: Integers, sheets: int) -> tuple[Booleans, Booleans]:
+    """Return which triangles (G,) are wound against the majority of their sheet, and which lie on a sheet that has no winding.
 
     Each triangle has two copies, as wound and turned. Neighbours wound alike join like copies, others join unlike ones; the
-    copies of an orientable part fall into two halves, and either half is one consistent winding.
+    copies of an orientable sheet fall into two halves, and either half is one consistent winding.
     """
+    count = len(beside)
     if not against.any():
-        return np.zeros(count, bool), True
-    plus, minus = links, links + count
-    same, other = ~against, against
-    ends = np.concatenate(
-        [
-            plus[same],
-            minus[same],
-            np.stack([plus[other, 0], minus[other, 1]], 1),
-            np.stack([minus[other, 0], plus[other, 1]], 1),
-        ]
-    )
-    graph = coo_matrix((np.ones(len(ends), np.int8), ends.T), shape=(2 * count, 2 * count))
-    halves, label = connected_components(graph, directed=False)
-    alike = label[:count] == label[count:]
-    if alike.any():
-        return _winding_by_tree(count, links, against), False
-    size = np.bincount(label[:count], minlength=halves)  # triangles that are as wound, in each half
-    return size[label[:count]] < size[label[count:]], True
+        return np.zeros(count, bool), np.zeros(count, bool)
+    linked = np.where(alone, beside, np.arange(count)[:, None])
+    half, halves = connected_rows(np.concatenate([linked + count * against, linked + count * ~against]))
+    here, there = half[:count], half[count:]
+    size = np.bincount(here, minlength=halves)  # triangles that are as wound, in each half
+    # Where as many are wound one way as the other, the half of the first triangle stands.
+    turned = (size[here] < size[there]) | ((size[here] == size[there]) & (here > there))
+    crooked = here == there
+    if crooked.any():
+        crooked = np.isin(sheet, sheet[crooked])
+        turned = np.where(crooked, _winding_by_tree(linked, against, sheet, sheets), turned)
+    return turned, crooked
 
 
-def _winding_by_tree(count: int, links: Integers, against: NDArray[np.bool_]) -> NDArray[np.bool_]:
-    """Return one winding of a surface that has none without a seam (a Moebius strip), along a tree of neighbours."""
-    turned = np.zeros(count, bool)
-    sign = np.where(against, 2.0, 1.0)
-    graph = coo_matrix((np.tile(sign, 2), np.concatenate([links, links[:, ::-1]]).T), shape=(count, count)).tocsr()
-    seen = np.zeros(count, bool)
-    for root in range(count):
-        if seen[root]:
-            continue
-        order, parent = breadth_first_order(graph, root, directed=False)
-        seen[order] = True
-        step = np.asarray(graph[parent[order[1:]], order[1:]]).ravel() if len(order) > 1 else np.zeros(0)
-        for child, weight in zip(order[1:], step, strict=True):
-            turned[child] = turned[parent[child]] ^ (weight == 2.0)
+def _winding_by_tree(linked: Integers, against: Booleans, sheet: Integers, sheets: int) -> Booleans:
+    """Return a winding (G,) along a tree of neighbours: all that can be had on a sheet that has none without a seam."""
+    count = len(linked)
+    roots = np.empty(sheets, np.int64)
+    roots[sheet[::-1]] = np.arange(count)[::-1]
+    # One more row is the neighbour of every root, so that one walk reaches all sheets.
+    ends = np.concatenate([linked.ravel(), roots]).astype(np.int32)
+    starts = np.append(np.arange(0, 3 * count + 1, 3), 3 * count + sheets)
+    graph = csr_matrix((np.ones(len(ends), np.int8), ends, starts.astype(np.int32)), shape=(count + 1, count + 1))
+    parent = breadth_first_order(graph, count)[1][:count].astype(np.int64)
+    parent[roots] = roots
+    side = (linked == parent[:, None]).argmax(1)
+    turned = against[np.arange(count), side]
+    turned[roots] = False
+    while (parent[parent] != parent).any():  # each round doubles the length of tree that is added up
+        turned = turned ^ turned[parent]
+        parent = parent[parent]
     return turned

@@ -24,7 +24,7 @@ def test_moments_are_the_integrals_over_the_triangles():
         first = sum(area / 3 * m for m in middles)
         second = sum(area / 3 * np.outer(m, m) for m in middles)
         slow.append([area, *first, *second[np.triu_indices(3)]])
-    assert np.allclose(moments(corners, areas), slow)
+    assert np.allclose(moments(corners, areas).T, slow)
 
 
 def test_fit_weighs_area_not_corners():
@@ -33,7 +33,7 @@ def test_fit_weighs_area_not_corners():
     tiny = np.tile(np.array([[[50.0, 50, 0], [50.1, 50, 0.1], [50, 50.1, 0.1]]]), (200, 1, 1))
     corners = np.concatenate([big, tiny])
     areas, _ = areas_and_normals(corners)
-    normal = planes_of_moments(moments(corners, areas).sum(0, keepdims=True))[0]
+    normal = planes_of_moments(moments(corners, areas).sum(1)[None])[0]
     assert abs(normal[2]) == pytest.approx(1.0, abs=1e-6)
 
 
@@ -69,12 +69,17 @@ def test_a_wider_radius_smooths():
     assert spread[0] > spread[1]
 
 
-@pytest.mark.parametrize("count", [1, 2])
-def test_meshes_of_few_triangles_have_stations(count):
+@pytest.mark.parametrize("triangles", [1, 2])
+def test_a_surface_of_few_triangles_has_stations_all_over_it(triangles):
     vertices = np.array([[0.0, 0, 0], [1000, 0, 0], [0, 1000, 700], [1000, 1000, 700]])
-    found = sample_stations(measure(Surface("few", vertices, np.array([[0, 1, 2], [1, 3, 2]])[:count])), 24)
-    assert len(found.places) == count
-    assert np.isfinite(found.normals).all()
+    few = measure(Surface("few", vertices, np.array([[0, 1, 2], [1, 3, 2]])[:triangles]))
+    found = sample_stations(few, 24)
+    assert len(found.places) == 24
+    assert angle_deg(found.normals, few.normal).max() < 1e-5
+    assert np.abs((found.places @ few.normal) - vertices[0] @ few.normal).max() < 1e-6  # on the surface
+    gaps = np.linalg.norm(found.places[:, None] - found.places[None], axis=-1) + 1e9 * np.eye(24)
+    assert gaps.min(1).max() < 2.5 * np.sqrt(few.area_m2 / 24)
+    assert gaps.min() > 0.2 * np.sqrt(few.area_m2 / 24)
 
 
 def test_nearest_approach_is_that_of_all_samples_against_all():
