@@ -6,6 +6,8 @@ import subprocess
 import sys
 from pathlib import Path
 
+import pytest
+
 import structviz
 
 HEAVY = ("pyvista", "vtk", "vtkmodules", "matplotlib", "trimesh", "meshio", "h5py", "pandas", "rich")
@@ -34,3 +36,18 @@ def test_every_public_name_is_there_and_explained() -> None:
         assert hasattr(structviz, name), name
         if callable(value := getattr(structviz, name)):
             assert value.__doc__, name
+
+
+def test_every_name_that_loads_late_is_public() -> None:
+    assert set(structviz._HOME) <= set(structviz.__all__)
+    assert set(structviz.__all__) <= set(dir(structviz))
+    with pytest.raises(AttributeError, match="no attribute 'nonsense'"):
+        _ = structviz.nonsense
+
+
+def test_help_starts_without_numbers_or_pictures(project: Path) -> None:
+    command = [sys.executable, "-X", "importtime", "-m", "structviz", "--help"]
+    shown = subprocess.run(command, check=False, capture_output=True, text=True, cwd=project, timeout=120)
+    loaded = {line.split("|")[-1].strip() for line in shown.stderr.splitlines()}
+    assert "usage: structviz" in shown.stdout
+    assert not loaded & {*HEAVY, "numpy", "scipy"}
