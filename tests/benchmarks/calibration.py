@@ -7,10 +7,16 @@ wrong, in the three regimes in turn. Prints how often the 95 % cone of each axis
 probability in each band the share whose label is wrong. The tables are the same for the same options on every run.
 """
 
+from __future__ import annotations
+
 import argparse
+import sys
 from concurrent.futures import ProcessPoolExecutor
+from pathlib import Path
 
 import numpy as np
+
+sys.path.insert(0, str(Path(__file__).resolve().parents[2]))
 
 from structviz.analysis import Settings, run
 from structviz.orientation.vectors import axial_angle_deg
