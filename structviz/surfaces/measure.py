@@ -31,7 +31,13 @@ def measure(surface: Surface) -> MeasuredSurface:
 
     Normals point from foot wall to hanging wall, chosen once for each part: winding made alike by adjacency, then the sign
     for which the area-weighted mean points up. A steep part whose dip passes through vertical therefore keeps one moving
-    block. Raises SurfaceError where there is no area to measure.
+    block. Within half a degree of vertical "up" would be decided by noise: there the side is taken for which the strike lies
+    in [0, 180), and parts that dip 80 degrees or more take the side of the largest of them.
+
+    The mean normal is the vector mean, which depends on the rim alone (the vector area): published mean planes follow it.
+    Sheets that branch or have no winding take the axis of the orientation tensor instead. `meaningful` is False, with the
+    reason, where parts of 5 % of the area or more dip opposite ways or lie over 45 degrees apart, or where the mean
+    resultant is below 0.6. Raises SurfaceError where there is no area to measure.
     """
     _check(surface)
     origin = surface.vertices.mean(0)
@@ -110,11 +116,9 @@ def _part_list(normals: Floats, areas: Floats, part_of: Integers, parts: int) ->
     agree = np.abs(np.einsum("tk,tk->t", normals, means[part_of]))
     off = np.degrees(np.arccos(np.minimum(agree, 1.0)))
     spread = np.sqrt(np.bincount(part_of, areas * off**2, minlength=parts) / size)
-    count = np.bincount(part_of, minlength=parts)
-    return tuple(
-        Part(int(count[k]), float(size[k]), tuple(means[k].tolist()), float(strikes[k]), float(dips[k]), float(spread[k]))
-        for k in range(parts)
-    )
+    columns = np.bincount(part_of, minlength=parts), size, means, strikes, dips, spread
+    rows = zip(*(column.tolist() for column in columns), strict=True)
+    return tuple(Part(n, area, tuple(mean), strike, dip, off) for n, area, mean, strike, dip, off in rows)
 
 
 def _why_no_mean(normals: Floats, areas: Floats, parts: tuple[Part, ...]) -> str:
@@ -142,7 +146,11 @@ def _plane(part: Part) -> str:
 
 
 def _cone_deg(centroids: Floats, normals: Floats, areas: Floats) -> float:
-    """Return the 95 % cone about the mean normal by Fisher's statistics over panels of equal extent, degrees; 0 for one or two."""
+    """Return the 95 % cone about the mean normal by Fisher's statistics over panels of equal extent, degrees; 0 for one or two.
+
+    On planes with undulations it covers the plane in 95 to 99 % of trials, as long as these are shorter than the surface
+    (a bend as long as the surface cannot be told from a tilt). For white noise of the vertices it is about twice too wide.
+    """
     block = panels(centroids, areas, CONE_PANELS)
     sums = np.stack([np.bincount(block, areas * normals[:, k]) for k in range(3)], 1)
     filled = np.bincount(block, areas) > 0

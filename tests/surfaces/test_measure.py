@@ -127,9 +127,12 @@ def test_triangles_that_share_no_vertex_numbers_are_joined_by_place():
     assert found.condition.duplicate_vertices == 3 * len(here.triangles) - len(np.unique(here.vertices, axis=0))
 
 
-def two_planes(first, second):
-    one, two = plane_surface("a", *first, 2000.0, 2000.0, (0.0, 0, 0)), plane_surface("b", *second, 2000.0, 2000.0, (9000.0, 0, 0))
+def joined(one, two):
     return Surface("two", np.concatenate([one.vertices, two.vertices]), np.concatenate([one.triangles, two.triangles + len(one.vertices)]))
+
+
+def two_planes(first, second):
+    return joined(plane_surface("a", *first, 2000.0, 2000.0, (0.0, 0, 0)), plane_surface("b", *second, 2000.0, 2000.0, (9000.0, 0, 0)))
 
 
 def test_parts_that_dip_opposite_ways_have_no_mean():
@@ -137,6 +140,89 @@ def test_parts_that_dip_opposite_ways_have_no_mean():
     assert len(found.parts) == 2
     assert not found.meaningful
     assert found.why_not == "its parts dip opposite ways (strike/dip 000/60 and 180/60)"
+
+
+@pytest.mark.parametrize("share", [0.2, 0.5, 0.8])
+def test_opposite_dips_have_no_mean_however_the_area_is_shared(share):
+    # Planes only 40 degrees apart as axes, and a resultant of 0.7: neither angle nor length alone would tell.
+    one = plane_surface("a", 0.0, 70.0, 4000.0 * share, 2000.0, (0.0, 0, 0))
+    two = plane_surface("b", 180.0, 70.0, 4000.0 * (1 - share), 2000.0, (9000.0, 0, 0))
+    found = measure(joined(one, two))
+    assert not found.meaningful
+    assert "dip opposite ways" in found.why_not
+
+
+def test_parts_that_strike_apart_have_no_mean():
+    one, two = (
+        plane_surface("a", 0.0, 60.0, 2500.0, 2000.0, (0.0, 0, 0)),
+        plane_surface("b", 70.0, 60.0, 2000.0, 2000.0, (9000.0, 0, 0)),
+    )
+    found = measure(joined(one, two))
+    assert found.why_not == "its parts lie 60 deg apart (strike/dip 000/60 and 070/60)"
+
+
+def test_a_stray_scrap_does_not_spoil_the_mean():
+    scrap = plane_surface("scrap", 215.0, 60.0, 300.0, 200.0, (500_000.0, 6_210_000.0, -2000.0))
+    found = measure(joined(PLANE, scrap))
+    assert found.meaningful
+    assert len(found.parts) == 2
+
+
+def test_parts_are_listed_by_area_not_by_count():
+    fine = plane_surface("fine", 10.0, 60.0, 1000.0, 1000.0, (0.0, 0, 0), cells=(20, 20))
+    coarse = plane_surface("coarse", 10.0, 60.0, 8000.0, 8000.0, (20_000.0, 0, 0), cells=(2, 2))
+    found = measure(joined(fine, coarse))
+    assert [part.triangles for part in found.parts] == [8, 800]
+    assert found.part_of.tolist() == [1] * 800 + [0] * 8
+
+
+def test_debris_without_area_founds_no_part():
+    apart = np.array([[0.0, 0, 0], [50, 50, 50], [100, 100, 100]])  # three places in a row, far from the plane
+    vertices = np.concatenate([PLANE.vertices, apart])
+    collinear = len(PLANE.vertices) + np.arange(3)
+    found = measure(Surface("debris", vertices, np.concatenate([PLANE.triangles, [[0, 0, 1], collinear]])))
+    assert len(found.parts) == 1
+    assert not found.normals[-2:].any()
+    assert found.condition.zero_area.tolist() == [len(PLANE.triangles), len(PLANE.triangles) + 1]
+    assert np.array_equal(found.normals[:-2], measure(PLANE).normals)
+
+
+def test_a_needle_that_closes_a_gap_keeps_the_sheet_in_one_piece():
+    # Vertex 3 lies on the side 1-2 of the first triangle: the needle between them has no area but joins the windings.
+    vertices = np.array([[0.0, 0, 0], [0, 1000, 500], [1000, 0, 500], [500, 500, 500], [1000, 1000, 1000]])
+    found = measure(Surface("needle", vertices, np.array([[0, 1, 2], [2, 1, 3], [3, 1, 4], [2, 3, 4]])))
+    assert len(found.parts) == 1
+    assert found.condition.zero_area.tolist() == [1]
+    assert found.condition.flipped.size == 0
+
+
+@pytest.mark.parametrize("seed", range(6))
+def test_a_sheet_wound_half_and_half_has_one_winding(seed):
+    triangles = PLANE.triangles.copy()
+    half = np.random.default_rng(seed).permutation(len(triangles))[: len(triangles) // 2]
+    triangles[half] = triangles[half][:, ::-1]
+    found = measure(Surface("half", PLANE.vertices, triangles))
+    assert np.allclose(found.normals, measure(PLANE).normals, atol=1e-12)
+    assert len(found.condition.flipped) == len(triangles) // 2
+
+
+def test_debris_at_map_coordinates_has_no_area():
+    # Three points in a row at UTM coordinates, off the line by their last digit only.
+    row = np.array([[500_000.1, 6_500_000.3, -1000.7], [500_050.1, 6_500_040.3, -1020.7], [500_100.1, 6_500_080.3, -1040.7]])
+    found = measure(Surface("row", np.concatenate([row, [[500_000.0, 6_500_100.0, -900.0]]]), np.array([[0, 2, 3], [0, 1, 2]])))
+    assert found.condition.zero_area.tolist() == [1]
+
+
+def test_the_cone_holds_the_plane_that_was_drawn_where_undulations_are_shorter_than_the_surface():
+    plane = plane_surface("p", 200.0, 55.0, 4000.0, 2500.0, (0.0, 0, 0), cells=(40, 25))
+    n = normals(200.0, 55.0)
+    inside = []
+    for seed in range(60):
+        rng = np.random.default_rng(seed)
+        wave = sum(rng.normal(0, 60) * np.cos(plane.vertices @ (rng.normal(size=3) / 250.0) + rng.uniform(0, 6.3)) for _ in range(6))
+        found = measure(Surface("p", plane.vertices + wave[:, None] * n, plane.triangles))
+        inside.append(axial_angle_deg(found.normal, n) <= found.cone_deg)
+    assert np.mean(inside) >= 0.93
 
 
 def test_steep_parts_of_one_fault_share_a_hanging_wall():
@@ -167,6 +253,8 @@ def test_mean_strike_of_a_measured_surface_is_that_of_its_normal():
         (np.zeros((3, 3)), [[0, 1, 2]], "only triangles without area"),
         (np.array([[0, 0, 0], [1, 0, 0], [0, np.nan, 0.0]]), [[0, 1, 2]], "1 vertices with NaN"),
         (np.eye(3), [[0, 1, 3]], "names vertex 3"),
+        (np.eye(3) * 1e30, [[0, 1, 2]], "coordinates up to 1e\\+30 m"),
+        (np.eye(3), [[0, 1, 1], [2, 2, 0]], "only triangles without area"),
         (np.eye(3), np.zeros((0, 3)), "at least one row of triangles"),
     ],
 )
