@@ -25,7 +25,7 @@ def examine(vertices: Floats, triangles: Integers, areas_m2: Floats, topology: T
         unused_vertices=int((~used).sum()),
         zero_area=np.flatnonzero(areas_m2 == 0),
         flipped=np.flatnonzero(topology.turned),
-        repeated=_repeated(topology),
+        repeated=topology.repeated,
         nonmanifold_edges=_nonmanifold(topology),
         not_orientable=bool(topology.unorientable.size),
         rims=rims,
@@ -51,20 +51,6 @@ def _nonmanifold(topology: Topology) -> Integers:
     ends = np.sort(np.stack([topology.start[many], topology.start[topology.onward[many]]], 1), axis=1)
     edges = np.unique(ends[:, 0] * topology.places + ends[:, 1]) if many.size else many
     return _vertices_at(topology, np.stack([edges // topology.places, edges % topology.places], 1))
-
-
-def _repeated(topology: Topology) -> Integers:
-    """Return the triangles that stand on the same three places as an earlier one."""
-    # A twin shares all three edges: with the same neighbour on each, or with a crowd on one.
-    beside = topology.partner.reshape(-1, 3) // 3
-    shared, crowded = topology.uses.reshape(-1, 3) > 1, topology.uses.reshape(-1, 3) > 2
-    twin = (beside[:, 0] == beside[:, 1]) & (beside[:, 1] == beside[:, 2])
-    rows = topology.rows[shared.all(1) & (twin | crowded.any(1))]
-    corners = np.sort(topology.corners[rows], axis=1)
-    order = np.lexsort(corners.T)
-    same = np.zeros(len(rows), bool)
-    same[order[1:]] = (corners[order[1:]] == corners[order[:-1]]).all(1)
-    return rows[same]
 
 
 def _rims(topology: Topology) -> tuple[int, int]:

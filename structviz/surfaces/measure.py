@@ -21,7 +21,7 @@ UPRIGHT = np.sin(np.radians(0.5))  # a mean normal that rises less than this is 
 STEEP_DEG = 80.0  # parts this steep share the hanging wall of the largest part
 STRAY_SHARE = 0.05  # parts under this share of the area say nothing about the mean
 APART_DEG = 45.0  # parts whose planes differ by more have no meaningful mean
-LEAST_RESULTANT = 0.6  # |sum of area times normal| over area; below, the surface faces every way
+LEAST_AGREEMENT = 0.6  # |sum of area times normal| over area, or the tensor's share; below, the surface faces every way
 FARTHEST_M = 1e10  # no map frame of the earth reaches so far; beyond, squares of lengths overflow
 CONE_PANELS = 16  # neighbouring triangles repeat each other: the cone counts panels of the surface, not triangles
 
@@ -52,9 +52,9 @@ def measure(surface: Surface) -> MeasuredSurface:
     normals[joined.turned] *= -1
     normals *= _signs(normals, areas, joined)[joined.sheet_of, None]
     parts = _part_list(normals, areas, joined.part_of, joined.parts)
-    mean = _mean_normal(normals, areas, branched=joined.sheets > joined.parts or bool(joined.unorientable.size))
+    mean, agreement = _mean_normal(normals, areas, branched=joined.sheets > joined.parts or bool(joined.unorientable.size))
     strike, dip = strike_dip_deg(mean)
-    why_not = _why_no_mean(normals, areas, parts)
+    why_not = _why_no_mean(agreement, parts)
     return MeasuredSurface(
         surface, areas, centroids + origin, normals, joined.part_of, parts, mean, float(strike), float(dip),
         _cone_deg(centroids, normals, areas), not why_not, why_not, examine(surface.vertices, surface.triangles, areas, joined),
@@ -99,13 +99,19 @@ def _signs(normals: Floats, areas: Floats, joined: Topology) -> Floats:
     return sign
 
 
-def _mean_normal(normals: Floats, areas: Floats, *, branched: bool) -> Floats:
-    """Return the unit mean normal (3,): the vector mean, which depends on the rim alone; of branched sheets the axial mean."""
+def _mean_normal(normals: Floats, areas: Floats, *, branched: bool) -> tuple[Floats, float]:
+    """Return the unit mean normal (3,) and how well the triangles agree with it, 0 to 1.
+
+    It is the vector mean, with its resultant length; of branched sheets the axis of the orientation tensor, whose signs do
+    not matter, with its share of the tensor.
+    """
     vector = np.einsum("t,tk->k", areas, normals)
+    total = areas.sum()
     if not branched:
-        return unit(vector)
-    axis = np.linalg.eigh(np.einsum("t,tk,tl->kl", areas, normals, normals, optimize=True))[1][:, -1]
-    return axis if axis @ vector >= 0 else -axis
+        return unit(vector), float(np.sqrt(vector @ vector) / total)
+    shares, axes = np.linalg.eigh(np.einsum("t,tk,tl->kl", areas, normals, normals, optimize=True) / total)
+    axis = axes[:, -1]
+    return (axis if axis @ vector >= 0 else -axis), float(shares[-1])
 
 
 def _part_list(normals: Floats, areas: Floats, part_of: Integers, parts: int) -> tuple[Part, ...]:
@@ -121,9 +127,9 @@ def _part_list(normals: Floats, areas: Floats, part_of: Integers, parts: int) ->
     return tuple(Part(n, area, tuple(mean), strike, dip, off) for n, area, mean, strike, dip, off in rows)
 
 
-def _why_no_mean(normals: Floats, areas: Floats, parts: tuple[Part, ...]) -> str:
+def _why_no_mean(agreement: float, parts: tuple[Part, ...]) -> str:
     """Return in words why the mean plane says nothing; empty where it does."""
-    total = float(areas.sum())
+    total = sum(part.area_m2 for part in parts)
     notable = [part for part in parts if part.area_m2 >= STRAY_SHARE * total]
     if len(notable) > 1:
         apart = angle_deg(np.array([part.normal for part in notable[1:]]), np.array(notable[0].normal))
@@ -135,10 +141,7 @@ def _why_no_mean(normals: Floats, areas: Floats, parts: tuple[Part, ...]) -> str
             return f"its parts dip opposite ways {pair}"
         if planes[worst] > APART_DEG:
             return f"its parts lie {planes[worst]:.0f} deg apart {pair}"
-    resultant = float(np.linalg.norm(np.einsum("t,tk->k", areas, normals)) / total)
-    if resultant < LEAST_RESULTANT:
-        return f"it faces every way (mean resultant {resultant:.2f})"
-    return ""
+    return f"it faces every way (mean resultant {agreement:.2f})" if agreement < LEAST_AGREEMENT else ""
 
 
 def _plane(part: Part) -> str:

@@ -1,7 +1,7 @@
 """How triangles hang together: welding by place, edges, parts, one winding a part. The geometry itself is never changed.
 
 A side is one of the three sides of a triangle; the sides of all triangles that lie on the same edge are partners. Side 3g + k
-runs from corner k to the next corner of the g-th triangle that has three different places.
+runs from corner k to the next corner of the g-th sound triangle: one of three different places that repeats no other.
 """
 
 from __future__ import annotations
@@ -25,7 +25,8 @@ class Topology:
     welded: Integers  # (V,) number of the place of each vertex
     places: int
     corners: Integers  # (T, 3) triangles by place
-    rows: Integers  # (G,) triangles of three different places; sides belong to these
+    rows: Integers  # (G,) sound triangles: three different places, no repeats; sides belong to these
+    repeated: Integers  # (R,) triangles on the same three places as an earlier one
     start: Integers  # (3G,) place where each side begins
     onward: Integers  # (3G,) the side after each side in its triangle
     partner: Integers  # (3G,) the next side on the same edge, going round; itself at a rim
@@ -66,15 +67,17 @@ def topology(vertices: Floats, triangles: Integers, areas_m2: Floats) -> Topolog
     """Return the adjacency of triangles (T, 3) with areas (T,): partners, parts by shared edges, and who is wound against whom.
 
     Triangles without three different places, and pieces without any area, found no part of their own: they are counted
-    with the part they touch, or else with the largest.
+    with the part they touch, or else with the largest. A triangle that repeats another goes wherever that one goes.
     """
     welded, places = weld(vertices)
     corners = welded[triangles]
     rows = np.flatnonzero((corners[:, 0] != corners[:, 1]) & (corners[:, 1] != corners[:, 2]) & (corners[:, 2] != corners[:, 0]))
-    start = (corners if len(rows) == len(corners) else corners[rows]).ravel()
-    onward = np.arange(1, len(start) + 1)
-    onward[2::3] -= 3
-    partner, uses, against = _partners(start, start[onward], places)
+    start, onward, partner, uses, against = _sides(corners, rows, places)
+    twins = _twins(corners, rows, partner, uses)
+    if len(twins):
+        rows = np.setdiff1d(rows, twins[:, 0])
+        areas_m2 = areas_m2 + np.bincount(twins[:, 1], areas_m2[twins[:, 0]], minlength=len(areas_m2))
+        start, onward, partner, uses, against = _sides(corners, rows, places)
     beside = partner.reshape(-1, 3) // 3
     alone = uses.reshape(-1, 3) == 2  # two triangles alone on an edge: their windings can be compared
     group, groups = connected_rows(beside)
@@ -82,10 +85,47 @@ def topology(vertices: Floats, triangles: Integers, areas_m2: Floats) -> Topolog
     sheet, sheets = connected_rows(np.where(alone, beside, np.arange(len(rows))[:, None])) if branched else (group, groups)
     turned, crooked = _winding(beside, against.reshape(-1, 3) & alone, alone, sheet, sheets)
     part_of, parts = _parts(group, groups, corners, rows, areas_m2)
+    unorientable = np.unique(part_of[rows[crooked]])
+    sheet_of, turned = _on_all(sheet, rows, len(triangles)), _on_all(turned, rows, len(triangles))
+    again, first = twins.T
+    part_of[again], sheet_of[again] = part_of[first], sheet_of[first]
+    turned[again] = turned[first] ^ _wound_apart(corners[again], corners[first])
     return Topology(
-        welded, places, corners, rows, start, onward, partner, uses, against, part_of, parts,
-        _on_all(sheet, rows, len(triangles)), sheets, _on_all(turned, rows, len(triangles)), np.unique(part_of[rows[crooked]]),
+        welded, places, corners, rows, again, start, onward, partner, uses, against,
+        part_of, parts, sheet_of, sheets, turned, unorientable,
     )  # fmt: skip
+
+
+def _sides(corners: Integers, rows: Integers, places: int) -> tuple[Integers, Integers, Integers, Integers, Booleans]:
+    """Return of each side of some triangles: its start, the side after it, its partner, the sides there, and `against`."""
+    start = (corners if len(rows) == len(corners) else corners[rows]).ravel()
+    onward = np.arange(1, len(start) + 1)
+    onward[2::3] -= 3
+    return start, onward, *_partners(start, start[onward], places)
+
+
+def _twins(corners: Integers, rows: Integers, partner: Integers, uses: Integers) -> Integers:
+    """Return the triangles that stand on the same three places as an earlier one, and that one, shape (R, 2), in order."""
+    # A twin shares all three edges: with the same neighbour on each, or with a crowd on one.
+    beside, uses = partner.reshape(-1, 3) // 3, uses.reshape(-1, 3)
+    crowd = (uses[:, 0] > 2) | (uses[:, 1] > 2) | (uses[:, 2] > 2)
+    twin = (beside[:, 0] == beside[:, 1]) & (beside[:, 1] == beside[:, 2])
+    rows = rows[(uses[:, 0] > 1) & (uses[:, 1] > 1) & (uses[:, 2] > 1) & (twin | crowd)]
+    sorted_corners = np.sort(corners[rows], axis=1)
+    order = np.lexsort(sorted_corners.T)
+    new = np.ones(len(rows), bool)
+    new[1:] = (sorted_corners[order[1:]] != sorted_corners[order[:-1]]).any(1)
+    first = order[np.maximum.accumulate(np.where(new, np.arange(len(rows)), 0))] if len(rows) else order
+    pairs = np.stack([rows[order], rows[first]], 1)[~new]
+    return pairs[np.argsort(pairs[:, 0], kind="stable")]
+
+
+def _wound_apart(one: Integers, two: Integers) -> Booleans:
+    """Return whether triangles on the same places (R, 3) run round them in opposite directions."""
+    at = np.arange(len(one))
+    after_one = one[at, (one.argmin(1) + 1) % 3]
+    after_two = two[at, (two.argmin(1) + 1) % 3]
+    return after_one != after_two
 
 
 def _on_all(values: NDArray, rows: Integers, count: int) -> NDArray:

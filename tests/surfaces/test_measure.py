@@ -206,6 +206,27 @@ def test_a_sheet_wound_half_and_half_has_one_winding(seed):
     assert len(found.condition.flipped) == len(triangles) // 2
 
 
+def test_a_mesh_written_twice_measures_as_once_with_twice_the_area():
+    here = overturning_surface("over", 20.0, 3000.0, 3000.0, (0.0, 0.0, -2000.0))
+    again = here.triangles[:, ::-1]
+    once, twice = measure(here), measure(Surface("twice", here.vertices, np.concatenate([here.triangles, again])))
+    assert np.allclose(twice.normals, np.tile(once.normals, (2, 1)))
+    assert np.allclose(twice.normal, once.normal)
+    assert twice.area_m2 == pytest.approx(2 * once.area_m2)
+    assert twice.condition.repeated.tolist() == list(range(len(again), 2 * len(again)))
+    assert not twice.condition.nonmanifold_edges.size
+
+
+def test_sheets_that_branch_every_way_have_no_mean():
+    angles = np.radians([0.0, 120.0, 240.0])
+    hinge = np.array([[0.0, 0, 0], [0, 0, 1000]])
+    out = np.stack([np.sin(angles), np.cos(angles), np.full(3, 0.5)], 1) * 1000
+    found = measure(Surface("book", np.concatenate([hinge, out]), np.array([[0, 1, 2], [0, 1, 3], [0, 1, 4]])))
+    assert len(found.parts) == 1
+    assert found.condition.nonmanifold_edges.tolist() == [[0, 1]]
+    assert "faces every way" in found.why_not
+
+
 def test_debris_at_map_coordinates_has_no_area():
     # Three points in a row at UTM coordinates, off the line by their last digit only.
     row = np.array([[500_000.1, 6_500_000.3, -1000.7], [500_050.1, 6_500_040.3, -1020.7], [500_100.1, 6_500_080.3, -1040.7]])

@@ -10,12 +10,34 @@ from structviz.surfaces.geometry import areas_and_normals
 from structviz.surfaces.topology import connected_rows, topology, weld
 
 
+def strip(steps, twisted, turned=()):
+    """A closed band of triangles; twisted, it has no winding."""
+    angle = np.linspace(0, 2 * np.pi, steps, endpoint=False)
+    half = angle / 2 if twisted else np.zeros(steps)
+    rims = [
+        np.stack([(3 + w * np.cos(half)) * np.cos(angle), (3 + w * np.cos(half)) * np.sin(angle), w * np.sin(half)], 1) for w in (-1, 1)
+    ]
+    rows = []
+    for k in range(steps):
+        a, b, c, d = k, k + steps, (k + 1) % steps, (k + 1) % steps + steps
+        if twisted and k + 1 == steps:
+            c, d = d, c
+        rows += [[a, b, c], [b, d, c]]
+    triangles = np.array(rows)
+    triangles[list(turned)] = triangles[list(turned)][:, ::-1]
+    return np.concatenate(rims) * 100, triangles
+
+
 def random_soup(seed):
     """A crowd of triangles on few vertices: edges of many, pinches, repeats, debris and seams without a winding."""
     rng = np.random.default_rng(seed)
     vertices = rng.normal(size=(rng.integers(5, 30), 3)) * 1000
     vertices[rng.integers(len(vertices))] = vertices[0]  # one place twice
     triangles = rng.integers(0, len(vertices), (rng.integers(1, 40), 3))
+    if seed % 3 == 0:  # chance alone never makes a seam
+        band, more = strip(int(rng.integers(4, 12)), bool(seed % 2), turned=rng.integers(0, 8, 3))
+        triangles = np.concatenate([more, triangles[: len(triangles) // 4] + len(band) // 2])
+        vertices = np.concatenate([band, vertices])
     return vertices, triangles
 
 
@@ -49,7 +71,13 @@ class Plain:
     """The same facts found one triangle at a time."""
 
     def __init__(self, vertices, triangles):
-        self.rows = [(t, c) for t, c in enumerate(places_of(vertices, triangles)) if len(set(c)) == 3]
+        self.rows, self.again, seen = [], {}, {}
+        for row, corners in enumerate(places_of(vertices, triangles)):
+            if len(set(corners)) == 3 and frozenset(corners) in seen:
+                self.again[row] = seen[frozenset(corners)]
+            elif len(set(corners)) == 3:
+                seen[frozenset(corners)] = row
+                self.rows.append((row, corners))
         self.at_edge = defaultdict(list)
         for g, (_, corners) in enumerate(self.rows):
             for side in sides_of(corners):
@@ -102,6 +130,32 @@ SEEDS = range(60)
 
 
 @pytest.mark.parametrize("seed", SEEDS)
+def test_a_repeated_triangle_goes_with_the_one_it_repeats(seed):
+    vertices, triangles, _, found, plain = both(seed)
+    _, normals = areas_and_normals(vertices[triangles])
+    normals[found.turned] *= -1
+    for again, first in plain.again.items():
+        assert found.part_of[again] == found.part_of[first]
+        assert found.sheet_of[again] == found.sheet_of[first]
+        assert np.allclose(normals[again], normals[first])
+
+
+def test_some_soups_hold_every_oddity():
+    odd = Counter()
+    for seed in SEEDS:
+        vertices, triangles, areas, found, plain = both(seed)
+        condition = examine(vertices, triangles, areas, found)
+        odd["repeats"] += bool(plain.again)
+        odd["crowds"] += bool(len(condition.nonmanifold_edges))
+        odd["pinches"] += bool(condition.pinched_vertices)
+        odd["seams"] += condition.not_orientable
+        odd["parts"] += found.parts > 1
+        odd["debris"] += bool(condition.zero_area.size)
+    assert len(odd) == 6, odd
+    assert min(odd.values()) >= 2, odd
+
+
+@pytest.mark.parametrize("seed", SEEDS)
 def test_parts_and_sheets_are_those_of_a_walk(seed):
     _, _, areas, found, plain = both(seed)
     groups = defaultdict(set)
@@ -141,11 +195,7 @@ def test_condition_is_that_of_a_count(seed):
     many = {edge for edge, count in uses.items() if count > 2}
     assert {frozenset(tuple(vertices[v].tolist()) for v in edge) for edge in condition.nonmanifold_edges} == many
     assert len(condition.nonmanifold_edges) == len(many)
-    seen, again = set(), []
-    for row, corners in plain.rows:
-        again += [row] if frozenset(corners) in seen else []
-        seen.add(frozenset(corners))
-    assert condition.repeated.tolist() == again
+    assert condition.repeated.tolist() == list(plain.again)
     rim = [edge for edge, count in uses.items() if count == 1]
     number = {place: k for k, place in enumerate({place for edge in rim for place in edge})}
     assert condition.rims == len(walk(len(number), [tuple(number[place] for place in edge) for edge in rim]))
@@ -175,24 +225,6 @@ def test_groups_are_numbered_by_their_first_row():
     group, groups = connected_rows(np.array([[2, 0], [1, 1], [0, 2], [3, 3]]))
     assert groups == 3
     assert group.tolist() == [0, 1, 0, 2]
-
-
-def strip(steps, twisted, turned=()):
-    """A closed band of triangles; twisted, it has no winding."""
-    angle = np.linspace(0, 2 * np.pi, steps, endpoint=False)
-    half = angle / 2 if twisted else np.zeros(steps)
-    rims = [
-        np.stack([(3 + w * np.cos(half)) * np.cos(angle), (3 + w * np.cos(half)) * np.sin(angle), w * np.sin(half)], 1) for w in (-1, 1)
-    ]
-    rows = []
-    for k in range(steps):
-        a, b, c, d = k, k + steps, (k + 1) % steps, (k + 1) % steps + steps
-        if twisted and k + 1 == steps:
-            c, d = d, c
-        rows += [[a, b, c], [b, d, c]]
-    triangles = np.array(rows)
-    triangles[list(turned)] = triangles[list(turned)][:, ::-1]
-    return np.concatenate(rims) * 100, triangles
 
 
 @pytest.mark.parametrize("twisted", [False, True])
