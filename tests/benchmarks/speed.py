@@ -81,7 +81,7 @@ def least(results: list[Ran]) -> Ran:
 
 
 def compare(table: Path, folder: Path, yardstick: Path, rounds: int) -> None:
-    """Print seconds, memory and ratios of both programs, run in turn; as the yardstick draws nothing, a check without pictures is told too."""
+    """Print seconds, memory, ratios of both, run in turn; the yardstick draws nothing, so a check without pictures counts too."""
     ours, plain, theirs = [], [], []
     for turn in range(rounds):
         if yardstick.is_file():
