@@ -33,4 +33,7 @@ REFERENCES: dict[str, str] = {
     "mardia2000": "Mardia, K. V. and Jupp, P. E. (2000). Directional Statistics. Wiley. doi:10.1002/9780470316979",
     "fisher1987": "Fisher, N. I., Lewis, T. and Embleton, B. J. J. (1987). Statistical Analysis of Spherical Data. Cambridge. "
     "doi:10.1017/CBO9780511623059",
+    "dempster1977": "Dempster, A. P., Laird, N. M. and Rubin, D. B. (1977). Maximum likelihood from incomplete data via the EM algorithm. "
+    "J. R. Stat. Soc. B 39, 1-38. doi:10.1111/j.2517-6161.1977.tb01600.x",
+    "schwarz1978": "Schwarz, G. (1978). Estimating the dimension of a model. Ann. Stat. 6, 461-464. doi:10.1214/aos/1176344136",
 }
