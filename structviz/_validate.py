@@ -12,7 +12,9 @@ def check_vectors(name: str, values: ArrayLike) -> NDArray[np.float64]:
     """Return finite float64 vectors of shape (..., 3); raise ArgumentError otherwise."""
     array = np.asarray(values, dtype=float)
     if array.ndim == 0 or array.shape[-1] != 3:
-        raise ArgumentError(f"{name}: found shape {array.shape}; wanted (..., 3) as easting, northing, up", hint="give three components a vector")
+        raise ArgumentError(
+            f"{name}: found shape {array.shape}; wanted (..., 3) as easting, northing, up", hint="give three components a vector"
+        )
     return check_finite(name, array)
 
 
@@ -30,5 +32,7 @@ def check_range(name: str, values: ArrayLike, low: float, high: float, unit: str
     outside = (array < low) | (array > high)
     if outside.any():
         worst = np.extract(outside, array)[0]
-        raise ArgumentError(f"{name}: found {worst:g} {unit}; wanted {low:g} to {high:g} {unit}", hint=f"give {name} in {unit} within that range")
+        raise ArgumentError(
+            f"{name}: found {worst:g} {unit}; wanted {low:g} to {high:g} {unit}", hint=f"give {name} in {unit} within that range"
+        )
     return array

@@ -255,7 +255,7 @@ def _slip_lines(examined: _Examination, striae: Sequence[Stria]) -> SlipLines:
         on = off_plane_deg(lines, here) <= OFF_PLANE_DEG
         signed, weights = np.array([s.declared is not None for s in mine], bool), np.array([s.weight for s in mine], float)
         rows.append((normals[on], lines[on], signed[on], weights[on]))
-    return gather_lines(*zip(*rows, strict=True))  # type: ignore[arg-type]
+    return gather_lines(*zip(*rows, strict=True))
 
 
 def _nearest_normal(stations: Stations, place: Sequence[float]) -> Floats:

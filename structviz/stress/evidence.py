@@ -66,8 +66,9 @@ class FaultEvidence:
 
     def part(self, rows: slice) -> FaultEvidence:
         """Return the evidence of some of the faults."""
-        arrays = (self.normals, self.shares, self.edges, self.partnered, self.geometry_known)
-        return FaultEvidence(*(values[rows] for values in arrays), self.slips.part(rows))
+        return FaultEvidence(
+            self.normals[rows], self.shares[rows], self.edges[rows], self.partnered[rows], self.geometry_known[rows], self.slips.part(rows)
+        )
 
 
 def sector_edges(normals: Floats, sector: Sector | None) -> Floats:

@@ -45,9 +45,11 @@ DECLARED_NATS = 4.0  # what declaring two or three phases is worth, before the d
 EXCHANGED_DEG = 20.0  # two phases this near to sharing their axes with sigma1 and sigma3 exchanged look like wrong labels
 EXCHANGED_NATS = 5.0  # and must be better supported by this much
 CONTRADICTS = 0.8  # probability of another phase from which the data contradict the declared one
-LARGEST_TABLE = 40_000_000  # numbers; bounds memory: with very many faults the grid is coarser
+MOST_SEARCHED = 150  # faults; of more, every second, third, ... is searched, and all are then told apart
 FIRST_STARTS, NEXT_STARTS = 3, 3  # of the search: best single stresses, and what best explains the faults they leave
+NEW_SHARES = (0.7, 0.35)  # of faults thought to be new: many inherited planes must not look like a second stress
 SHORT_ROUNDS, LONG_ROUNDS = 4, 40
+REFINED_WITHIN_DEG = (14.0, 10.0, 10.0)  # of where a stress was, in one step after the other
 
 
 @dataclass(frozen=True)
@@ -91,10 +93,11 @@ class _Fit:
     support: float  # log-likelihood of all faults
     membership: Floats  # (F, K)
     shares: Floats  # (K,)
-    places: Integers  # (K,)
+    terms: Floats  # (F, K)
+    places: Integers = field(default_factory=lambda: np.zeros(0, np.int64))  # (K,)
     odds: EvidenceModel = field(default_factory=EvidenceModel)
-    frames: Floats = field(default_factory=lambda: np.zeros((0, 3, 3)))
-    ratios: Floats = field(default_factory=lambda: np.zeros(0))
+    frames: Floats = field(default_factory=lambda: np.zeros((0, 3, 3)))  # (K, 3, 3)
+    ratios: Floats = field(default_factory=lambda: np.zeros((0, len(FINE_RATIOS))))  # (K, R) probability of each shape ratio
 
 
 def find_phases(evidence: FaultEvidence, odds: EvidenceModel, *, declared_phases: Sequence[str], most: int = 3) -> Phases:
@@ -118,12 +121,14 @@ def find_phases(evidence: FaultEvidence, odds: EvidenceModel, *, declared_phases
             hint="give '' for faults without a declared phase",
         )
     names, belongs = _named(declared_phases)
-    found = _search(evidence, odds, belongs, len(names), most)
-    fits = [_refined(evidence, fit, belongs) for fit in found]
+    some = slice(None, None, -(-len(evidence) // MOST_SEARCHED))
+    part = evidence.part(some)
+    found = (_refined(part, fit, belongs[some]) for fit in _search(part, odds, belongs[some], len(names), most))
+    fits = [_over_all(evidence, fit, belongs) for fit in found]
     heard = int((evidence.declared | evidence.measured | (evidence.geometry_known & (evidence.partnered > 0))).sum())
     criterion = [_criterion(fit, heard, len(names)) for fit in fits]
     count = int(np.argmin(criterion)) + 1
-    return _told(evidence, fits, count, tuple(criterion), names, belongs)
+    return _told(fits, count, tuple(criterion), names, belongs)
 
 
 def _named(declared: Sequence[str]) -> tuple[list[str], Integers]:
@@ -134,7 +139,7 @@ def _named(declared: Sequence[str]) -> tuple[list[str], Integers]:
 
 def _search(evidence: FaultEvidence, odds: EvidenceModel, belongs: Integers, names: int, most: int) -> list[_Fit]:
     """Return the best mixture of one, two, ... stresses on the grid, each under the odds that suit it best."""
-    frames = all_frames(min(COARSE_FRAMES, max(500, LARGEST_TABLE // (len(evidence) * len(COARSE_RATIOS)))))
+    frames = all_frames(COARSE_FRAMES)
     best: list[_Fit] = []
     for number, (candidate, table) in enumerate(_tables(evidence, frames, odds)):
         fits = _mixtures(table, frames, belongs, names, most)
@@ -148,10 +153,11 @@ def _tables(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel) -> Ite
     """Yield the log-likelihood of every fault over the grid, (F, G * R), for the odds worth trying.
 
     Two stresses taken for one look like wide scatter, obtuse pairs and untrustworthy labels. So a tight scatter and the acute
-    angle are always tried beside what suits a single stress best.
+    angle are always tried beside what suits a single stress best, each with many and with few new faults.
     """
     single: NDArray[Any] = frames.astype(np.float32)
-    shapes = [replace(odds, plane_scatter_deg=s, obtuse_share=o) for s in SCATTERS_DEG for o in OBTUSE_SHARES]
+    every = [(s, o, n) for s in SCATTERS_DEG for o in OBTUSE_SHARES for n in NEW_SHARES]
+    shapes = [replace(odds, plane_scatter_deg=s, obtuse_share=o, new_fault_share=n) for s, o, n in every]
     axes = {shape: geometry_term(evidence, single, shape) for shape in shapes}
     trust = LABEL_TRUST if evidence.declared.any() else LABEL_TRUST[:1]
     lines: NDArray[Any] = np.zeros((1, 1, 1), np.float32)
@@ -161,7 +167,8 @@ def _tables(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel) -> Ite
     tops = [max(float((on_axes.sum(0)[:, None] + other.sum(0)).max()) for other in others) for on_axes in axes.values()]
     alone = shapes[int(np.argmax(tops))]
     tight = replace(alone, plane_scatter_deg=SCATTERS_DEG[0])
-    for shape in dict.fromkeys([alone, tight, replace(tight, obtuse_share=OBTUSE_SHARES[0])]):
+    tries = [alone, tight, replace(tight, obtuse_share=OBTUSE_SHARES[0])]
+    for shape in dict.fromkeys(replace(shape, new_fault_share=n) for shape in tries for n in NEW_SHARES):
         for (wrong, softness), other in zip(trust, others, strict=True):
             table = axes[shape][..., None] + other
             yield replace(shape, wrong_label_share=wrong, shear_softness=softness), table.reshape(len(table), -1)
@@ -224,7 +231,7 @@ def _expected(terms: Floats, shares: Floats, belongs: Integers) -> _Fit:
     of_fault = np.logaddexp.reduce(joint, axis=1)
     membership = np.exp(joint - of_fault[:, None])
     after = np.maximum(membership.mean(0), 1e-3)
-    return _Fit(float(of_fault.sum()), membership, after / after.sum(), np.zeros(0, np.int64))
+    return _Fit(float(of_fault.sum()), membership, after / after.sum(), terms)
 
 
 def _log_prior(terms: Floats, shares: Floats, belongs: Integers) -> Floats:
@@ -245,15 +252,22 @@ def _homes(terms: Floats, belongs: Integers) -> list[int]:
 
 def _refined(evidence: FaultEvidence, fit: _Fit, belongs: Integers) -> _Fit:
     """Return a mixture whose stresses have left the grid: each the mean of its posterior, ever closer about it."""
-    for radius_deg in (14.0, 10.0, 10.0):
+    for radius_deg in REFINED_WITHIN_DEG:
         turns = ball(np.radians(radius_deg), np.radians(radius_deg / 4.5))
         moved = [_centred(evidence, fit, k, turns) for k in range(len(fit.shares))]
-        frames, ratios = np.stack([m[0] for m in moved]), np.stack([m[1] for m in moved])
-        terms = np.stack([_terms_at(evidence, f, r, fit.odds) for f, r in zip(frames, ratios, strict=True)], 1)
-        after = _expected(terms, fit.shares, belongs)
-        fit = replace(after, odds=fit.odds, frames=frames, ratios=ratios @ FINE_RATIOS)
+        fit = replace(fit, frames=np.stack([m[0] for m in moved]), ratios=np.stack([m[1] for m in moved]))
+        fit = _over_all(evidence, fit, belongs)
+    return fit
+
+
+def _over_all(evidence: FaultEvidence, fit: _Fit, belongs: Integers) -> _Fit:
+    """Return the mixture of the same stresses with support, memberships and shares of the faults given."""
+    terms = np.stack([_terms_at(evidence, f, r, fit.odds) for f, r in zip(fit.frames, fit.ratios, strict=True)], 1)
+    after = fit
+    for _ in range(SHORT_ROUNDS):
+        after = _expected(terms, after.shares, belongs)
     prior = np.log(OBTUSE_PRIOR) if fit.odds.obtuse_share > 0.5 else 0.0
-    return replace(fit, support=fit.support + prior)
+    return replace(after, support=after.support + prior, odds=fit.odds, frames=fit.frames, ratios=fit.ratios)
 
 
 def _centred(evidence: FaultEvidence, fit: _Fit, phase: int, turns: Floats) -> tuple[Floats, Floats]:
@@ -287,17 +301,11 @@ def exchanged_phases(frames: Floats) -> list[tuple[int, int]]:
     return [(i, j) for i, j in pairs if axial_angle_deg(swap_extremes(frames[i]), frames[j]).max() <= EXCHANGED_DEG]
 
 
-def _told(
-    evidence: FaultEvidence, fits: Sequence[_Fit], count: int, criterion: tuple[float, ...], names: Sequence[str], belongs: Integers
-) -> Phases:
+def _told(fits: Sequence[_Fit], count: int, criterion: tuple[float, ...], names: Sequence[str], belongs: Integers) -> Phases:
     """Return the chosen mixture, its largest phase first, with what the declared phases have to do with it."""
     fit = fits[count - 1]
     order = np.argsort(-fit.membership.sum(0), kind="stable")
-    membership = fit.membership[:, order]
-    frames, ratios = fit.frames[order], fit.ratios[order]
-    terms = log_likelihood(evidence, frames, FINE_RATIOS, fit.odds, Terms())
-    at = np.abs(FINE_RATIOS[None] - ratios[:, None]).argmin(1)
-    terms = np.stack([terms[:, k, at[k]] for k in range(count)], 1)
+    membership, terms = fit.membership[:, order], fit.terms[:, order]
     homes = _homes(terms, belongs)
     against = tuple(
         Contradiction(int(f), names[belongs[f]], int(membership[f].argmax()), float(membership[f].max()))
@@ -305,9 +313,9 @@ def _told(
         if membership[f].argmax() != homes[belongs[f]] and membership[f].max() >= CONTRADICTS
     )
     why = _why(fits, count, criterion, membership, names, homes, against)
-    shares = membership.mean(0)
     declared = tuple(zip(names, homes, strict=True))
-    return Phases(count, frames, ratios, shares, membership, terms, criterion, why, declared, against, fit.odds)
+    ratios = fit.ratios[order] @ FINE_RATIOS
+    return Phases(count, fit.frames[order], ratios, membership.mean(0), membership, terms, criterion, why, declared, against, fit.odds)
 
 
 def _why(
@@ -338,6 +346,6 @@ def _why_this_many(count: int, criterion: Sequence[float], membership: Floats) -
         return "one stress was asked for"
     rivals = [(value - criterion[count - 1], number) for number, value in enumerate(criterion, 1) if number != count]
     margin, rival = min(rivals)
-    by = f"by {margin:.0f} against {rival}" if np.isfinite(margin) else "any further one would have fewer than four faults"
+    by = f"criterion better by {margin:.0f} than with {rival}" if np.isfinite(margin) else "another would have fewer than four faults"
     carried = " and ".join(f"{share:.0f}" for share in membership.sum(0))
-    return f"{first} the faults best (criterion better {by})" + (f", carried by {carried} faults" if count > 1 else "")
+    return f"{first} the faults best ({by})" + (f", carried by {carried} faults" if count > 1 else "")

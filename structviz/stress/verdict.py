@@ -217,7 +217,11 @@ def likely_causes(
     """
     frames, ratios = replicates_without(posterior, fault)
     opposite = sector.opposite()
-    causes = [Cause("label_swapped", f"the label may be swapped: as {opposite.text} it would fit", LABEL_BELIEF * share_inside(prediction, opposite))]
+    causes = [
+        Cause(
+            "label_swapped", f"the label may be swapped: as {opposite.text} it would fit", LABEL_BELIEF * share_inside(prediction, opposite)
+        )
+    ]
     tensor = reduced_tensor(posterior.frame, 0.5)
     stands = float(shares @ slip_tendency(tensor, normals))
     for key, signs, text, belief in MIRRORS:

@@ -77,9 +77,10 @@ def _axis(axes: Axes, axis: NetAxis, number: int) -> None:
     axes.plot(
         *axis.point, marker=SIGMA_MARKS[number], markersize=10, color=SIGMA[number], zorder=8, markeredgecolor="white", markeredgewidth=1.2
     )
-    off = 0.075 if axis.point[0] < 0.85 else -0.075
+    east, north = map(float, axis.point)
+    off = 0.075 if east < 0.85 else -0.075
     axes.annotate(
-        axis.label, axis.point, (axis.point[0] + off, axis.point[1] + 0.045), fontsize=13, color=INK, weight="bold", family=FONT, zorder=9,
+        axis.label, (east, north), (east + off, north + 0.045), fontsize=13, color=INK, weight="bold", family=FONT, zorder=9,
         ha="center", bbox={"boxstyle": "round,pad=0.12", "facecolor": "white", "edgecolor": "none", "alpha": 0.75},
     )  # fmt: skip
 

@@ -10,6 +10,7 @@ probability in each band the share whose label is wrong. The tables are the same
 from __future__ import annotations
 
 import argparse
+import itertools
 import sys
 from concurrent.futures import ProcessPoolExecutor
 from pathlib import Path
@@ -60,17 +61,15 @@ def main() -> None:
     print(f"{len(rows)} models, {len(rows) - len(covered)} without a regime")
     for axis in range(3):
         median, high = np.median(off[:, axis]), np.quantile(off[:, axis], 0.95)
-        print(
-            f"  sigma{axis + 1}: the 95 % cone covers the truth in {100 * covered[:, axis].mean():.1f} %; off by {median:.1f} deg median, {high:.1f} deg 95th"
-        )
+        share = 100 * covered[:, axis].mean()
+        print(f"  sigma{axis + 1}: the 95 % cone covers the truth in {share:.1f} %; off by {median:.1f} deg median, {high:.1f} deg 95th")
     pairs = np.array([pair for row in rows for pair in row[2]], float)
     print("conflict probability     faults   label wrong %   mean probability %")
-    for low, high in zip(BANDS, BANDS[1:]):
+    for low, high in itertools.pairwise(BANDS):
         inside = (pairs[:, 0] >= low) & ((pairs[:, 0] < high) | (high == 1.0))
         if inside.any():
-            print(
-                f"  {low:4.2f} to {high:4.2f}      {inside.sum():9d}   {100 * pairs[inside, 1].mean():13.1f}   {100 * pairs[inside, 0].mean():18.1f}"
-            )
+            mean, wrong = 100 * pairs[inside].mean(0)
+            print(f"  {low:4.2f} to {high:4.2f}      {inside.sum():9d}   {wrong:13.1f}   {mean:18.1f}")
 
 
 if __name__ == "__main__":

@@ -49,9 +49,8 @@ def main() -> None:
     for faults in (n for n in (10, 30, 100, 300, 1000, 3000) if n <= chosen.most):
         seconds, pairs = timed(faults, 500)
         each = seconds / faults
-        print(
-            f"{faults:6d}  {pairs:6d}  {seconds:8.2f}  {1000 * each:11.2f}   {each / before if before else 1:6.2f}   (peak so far {peak_mb():.0f} MB)"
-        )
+        ratio = each / before if before else 1.0
+        print(f"{faults:6d}  {pairs:6d}  {seconds:8.2f}  {1000 * each:11.2f}   {ratio:6.2f}   (peak so far {peak_mb():.0f} MB)")
         before = each
 
 
