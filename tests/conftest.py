@@ -26,7 +26,10 @@ def project() -> Path:
 
 @pytest.fixture(scope="session")
 def shared_data() -> Path:
-    """Return the folder of open data that lies beside the project, or skip."""
+    """Return the folder of open data that lies beside the project, or skip.
+
+    STRUCTVIZ_TESTS=all-but-data is for a checkout alone on its machine: what it can have must be there, the data may not.
+    """
     folder = SHARED / "data"
     if not folder.is_dir():
         skip_or_fail("the open data folder shared/data is not beside the project")
