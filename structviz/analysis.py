@@ -5,7 +5,7 @@ from __future__ import annotations
 import os
 from collections.abc import Callable, Mapping, Sequence
 from concurrent.futures import ThreadPoolExecutor
-from dataclasses import dataclass, field, fields
+from dataclasses import Field, dataclass, field, fields
 from typing import Any
 
 import numpy as np
@@ -54,6 +54,12 @@ def setting(default: object, unit: str, low: float, high: float, text: str) -> A
     return field(default=default, metadata={"unit": unit, "low": low, "high": high, "help": text})
 
 
+def bounds(item: Field[Any]) -> str:
+    """Return the range of a setting in words, with its unit."""
+    low, high = (f"{item.metadata[end]:{'d' if isinstance(item.default, int) else 'g'}}" for end in ("low", "high"))
+    return f"{low} to {high} {item.metadata['unit']}".rstrip()
+
+
 @dataclass(frozen=True)
 class Settings:
     """Every choice a user may change; each field is a command-line option, a key of results.json and a row of the README."""
@@ -76,7 +82,7 @@ class Settings:
         for item in fields(self):
             value, low, high = getattr(self, item.name), item.metadata["low"], item.metadata["high"]
             if isinstance(value, bool) or not isinstance(value, (int, float)) or not low <= value <= high:
-                wanted = f"{low:g} to {high:g} {item.metadata['unit']}".rstrip()
+                wanted = bounds(item)
                 raise ArgumentError(f"{item.name}: found {value!r}; wanted {wanted}", hint=f"{item.metadata['help']}")
 
 

@@ -15,7 +15,7 @@ from dataclasses import Field, fields
 from types import FrameType
 from typing import Any
 
-from structviz.analysis import Analysis, Settings
+from structviz.analysis import Analysis, Settings, bounds
 from structviz.analysis import run as analyse
 from structviz.checks import checked_limits
 from structviz.cli.progress import progress_bar
@@ -72,8 +72,7 @@ def option(name: str) -> str:
 
 def _help(item: Field) -> str:
     known = item.metadata
-    bounds = f"{known['low']} to {known['high']} {known['unit']}".rstrip()
-    return f"{known['help']} ({bounds}; default {item.default})".replace("%", "%%")
+    return f"{known['help']} ({bounds(item)}; default {item.default:g})".replace("%", "%%")
 
 
 def _settings(args: argparse.Namespace) -> Settings:

@@ -28,4 +28,8 @@ def render(
             written.append(entry.file_name)
         except RenderingUnavailable as error:
             skipped.append(f"{error.message}; install it with: {error.hint}")
+        except (ArithmeticError, AttributeError, ImportError, LookupError, RuntimeError, TypeError, ValueError) as error:
+            # A picture that fails is a fault of ours; the numbers, which do not, must not be lost with it.
+            (folder / entry.file_name).unlink(missing_ok=True)
+            skipped.append(f"{entry.file_name} could not be drawn ({type(error).__name__}: {error}); please report it")
     return tuple(written), tuple(dict.fromkeys(skipped))
