@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections import Counter
 from collections.abc import Iterator
 
+import numpy as np
+
 from structviz.checks import samples
 from structviz.checks.registry import Evidence, Examined, Found, check, listed, many
 from structviz.kinematics.senses import Sector
@@ -126,8 +128,11 @@ def conflicting_set(examined: Examined, limit: float) -> Iterator[Found]:
 
 def _near(examined: Examined, leader: int, those: list[int], limit_deg: float) -> list[int]:
     """Return which of the faults have a mean plane within an angle of the leader's."""
-    normal = examined.measured[leader].normal
-    return [k for k in those if axial_angle_deg(examined.measured[k].normal, normal) <= limit_deg]
+    if not those:
+        return []
+    normals = np.array([examined.measured[k].normal for k in those])
+    near = axial_angle_deg(normals, examined.measured[leader].normal) <= limit_deg
+    return [k for k, is_near in zip(those, near) if is_near]
 
 
 def _alike(first: Sector | None, second: Sector | None) -> bool:
