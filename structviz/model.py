@@ -1,4 +1,4 @@
-"""The fault model: surfaces, what is declared of them, striae and horizons, in one frame."""
+"""The fault model: surfaces, what is declared of them, striae and horizons, and what was measured apart from them, in one frame."""
 
 from __future__ import annotations
 
@@ -41,6 +41,26 @@ class Stria:
 
 
 @dataclass(frozen=True)
+class Mechanism:
+    """One earthquake by its nodal planes; which of them slipped is not known."""
+
+    name: str
+    place: tuple[float, float, float]  # easting, northing, up, m; NaN where not given
+    planes: tuple[tuple[float, float, float], ...]  # one or two, each strike, dip and rake in degrees
+    weight: float = 1.0
+
+
+@dataclass(frozen=True)
+class WellAzimuth:
+    """The greatest horizontal compression measured in one well."""
+
+    name: str
+    shmax_deg: float  # azimuth from the model's north, [0, 180)
+    uncertainty_deg: float  # one standard deviation
+    place: tuple[float, float, float]  # easting, northing, up, m; NaN where not given
+
+
+@dataclass(frozen=True)
 class InputFile:
     """One file that was read, by its path relative to the model, and its SHA-256."""
 
@@ -71,3 +91,6 @@ class FaultModel:
     crs: str = ""
     inputs: tuple[InputFile, ...] = ()
     findings: tuple[Finding, ...] = ()  # what reading noticed
+    mechanisms: tuple[Mechanism, ...] = ()
+    azimuths: tuple[WellAzimuth, ...] = ()
+    mechanisms_are: str = "independent"  # of the faults, and compared with the answer | "evidence" for it

@@ -21,6 +21,7 @@ from structviz.checks import checked_limits
 from structviz.cli.progress import progress_bar
 from structviz.errors import ArgumentError
 from structviz.io import read_model
+from structviz.io.independent import with_measurements
 from structviz.report.results_json import results_text
 from structviz.report.summary import show
 from structviz.report.write import RESULTS, Written, checked_target, write_outputs
@@ -34,6 +35,8 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--json", action="store_true", help="print results.json instead of the summary")
     parser.add_argument("--no-pictures", action="store_true", help="leave the pictures out")
     parser.add_argument("--allow-outside", action="store_true", help="let the model use files outside its own folder")
+    parser.add_argument("--mechanisms", metavar="FILE", default="", help="compare with earthquake mechanisms (CSV, or QuakeML by ObsPy)")
+    parser.add_argument("--well-azimuths", metavar="FILE", default="", help="compare with SHmax azimuths measured in wells (CSV)")
     parser.add_argument(
         "--limit",
         action="append",
@@ -53,6 +56,7 @@ def run(args: argparse.Namespace) -> int:
         checked_target(args.out)  # better told now than after the work
     with _ending_like_an_interrupt(), progress_bar() as progress:
         model = read_model(args.path, allow_outside=args.allow_outside, progress=progress)
+        model = with_measurements(model, args.mechanisms, args.well_azimuths)
         analysis = analyse(model, settings, limits=limits, progress=progress)
         written = None
         if args.out is not None:

@@ -10,7 +10,20 @@ from structviz.errors import TableError
 from structviz.io.tables import FAULT_COLUMNS, Row, nearest
 from structviz.io.units import METRES, VERTICAL, Frame
 
-TOP_KEYS = ("title", "crs", "length_unit", "vertical", "faults", "striae", "fault", "horizon")
+TOP_KEYS = (
+    "title",
+    "crs",
+    "length_unit",
+    "vertical",
+    "faults",
+    "striae",
+    "mechanisms",
+    "mechanisms_are",
+    "well_azimuths",
+    "fault",
+    "horizon",
+)
+MECHANISMS_ARE = ("independent", "evidence")
 HORIZON_KEYS = ("name", "surface")
 
 
@@ -23,6 +36,9 @@ class ModelFile:
     frame: Frame = field(default_factory=Frame)
     faults: str = ""  # path of a faults table
     striae: str = ""  # path of a table of striae
+    mechanisms: str = ""  # path of a table of mechanisms, or of QuakeML
+    mechanisms_are: str = "independent"
+    well_azimuths: str = ""  # path of a table of azimuths from wells
     fault_rows: tuple[Row, ...] = ()
     horizon_rows: tuple[Row, ...] = ()
 
@@ -35,7 +51,12 @@ def parsed_model(content: bytes, file: str) -> ModelFile:
         raise TableError(file, f"text that is not TOML ({error})", "a model file in TOML", hint="correct that line") from None
     check_keys(tree, TOP_KEYS, file)
     frame = Frame(choice(tree, "length_unit", tuple(METRES), file), choice(tree, "vertical", VERTICAL, file))
-    texts = {key: text(tree, key, file) for key in ("title", "crs", "faults", "striae")}
+    texts = {key: text(tree, key, file) for key in ("title", "crs", "faults", "striae", "mechanisms", "well_azimuths")}
+    texts["mechanisms_are"] = choice(tree, "mechanisms_are", MECHANISMS_ARE, file)
+    if "mechanisms_are" in tree and not texts["mechanisms"]:
+        raise TableError(
+            file, "mechanisms_are without mechanisms", 'mechanisms = "..."', hint="name the file of mechanisms, or delete the key"
+        )
     rows = entries(tree, "fault", FAULT_COLUMNS, file)
     if not rows and not texts["faults"]:
         raise TableError(

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import os
 from collections import Counter
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 
 from structviz.errors import InputError, TableError
 from structviz.io.format import Piece
+from structviz.io.independent import with_file
 from structviz.io.ledger import Ledger, Progress, content_of, mesh_files, missing, pieces_of
 from structviz.io.model_file import ModelFile, parsed_model
 from structviz.io.striae import read_striae
@@ -107,7 +109,13 @@ def model_of_file(ledger: Ledger, path: Path, model: ModelFile, progress: Progre
     for message in told:
         ledger.note("model", message)
     note_shared_surfaces(ledger, faults)
-    return finished(ledger, model.title or path.stem, model.crs, tuple(faults), tuple(horizons), striae)
+    apart = FaultModel("", ())  # carries what was measured apart from the faults until the ledger is closed
+    if model.mechanisms:
+        apart = with_file(apart, ledger, inside(ledger, model.mechanisms, path.name), model.frame, model.mechanisms_are)
+    if model.well_azimuths:
+        apart = with_file(apart, ledger, inside(ledger, model.well_azimuths, path.name), model.frame)
+    found = finished(ledger, model.title or path.stem, model.crs, tuple(faults), tuple(horizons), striae)
+    return replace(found, mechanisms=apart.mechanisms, mechanisms_are=apart.mechanisms_are, azimuths=apart.azimuths)
 
 
 def note_shared_surfaces(ledger: Ledger, faults: list[Fault]) -> None:

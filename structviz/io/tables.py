@@ -6,7 +6,7 @@ import csv
 import difflib
 import io
 import math
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 
 from structviz.errors import ArgumentError, TableError
@@ -50,17 +50,20 @@ def nearest(word: str, known: Iterable[str]) -> str:
     return f"did you mean {near[0]!r}? " if near else ""
 
 
-def read_table(content: bytes, file: str, needed: Sequence[str], known: Sequence[str]) -> Table:
+def read_table(content: bytes, file: str, needed: Sequence[str], known: Sequence[str], aliases: Mapping[str, str] | None = None) -> Table:
     """Return the rows of a CSV file that is parted by commas, semicolons or tabs; blank rows are passed over.
 
+    `aliases` gives our name of columns that others call differently.
     Raises TableError where the text cannot be read, a needed column is missing, a column comes twice, or there is no row.
     """
     text = decoded(content, file)
     lines = list(parsed_lines(text, file))
     if not lines:
-        raise TableError(file, "an empty table", f"a header with {', '.join(needed)}", hint="write one row a fault under a header")
+        raise TableError(
+            file, "an empty table", f"a header with {', '.join(needed)}", hint="write a header, and a row below it for each entry"
+        )
     (_, header), body = lines[0], lines[1:]
-    header = [cell.strip() for cell in header]
+    header = [(aliases or {}).get(cell.strip(), cell.strip()) for cell in header]
     check_header(header, file, needed, known)
     if not body:
         raise TableError(file, "a header and no rows", "one row or more", hint="write one row below the header for each entry")
