@@ -5,7 +5,7 @@ from __future__ import annotations
 import os
 from collections.abc import Callable, Mapping, Sequence
 from concurrent.futures import ThreadPoolExecutor
-from dataclasses import Field, dataclass, field, fields
+from dataclasses import Field, dataclass, field, fields, replace
 from typing import Any
 
 import numpy as np
@@ -20,6 +20,7 @@ from structviz.kinematics.senses import Sector
 from structviz.model import Fault, FaultModel, Finding, Stria
 from structviz.orientation.planes import normals as plane_normals
 from structviz.orientation.planes import slip_vectors
+from structviz.stress.answer import Answer, answer, is_tight, judge_in_phases
 from structviz.stress.conjugate import PairLimits, Pairs
 from structviz.stress.evidence import EvidenceModel, FaultEvidence, gather, sector_edges
 from structviz.stress.joint import Terms, infer
@@ -28,7 +29,7 @@ from structviz.stress.readings import pair_frames, regime_of_frames, shape_ratio
 from structviz.stress.regime import Reading, Regime
 from structviz.stress.replicates import Posterior, bootstrap_counts
 from structviz.stress.slip_lines import OFF_PLANE_DEG, SlipLines, gather_lines, off_plane_deg
-from structviz.stress.verdict import Verdict, VerdictLimits, judge, likely_causes, undetermined
+from structviz.stress.verdict import Verdict, VerdictLimits, likely_causes, undetermined
 from structviz.surfaces.measure import measure
 from structviz.surfaces.proximity import candidate_pairs, nearest_approach
 from structviz.surfaces.stations import sample_stations
@@ -46,7 +47,6 @@ CAUTIONS = (
 )
 FACETS = 6  # a curved fault speaks for this many of its stations
 PAIR_REPLICATES = 200
-LOOSEST_CONE_DEG = 55.0  # beyond this on sigma1 and sigma3 both, no regime is claimed
 
 
 def setting(default: object, unit: str, low: float, high: float, text: str) -> Any:
@@ -95,6 +95,8 @@ class FaultResult:
     stations: Stations
     verdict: Verdict
     sector: Sector | None = None  # the declaration as it could be tested on this surface; None where it could not
+    phase: int = 0  # row of Analysis.regimes by which it is judged
+    membership: tuple[float, ...] = ()  # probability of each phase, where there are several
 
 
 @dataclass(frozen=True, eq=False)
@@ -145,19 +147,25 @@ def run(
     tell("inferring stress", 0, 1)
     evidence = _evidence(examined, model.striae, subjects, geometric)
     counts = bootstrap_counts(len(examined.faults), settings.replicates, settings.random_state)
-    readings, joint = _read(evidence, geometric, pairs, counts, settings)
-    verdicts = _judge_all(examined, joint, settings, tell)
+    readings, found = _read(evidence, geometric, pairs, counts, [fault.phase for fault in examined.faults], settings)
+    verdicts = _judge_all(examined, found, settings, tell)
     back = np.argsort(order)
-    results = tuple(
-        FaultResult(examined.faults[i], examined.measured[i], examined.stations[i], verdicts[i], examined.sectors[i]) for i in back
-    )
+    results = tuple(_result(examined, found, verdicts[i], int(i)) for i in back)
     pairs = _renumber(pairs, order)
-    regimes = tuple(reading.regime for reading in readings if reading.key == "joint" and reading.regime)
+    regimes = found.regimes if found else ()
     tell("checking", 0, 1)
-    evidence_for_checks = Examined(model, tuple(r.measured for r in results), pairs, readings, regimes, tuple(r.verdict for r in results))
+    contradictions = tuple(replace(each, fault=int(order[each.fault])) for each in found.phases.contradictions) if found else ()
+    measured, judged = tuple(r.measured for r in results), tuple(r.verdict for r in results)
+    evidence_for_checks = Examined(model, measured, pairs, readings, regimes, judged, contradictions)
     used = checks.checked_limits(limits or {})
     findings = model.findings + checks.run(evidence_for_checks, used)
     return Analysis(model, settings, results, pairs, readings, regimes, findings, CAUTIONS, __version__, used)
+
+
+def _result(examined: _Examination, found: Answer | None, verdict: Verdict, i: int) -> FaultResult:
+    several = found is not None and len(found.regimes) > 1
+    phase, membership = (int(found.homes[i]), tuple(map(float, found.phases.membership[i]))) if found and several else (0, ())
+    return FaultResult(examined.faults[i], examined.measured[i], examined.stations[i], verdict, examined.sectors[i], phase, membership)
 
 
 def _examine(model: FaultModel, settings: Settings, tell: Progress) -> tuple[_Examination, NDArray[np.int64]]:
@@ -271,9 +279,9 @@ def _nearest_normal(stations: Stations, place: Sequence[float]) -> Floats:
 
 
 def _read(
-    evidence: FaultEvidence, geometric: Pairs, pairs: Pairs, counts: NDArray[np.int64], settings: Settings
-) -> tuple[tuple[Reading, ...], Posterior | None]:
-    """Return the three readings of the evidence and the joint one, with the posterior of the latter."""
+    evidence: FaultEvidence, geometric: Pairs, pairs: Pairs, counts: NDArray[np.int64], phases: Sequence[str], settings: Settings
+) -> tuple[tuple[Reading, ...], Answer | None]:
+    """Return the three readings of the evidence and the joint one, and the answer that the verdicts follow."""
     odds = EvidenceModel(friction_angle_deg=settings.friction_angle_deg)
     some = counts[:PAIR_REPLICATES]
     readings = [
@@ -290,11 +298,10 @@ def _read(
         )
     )
     speaking = int((evidence.declared | evidence.measured | (evidence.partnered > 0)).sum())
-    joint = infer(evidence, odds, Terms(), counts) if speaking >= 2 else None
-    readings.append(
-        _posterior_reading("joint", "all evidence together", joint, speaking, "no admissible pair and fewer than two declared movements")
-    )
-    return tuple(readings), joint
+    found = answer(evidence, odds, counts, phases, settings.random_state) if speaking >= 2 else None
+    joint, why_not = found.single if found else None, "no admissible pair and fewer than two declared movements"
+    readings.append(_posterior_reading("joint", "all evidence together", joint, speaking, why_not))
+    return tuple(readings), found
 
 
 def _pair_reading(key: str, title: str, pairs: Pairs, counts: NDArray[np.int64], why_not: str) -> Reading:
@@ -307,25 +314,25 @@ def _posterior_reading(key: str, title: str, posterior: Posterior | None, count:
     if posterior is None:
         return Reading(key, title, None, count, why_not)
     regime = regime_of_frames(posterior.frame, posterior.frames, shape_ratio_of(posterior))
-    if min(regime.cones_deg[0], regime.cones_deg[2]) > LOOSEST_CONE_DEG:
+    if not is_tight(regime):
         return Reading(
             key, title, None, count, f"the evidence is too loose: sigma1 and sigma3 are known only to {regime.cones_deg[0]:.0f} deg"
         )
     return Reading(key, title, regime, count)
 
 
-def _judge_all(examined: _Examination, joint: Posterior | None, settings: Settings, tell: Progress) -> Sequence[Verdict]:
+def _judge_all(examined: _Examination, found: Answer | None, settings: Settings, tell: Progress) -> Sequence[Verdict]:
     limits = VerdictLimits(conflicting_from=settings.conflict_probability, least_shear=settings.least_shear)
-    if joint is None:
+    if found is None:
         return [undetermined("no stress could be inferred")] * len(examined.faults)
     cases = list(enumerate(zip(examined.stations, examined.sectors, examined.why_no_sector, strict=True)))
-    return _for_each(lambda case: _judge_one(joint, case[0], case[1][0], case[1][1], case[1][2], limits), cases, "judging faults", tell)
+    return _for_each(lambda case: _judge_one(found, case[0], case[1][0], case[1][1], case[1][2], limits), cases, "judging faults", tell)
 
 
-def _judge_one(joint: Posterior, number: int, stations: Stations, sector: Sector | None, why: str, limits: VerdictLimits) -> Verdict:
+def _judge_one(found: Answer, number: int, stations: Stations, sector: Sector | None, why: str, limits: VerdictLimits) -> Verdict:
     shares = np.full(len(stations.normals), 1 / len(stations.normals))
-    verdict, prediction = judge(joint, number, stations.normals, shares, sector, why, limits)
+    verdict, prediction = judge_in_phases(found, number, stations.normals, shares, sector, why, limits)
     if verdict.word != "conflicting" or prediction is None or sector is None:
         return verdict
-    causes = likely_causes(joint, number, prediction, stations.normals, shares, sector)
+    causes = likely_causes(found.posteriors[found.homes[number]], number, prediction, stations.normals, shares, sector)
     return Verdict(**{**verdict.__dict__, "causes": causes})

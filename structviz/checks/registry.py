@@ -13,6 +13,7 @@ from structviz._validate import check_range
 from structviz.errors import ArgumentError
 from structviz.model import Fault, FaultModel, Finding
 from structviz.stress.conjugate import Pairs
+from structviz.stress.phases import Contradiction
 from structviz.stress.regime import Reading, Regime
 from structviz.stress.verdict import Verdict
 from structviz.surfaces.surface import MeasuredSurface
@@ -25,7 +26,7 @@ Evidence = tuple[tuple[str, float | int | str], ...]
 
 @dataclass(frozen=True, eq=False)
 class Examined:
-    """What checks look at; measured and verdicts keep the order of model.faults. Before the stress is inferred the last four are empty."""
+    """What checks look at; measured and verdicts keep the order of model.faults. Before the stress is inferred the rest is empty."""
 
     model: FaultModel
     measured: tuple[MeasuredSurface, ...] = ()
@@ -33,6 +34,7 @@ class Examined:
     readings: tuple[Reading, ...] = ()
     regimes: tuple[Regime, ...] = ()
     verdicts: tuple[Verdict, ...] = ()
+    contradictions: tuple[Contradiction, ...] = ()  # of declared phases; faults by their place in the model
 
     def faults(self) -> Iterator[tuple[Fault, MeasuredSurface]]:
         """Return each fault with its measured surface."""

@@ -124,6 +124,8 @@ def _fault(result: FaultResult, mesh: str | None) -> Row:
         "cone_deg": rounded(measured.cone_deg, 2) if measured.meaningful else None,
         "why_no_mean_plane": measured.why_not or None,
         "phase": result.fault.phase or None,
+        "regime": result.phase,
+        "membership": [rounded(value, 4) for value in result.membership],
         "down_side": result.fault.down_side or None,
         "declared": _declared(result.fault.declared),
         "tested": _declared(result.sector),
@@ -178,6 +180,8 @@ def _regime(regime: Regime) -> Row:
         "shmax_half_width_deg": rounded(regime.shmax_half_width_deg, 2),
         "shape_ratio": shown,
         "weight": rounded(regime.weight, 4),
+        "phase": regime.name or None,
+        "faults": regime.faults,
     }
 
 

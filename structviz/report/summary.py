@@ -117,7 +117,7 @@ def _head(analysis: Analysis) -> Iterator[RenderableType]:
         yield _line(("No stress could be inferred", "bold yellow"), (f"{why}.", ""), indent=2)
         return
     for regime in analysis.regimes:
-        share = f"  {100 * regime.weight:.0f} % of the evidence" if len(analysis.regimes) > 1 else ""
+        share = f"   {printable(regime.name, 30)}, {_count(regime.faults, 'fault')}" if len(analysis.regimes) > 1 else ""
         loose = "   poorly determined" if max(regime.cones_deg) > LOOSE_DEG else ""
         kind, azimuth = (f"{regime.kind.upper()} stress", "bold cyan"), (f"   SHmax {_shmax(regime)}", "bold")
         yield _line(kind, azimuth, (loose, "bold yellow"), (share, "dim"), indent=2)

@@ -161,10 +161,9 @@ def _fill(new: Path, analysis: Analysis, pictures: bool, tell: Progress) -> tupl
     """Write every file into a new folder; return their names, relative to it, and why pictures are missing."""
     meshes = mesh_files(analysis)
     (new / "faults").mkdir()
-    regime = analysis.regimes[0] if analysis.regimes else None
     for number, result in enumerate(analysis.faults):
         tell("writing meshes", number, len(analysis.faults))
-        write_annotated(result, regime, new / meshes[result.fault.name])
+        write_annotated(result, analysis.regimes[result.phase] if analysis.regimes else None, new / meshes[result.fault.name])
     _write_text(new / "faults.csv", csv_text(fault_table(analysis)))
     _write_text(new / "pairs.csv", csv_text(pair_table(analysis)))
     skipped = render(analysis, new, progress=tell)[1] if pictures else ()

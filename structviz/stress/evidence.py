@@ -64,7 +64,7 @@ class FaultEvidence:
         """Whether slip was measured, (F,)."""
         return self.slips.weights.sum(1) > 0
 
-    def part(self, rows: slice) -> FaultEvidence:
+    def part(self, rows: slice | NDArray[np.int64]) -> FaultEvidence:
         """Return the evidence of some of the faults."""
         return FaultEvidence(
             self.normals[rows], self.shares[rows], self.edges[rows], self.partnered[rows], self.geometry_known[rows], self.slips.part(rows)

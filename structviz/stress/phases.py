@@ -4,7 +4,7 @@ A fault's log-likelihood under a stress does not depend on the other faults, so 
 fitted by expectation and maximisation [dempster1977] with one matrix product a round: memberships from the likelihoods of each fault
 under the stresses at hand, then for each stress the best place of the grid for the faults that belong to it. The number is
 chosen by the Bayesian information criterion [schwarz1978]. What a fault can say is bounded (a wrong label, an inherited plane),
-so a handful of faults that fit nothing do not pay for a stress of their own.
+so a handful of faults that fit nothing do not pay for a stress of their own; nor does a fabric of parallel planes (`fabric`).
 """
 
 from __future__ import annotations
@@ -20,6 +20,7 @@ from structviz.errors import ArgumentError
 from structviz.orientation.vectors import axial_angle_deg
 from structviz.stress.conjugate import swap_extremes
 from structviz.stress.evidence import EvidenceModel, FaultEvidence, geometry_term, sense_term
+from structviz.stress.fabric import on_one_plane
 from structviz.stress.frames import all_frames, ball, turned
 from structviz.stress.joint import (
     COARSE_FRAMES,
@@ -263,11 +264,19 @@ def _refined(evidence: FaultEvidence, fit: _Fit, belongs: Integers) -> _Fit:
 def _over_all(evidence: FaultEvidence, fit: _Fit, belongs: Integers) -> _Fit:
     """Return the mixture of the same stresses with support, memberships and shares of the faults given."""
     terms = np.stack([_terms_at(evidence, f, r, fit.odds) for f, r in zip(fit.frames, fit.ratios, strict=True)], 1)
-    after = fit
-    for _ in range(SHORT_ROUNDS):
-        after = _expected(terms, after.shares, belongs)
+    after = _settled(terms, fit.shares, belongs)
+    lone = on_one_plane(evidence, after.membership, fit.frames, fit.odds) if len(fit.shares) > 1 else np.zeros(1, bool)
+    if lone.any():
+        after = _settled(terms - lone * geometry_term(evidence, fit.frames, fit.odds), after.shares, belongs)
     prior = np.log(OBTUSE_PRIOR) if fit.odds.obtuse_share > 0.5 else 0.0
     return replace(after, support=after.support + prior, odds=fit.odds, frames=fit.frames, ratios=fit.ratios)
+
+
+def _settled(terms: Floats, shares: Floats, belongs: Integers) -> _Fit:
+    fit = _expected(terms, shares, belongs)
+    for _ in range(SHORT_ROUNDS):
+        fit = _expected(terms, fit.shares, belongs)
+    return fit
 
 
 def _centred(evidence: FaultEvidence, fit: _Fit, phase: int, turns: Floats) -> tuple[Floats, Floats]:

@@ -19,6 +19,7 @@ HEAVIEST = 3000  # pairs that are heard; the rest weigh next to nothing
 ROUNDS = 12
 KERNEL = np.radians(20.0) ** 2  # squared angle over which a frame counts as near
 PLANE_SCATTER_DEG = EvidenceModel().plane_scatter_deg
+LOOSEST_CONE_DEG = 55.0  # beyond this on sigma1 and sigma3 both, no regime is claimed
 RESOLVED = 0.5  # R is reported where its interval is narrower than this
 
 

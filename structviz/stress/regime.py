@@ -30,6 +30,8 @@ class Regime:
     shmax_half_width_deg: float  # half-width of its confidence interval
     shape_ratio: ShapeRatio | None  # None where the data leave it open
     weight: float = 1.0  # share of the faults' evidence
+    name: str = ""  # of its phase, where there are several
+    faults: int = 0  # that belong to it
 
 
 @dataclass(frozen=True, eq=False)

@@ -27,7 +27,7 @@ class SlipLines:
     signed: NDArray[np.bool_]  # (F, N) whether the sense along the line is known
     weights: Floats  # (F, N) 0 for padding
 
-    def part(self, rows: slice) -> SlipLines:
+    def part(self, rows: slice | NDArray[np.int64]) -> SlipLines:
         """Return the lines of some of the faults."""
         return SlipLines(self.normals[rows], self.lines[rows], self.signed[rows], self.weights[rows])
 

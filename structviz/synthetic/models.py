@@ -52,6 +52,7 @@ def random_model(
     friction_angle_deg: float = 30.0,
     least_shear: float = 0.3,
     least_dip_deg: float = 15.0,
+    fabric_deg: float | None = None,
     two_words: bool = False,
     box_m: float = 15_000.0,
     random_state: int,
@@ -69,6 +70,7 @@ def random_model(
     shape_ratio : R is drawn evenly from this range.
     least_shear, least_dip_deg : an inherited plane with less shear (share of the greatest on any plane) had no reason to
         move, and one that dips less is left out.
+    fabric_deg : inherited planes follow one fabric, this far from a common plane (root mean square angle); None for all directions.
     two_words : declare an oblique slip by two words, dominant first, instead of the dominant one.
     random_state : the same number gives the same model.
 
@@ -84,7 +86,7 @@ def random_model(
     tensor = reduced_tensor(axes, ratio)
     sigma = scatter_deg if scatter_per_axis else scatter_deg / np.sqrt(2.0)
     first = _conjugate_normals(planes, axes, conjugate, friction_angle_deg, sigma)
-    second = _inherited_normals(planes, tensor, faults - conjugate, least_shear, least_dip_deg)
+    second = _inherited_normals(planes, tensor, faults - conjugate, least_shear, least_dip_deg, fabric_deg)
     order = planes.permutation(faults)
     normals = np.concatenate([first, second])[order]
     kinds = np.repeat(["conjugate", "inherited"], [conjugate, faults - conjugate])[order]
@@ -151,15 +153,19 @@ def _conjugate_normals(rng: np.random.Generator, axes: Floats, count: int, frict
     return _upward(np.einsum("fij,fj->fi", turns, ideal))
 
 
-def _inherited_normals(rng: np.random.Generator, tensor: Floats, count: int, least_shear: float, least_dip_deg: float) -> Floats:
-    """Return upward normals (count, 3), even over all planes that could be moved by the stress."""
+def _inherited_normals(
+    rng: np.random.Generator, tensor: Floats, count: int, least_shear: float, least_dip_deg: float, fabric_deg: float | None
+) -> Floats:
+    """Return upward normals (count, 3) of planes that could be moved by the stress: of all directions, or about one of them."""
     kept = np.zeros((0, 3))
     while len(kept) < count:
         tries = rng.normal(size=(64, 3))
+        if fabric_deg is not None and len(kept):
+            tries = kept[0] + np.radians(fabric_deg / np.sqrt(2.0)) * tries
         tries = _upward(tries / np.linalg.norm(tries, axis=1)[:, None])
         share = shear_and_normal(tensor, tries)[0] / 0.5  # the greatest shear of a reduced tensor is a half
         keep = (share >= least_shear) & (tries[:, 2] <= np.cos(np.radians(least_dip_deg)))
-        kept = np.concatenate([kept, tries[keep]])
+        kept = np.concatenate([kept, tries[keep][:1] if fabric_deg is not None and not len(kept) else tries[keep]])
     return kept[:count]
 
 

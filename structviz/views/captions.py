@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from structviz.analysis import Analysis
 
+COUNTS = {2: "Two", 3: "Three"}
 WORDS = ("conflicting", "undetermined", "consistent")
 
 
@@ -11,9 +12,19 @@ def regime_line(analysis: Analysis) -> str:
     """Return the regime in one line: class, SHmax and its interval; or that none could be inferred."""
     if not analysis.regimes:
         return "No stress regime could be inferred"
+    if len(analysis.regimes) > 1:
+        return f"{COUNTS.get(len(analysis.regimes), 'Several')} phases of faulting"
     regime = analysis.regimes[0]
     kind = "Undefined class of stress" if regime.kind == "undefined" else f"{regime.kind.capitalize()} faulting"
     return f"{kind}, SHmax {round(regime.shmax_deg) % 180:03d} \u00b1 {regime.shmax_half_width_deg:.0f}\u00b0"
+
+
+def model_line(analysis: Analysis) -> str:
+    """Return the title of the model; where there are several phases, what each is stands before it."""
+    if len(analysis.regimes) < 2:
+        return analysis.model.title
+    phases = (f"({k}) {r.kind}, SHmax {round(r.shmax_deg) % 180:03d}\u00b0" for k, r in enumerate(analysis.regimes, 1))
+    return f"{'; '.join(phases)}   {analysis.model.title}"
 
 
 def count_line(analysis: Analysis) -> tuple[tuple[str, int], ...]:

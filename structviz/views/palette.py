@@ -25,4 +25,15 @@ VERDICTS = {
     "conflicting": Look("#a33a1c", 2.2, ()),
     "undetermined": Look("#d9cba6", 1.0, (4.0, 2.5)),
 }
+
+
+@dataclass(frozen=True)
+class PhaseLook:
+    """How the axes of one phase are drawn on the net: filled with a full cone, or hollow with a dashed one."""
+
+    filled: bool
+    line: str
+
+
+PHASE_LOOKS = (PhaseLook(True, "-"), PhaseLook(False, "--"), PhaseLook(False, ":"))
 SIGMA = ("#22303c", "#7a6a8e", "#d9a12b")  # sigma1 dark, sigma2 middling, sigma3 light

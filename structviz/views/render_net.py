@@ -10,7 +10,7 @@ from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 from matplotlib.patches import Circle
 
-from structviz.views.palette import FAINT, HAIR, INK, PAPER, SIGMA, VERDICTS
+from structviz.views.palette import FAINT, HAIR, INK, PAPER, PHASE_LOOKS, SIGMA, VERDICTS
 from structviz.views.stereonet import Net, NetAxis, NetPlane, NetSlip
 
 FONT = "DejaVu Sans"
@@ -27,8 +27,8 @@ def draw(net: Net, path: Path) -> None:
         _plane(axes, plane)
     for slip in net.slips:
         _slip(axes, slip)
-    for number, axis in enumerate(net.axes):
-        _axis(axes, axis, number)
+    for axis in net.axes:
+        _axis(axes, axis)
     figure.text(0.03, 0.955, net.title, fontsize=15, color=INK, va="center", weight="bold", family=FONT)
     figure.text(0.03, 0.912, net.subtitle, fontsize=9, color=INK, va="center", family=FONT)
     _key(figure, net)
@@ -70,18 +70,22 @@ def _slip(axes: Axes, slip: NetSlip) -> None:
     )  # fmt: skip
 
 
-def _axis(axes: Axes, axis: NetAxis, number: int) -> None:
+def _axis(axes: Axes, axis: NetAxis) -> None:
+    """One principal axis with its cone; those of a second phase are hollow and their cones dashed."""
+    number, look = axis.number, PHASE_LOOKS[min(axis.phase, len(PHASE_LOOKS) - 1)]
     for line in axis.cone:
-        axes.plot(*line.T, color=SIGMA[number], linewidth=1.4, zorder=7)
-        axes.fill(*line.T, color=SIGMA[number], alpha=0.13, zorder=1, linewidth=0)
+        axes.plot(*line.T, color=SIGMA[number], linewidth=1.4, zorder=7, linestyle=look.line)
+        if look.filled:
+            axes.fill(*line.T, color=SIGMA[number], alpha=0.13, zorder=1, linewidth=0)
+    face, edge = (SIGMA[number], "white") if look.filled else ("white", SIGMA[number])
     axes.plot(
-        *axis.point, marker=SIGMA_MARKS[number], markersize=10, color=SIGMA[number], zorder=8, markeredgecolor="white", markeredgewidth=1.2
+        *axis.point, marker=SIGMA_MARKS[number], markersize=10, markerfacecolor=face, markeredgecolor=edge, markeredgewidth=1.2, zorder=8
     )
     east, north = map(float, axis.point)
     off = 0.075 if east < 0.85 else -0.075
     axes.annotate(
-        axis.label, (east, north), (east + off, north + 0.045), fontsize=13, color=INK, weight="bold", family=FONT, zorder=9,
-        ha="center", bbox={"boxstyle": "round,pad=0.12", "facecolor": "white", "edgecolor": "none", "alpha": 0.75},
+        axis.label, (east, north), (east + off, north + 0.045), fontsize=10 if axis.phase else 13, color=INK, weight="bold", family=FONT,
+        zorder=9, ha="center", bbox={"boxstyle": "round,pad=0.12", "facecolor": "white", "edgecolor": "none", "alpha": 0.75},
     )  # fmt: skip
 
 
@@ -92,10 +96,12 @@ def _key(figure: Figure, net: Net) -> None:
     axes.axis("off")
     at = 0.96
     at = _heading(axes, "Principal axes, 95 % cones", at)
-    for number, axis in enumerate(net.axes):
-        axes.plot(0.05, at, marker=SIGMA_MARKS[number], markersize=8, color=SIGMA[number])
-        axes.text(0.14, at, f"{axis.label}   {axis.text}", fontsize=9.5, va="center", color=INK, family=FONT)
-        at -= 0.052
+    step = 0.052 if len(net.axes) <= 3 else 0.036
+    for axis in net.axes:
+        filled, colour = PHASE_LOOKS[min(axis.phase, len(PHASE_LOOKS) - 1)].filled, SIGMA[axis.number]
+        axes.plot(0.05, at, marker=SIGMA_MARKS[axis.number], markersize=8, color=colour, markerfacecolor=colour if filled else PAPER)
+        axes.text(0.14, at, f"{axis.label}   {axis.text}", fontsize=9.5 if step > 0.05 else 8.5, va="center", color=INK, family=FONT)
+        at -= step
     if not net.axes:
         axes.text(0.02, at, "none could be inferred", fontsize=9.5, va="center", color=INK, family=FONT)
         at -= 0.052

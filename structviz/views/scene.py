@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from structviz.analysis import Analysis, FaultResult
-from structviz.views.captions import count_line, regime_line, shortened
+from structviz.views.captions import count_line, model_line, regime_line, shortened
 from structviz.views.registry import view
 
 Floats = NDArray[np.float64]
@@ -73,13 +73,14 @@ def build_scene(analysis: Analysis) -> Scene:
     origin = np.round((everything.min(0) + everything.max(0)) / 2)
     low, high = everything.min(0) - origin, everything.max(0) - origin
     size, azimuth = float(np.linalg.norm((high - low)[:2])), _best_azimuth(analysis.faults)
+    beside = _beside(azimuth, size, low, high)
     return Scene(
         title=regime_line(analysis),
-        subtitle=analysis.model.title,
+        subtitle=model_line(analysis),
         origin=origin,
         surfaces=tuple(_surface(result, origin) for result in analysis.faults),
-        glyphs=_glyphs(analysis, origin, _beside(azimuth, size, low, high), size),
-        labels=_labels(analysis.faults, origin),
+        glyphs=_glyphs(analysis, origin, beside, size),
+        labels=_phase_labels(analysis, beside, size) + _labels(analysis.faults, origin),
         low=low,
         high=high,
         view_from_deg=azimuth,
@@ -92,26 +93,35 @@ def _surface(result: FaultResult, origin: Floats) -> SceneSurface:
     return SceneSurface(result.fault.name, result.verdict.word, surface.vertices - origin, surface.triangles)
 
 
-def _glyphs(analysis: Analysis, origin: Floats, beside: Floats, size: float) -> tuple[StressGlyph, ...]:
-    """Return one glyph for the regime, beside the model at the near left, and small ones where the heaviest pairs meet, well apart."""
+def _glyphs(analysis: Analysis, origin: Floats, beside: tuple[Floats, Floats], size: float) -> tuple[StressGlyph, ...]:
+    """Return a glyph for each regime, beside the model at the near left, and small ones where the heaviest pairs meet, well apart."""
     if not analysis.regimes:
         return ()
-    glyphs = [StressGlyph(beside, analysis.regimes[0].axes, 0.075 * size)]
+    glyphs = [StressGlyph(beside[0] + k * beside[1], regime.axes, 0.075 * size) for k, regime in enumerate(analysis.regimes)]
+    large = len(glyphs)
     apart = 0.13 * size
     for axes, place in zip(analysis.pairs.axes, analysis.pairs.places - origin, strict=True):
-        if len(glyphs) > MOST_GLYPHS:
+        if len(glyphs) >= MOST_GLYPHS + large:
             break
-        if all(np.linalg.norm(place - other.place) > apart for other in glyphs[1:]):
+        if all(np.linalg.norm(place - other.place) > apart for other in glyphs[large:]):
             glyphs.append(StressGlyph(place, axes, 0.033 * size))
     return tuple(glyphs)
 
 
-def _beside(azimuth_deg: float, size: float, low: Floats, high: Floats) -> Floats:
-    """Return a place at the near left of the model as seen from an azimuth, (3,) m from the origin."""
+def _beside(azimuth_deg: float, size: float, low: Floats, high: Floats) -> tuple[Floats, Floats]:
+    """Return a place at the near left of the model as seen from an azimuth, (3,) m from the origin, and a step to its right."""
     a = np.radians(azimuth_deg)
     towards, right = np.array([np.sin(a), np.cos(a), 0.0]), np.array([-np.cos(a), np.sin(a), 0.0])
     corners = np.array([[x, y, 0.0] for x in (low[0], high[0]) for y in (low[1], high[1])])
-    return (0.85 * (corners @ towards).max() + 0.14 * size) * towards + 0.74 * (corners @ right).min() * right
+    return (0.85 * (corners @ towards).max() + 0.14 * size) * towards + 0.74 * (corners @ right).min() * right, 0.2 * size * right
+
+
+def _phase_labels(analysis: Analysis, beside: tuple[Floats, Floats], size: float) -> tuple[Label, ...]:
+    """Return which phase each large glyph stands for, where there are several."""
+    if len(analysis.regimes) < 2:
+        return ()
+    over = np.array([0.0, 0.0, 0.09 * size])
+    return tuple(Label(f"({k + 1}) {r.name}, {r.kind}", beside[0] + k * beside[1] + over, "phase") for k, r in enumerate(analysis.regimes))
 
 
 def _labels(results: Sequence[FaultResult], origin: Floats) -> tuple[Label, ...]:

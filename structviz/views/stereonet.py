@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
@@ -11,7 +12,8 @@ from structviz.analysis import Analysis, FaultResult
 from structviz.orientation.lines import trend_plunge_deg
 from structviz.orientation.planes import slip_vectors
 from structviz.orientation.projection import equal_area, equal_area_directed, great_circles, small_circle
-from structviz.views.captions import count_line, regime_line
+from structviz.stress.regime import Regime
+from structviz.views.captions import count_line, model_line, regime_line
 from structviz.views.registry import view
 
 Floats = NDArray[np.float64]
@@ -46,6 +48,8 @@ class NetAxis:
     point: Floats  # (2,)
     cone: tuple[Floats, ...]  # polylines
     text: str
+    number: int = 0  # 0, 1, 2 for sigma1, sigma2, sigma3
+    phase: int = 0  # row of Analysis.regimes
 
 
 @dataclass(frozen=True, eq=False)
@@ -66,7 +70,7 @@ def build_net(analysis: Analysis) -> Net:
     shown = [result for result in analysis.faults if result.measured.meaningful]
     planes = tuple(_plane(result) for result in shown)
     slips = tuple(slip for result in shown for slip in _slips(result))
-    return Net(regime_line(analysis), analysis.model.title, planes, slips, _axes(analysis), count_line(analysis))
+    return Net(regime_line(analysis), model_line(analysis), planes, slips, _axes(analysis), count_line(analysis))
 
 
 def _plane(result: FaultResult) -> NetPlane:
@@ -88,16 +92,13 @@ def _slips(result: FaultResult) -> list[NetSlip]:
 
 
 def _axes(analysis: Analysis) -> tuple[NetAxis, ...]:
-    if not analysis.regimes:
-        return ()
-    regime = analysis.regimes[0]
+    return tuple(axis for phase, regime in enumerate(analysis.regimes) for axis in _axes_of(regime, phase, len(analysis.regimes) > 1))
+
+
+def _axes_of(regime: Regime, phase: int, several: bool) -> Iterator[NetAxis]:
     trends, plunges = trend_plunge_deg(regime.axes)
-    rows = []
     for number, (axis, cone, trend, plunge) in enumerate(zip(regime.axes, regime.cones_deg, trends, plunges, strict=True)):
         lines = tuple(small_circle(axis, min(max(cone, 0.5), 89.0)))
-        rows.append(
-            NetAxis(
-                f"\u03c3{number + 1}", equal_area(axis), lines, f"{round(float(trend)) % 360:03d}/{plunge:02.0f} \u00b1 {cone:.0f}\u00b0"
-            )
-        )
-    return tuple(rows)
+        label = f"\u03c3{number + 1}" + (f" ({phase + 1})" if several else "")
+        text = f"{round(float(trend)) % 360:03d}/{plunge:02.0f} \u00b1 {cone:.0f}\u00b0"
+        yield NetAxis(label, equal_area(axis), lines, text, number, phase)

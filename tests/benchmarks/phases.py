@@ -43,12 +43,21 @@ MIXTURES = (
 )
 
 
-def one(state: int, faults: int = 24, planted: int = 4, conjugate: int | None = None, scatter_deg: float = 6.0) -> KnownPhases:
+def one(
+    state: int, faults: int = 24, planted: int = 4, conjugate: int | None = None, scatter_deg: float = 6.0, fabric_deg: float | None = None
+) -> KnownPhases:
     """Return a model of one phase."""
     regime = REGIMES[state % 3]
     fresh = faults * 2 // 3 if conjugate is None else conjugate
     known = random_model(
-        regime, faults=faults, conjugate=fresh, planted=planted, scatter_deg=scatter_deg, triangles=60, random_state=300_000 + state
+        regime,
+        faults=faults,
+        conjugate=fresh,
+        planted=planted,
+        scatter_deg=scatter_deg,
+        fabric_deg=fabric_deg,
+        triangles=60,
+        random_state=300_000 + state,
     )
     phase_of = np.zeros(faults, np.int64)
     ratio = np.array([known.shape_ratio])
@@ -85,6 +94,8 @@ KINDS: dict[str, Callable[[int], KnownPhases]] = {
     "one, 24 faults, 8 labels wrong": lambda state: one(state, planted=8),
     "one, 30 faults, 20 of them inherited": lambda state: one(state, 30, 4, conjugate=10),
     "one, 30 faults, scatter 12 deg": lambda state: one(state, 30, 4, scatter_deg=12.0),
+    "one, 24 faults, 8 of one fabric": lambda state: one(state, fabric_deg=10.0),
+    "one, 30 faults, 14 of one fabric": lambda state: one(state, 30, 4, conjugate=16, fabric_deg=10.0),
     "two, 18 + 12 faults": two,
     "two, 18 + 12 faults, 3 labels wrong": lambda state: two(state, planted=(2, 1)),
     "two, 18 + 12, normal then reverse": inversion,
