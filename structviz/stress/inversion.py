@@ -56,7 +56,7 @@ def linear_rank(normals: ArrayLike) -> int:
     >>> linear_rank([[0.6, 0.0, 0.8]])
     2
     """
-    return _rank(_shear_design(unit(check_vectors("normals", normals))).reshape(-1, 5))
+    return _rank(shear_design(unit(check_vectors("normals", normals))).reshape(-1, 5))
 
 
 def angular_rank(normals: ArrayLike, slips: ArrayLike) -> int:
@@ -84,7 +84,7 @@ def linear_inversion(normals: ArrayLike, slips: ArrayLike, weights: ArrayLike | 
     """
     n, s = _check_data(normals, slips)
     w = np.sqrt(_check_weights(weights, len(n)))
-    design = _shear_design(n)
+    design = shear_design(n)
     rank = _rank(design[w > 0].reshape(-1, 5))
     if rank < 5:
         raise ArgumentError(
@@ -138,7 +138,7 @@ def _result(tensor: Array, n: Array, s: Array, senses_known: bool) -> SlipInvers
     return SlipInversion(axes, float(ratio), misfits, senses_known)
 
 
-def _shear_design(n: Array) -> Array:
+def shear_design(n: Array) -> Array:
     """Return d(shear part of S n)/d(S11, S12, S13, S22, S23) with S33 = -S11 - S22, shape (N, 3, 5)."""
     x, y, z = n.T
     zero = np.zeros_like(x)
@@ -152,7 +152,7 @@ def _shear_design(n: Array) -> Array:
 
 def _direction_design(n: Array, s: Array) -> Array:
     """Return rows for which a stress with its shear along each slip gives zero: (n x s).S n = 0, shape (N, 5)."""
-    return np.einsum("ni,nij->nj", np.cross(n, s), _shear_design(n))
+    return np.einsum("ni,nij->nj", np.cross(n, s), shear_design(n))
 
 
 def _tensor(components: Array) -> Array:

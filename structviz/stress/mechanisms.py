@@ -9,11 +9,11 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from structviz._validate import check_finite
+from structviz._validate import check_finite, check_vectors
 from structviz.errors import ArgumentError
 from structviz.orientation.planes import normals, rakes_deg, slip_vectors, strike_dip_deg
 from structviz.orientation.vectors import Array, check_matrices
-from structviz.stress.tensor import FRICTION, instability
+from structviz.stress.tensor import FRICTION, instability, reduced_tensor
 
 
 def normals_and_slips(strike_deg: ArrayLike, dip_deg: ArrayLike, rake_deg: ArrayLike) -> tuple[Array, Array]:
@@ -85,6 +85,21 @@ def pbt_of_moment(tensor: ArrayLike) -> tuple[Array, Array]:
 def less_stable_plane(tensor: ArrayLike, plane_normals: ArrayLike, friction: float = FRICTION) -> NDArray[np.intp]:
     """Return which of two nodal planes (..., 2, 3) is nearer to slip in a stress (3, 3): 0 or 1, shape (...) [vavrycuk2014]."""
     return np.asarray(instability(tensor, plane_normals, friction).argmax(-1))
+
+
+def choose_planes(planes_deg: ArrayLike, axes: ArrayLike, shape_ratio: float, friction: float = FRICTION) -> tuple[NDArray[np.intp], Array]:
+    """Return which nodal plane of each event is nearer to slip in a stress, (N,), and the instability of both, (N, 2) [vavrycuk2014].
+
+    planes_deg holds strike, dip and rake of both planes, (N, 2, 3); axes are unit rows sigma1, sigma2, sigma3. Of planes equally
+    near to slip the first is taken.
+    """
+    angles = check_vectors("planes_deg", planes_deg)
+    if angles.ndim != 3 or angles.shape[1] != 2:
+        raise ArgumentError(
+            f"planes_deg: found shape {angles.shape}; wanted (N, 2, 3)", hint="give strike, dip and rake of both nodal planes"
+        )
+    found = instability(reduced_tensor(axes, shape_ratio), normals(angles[..., 0], angles[..., 1]), friction)
+    return np.asarray(found.argmax(-1)), found
 
 
 def _angles(n: Array, s: Array) -> tuple[Array, Array, Array]:
