@@ -5,7 +5,7 @@ from __future__ import annotations
 import os
 from collections.abc import Callable, Mapping, Sequence
 from concurrent.futures import ThreadPoolExecutor
-from dataclasses import Field, dataclass, field, fields, replace
+from dataclasses import Field, dataclass, field, fields
 from typing import Any
 
 import numpy as np
@@ -20,7 +20,7 @@ from structviz.kinematics.senses import Sector
 from structviz.model import Fault, FaultModel, Finding, Stria
 from structviz.orientation.planes import normals as plane_normals
 from structviz.orientation.planes import slip_vectors
-from structviz.stress.answer import Answer, answer, is_tight, judge_in_phases
+from structviz.stress.answer import Answer, answer, in_order, is_tight, judge_in_phases
 from structviz.stress.conjugate import PairLimits, Pairs
 from structviz.stress.evidence import EvidenceModel, FaultEvidence, gather, sector_edges
 from structviz.stress.joint import Terms, infer
@@ -113,6 +113,7 @@ class Analysis:
     cautions: tuple[str, ...]
     version: str
     limits: Mapping[str, float] = field(default_factory=dict)  # of every check that was run
+    answer: Answer | None = None  # the stress with its replicates, faults in the order of the model; None where nothing speaks
 
     @property
     def conflicting(self) -> tuple[FaultResult, ...]:
@@ -150,21 +151,21 @@ def run(
     readings, found = _read(evidence, geometric, pairs, counts, [fault.phase for fault in examined.faults], settings)
     verdicts = _judge_all(examined, found, settings, tell)
     back = np.argsort(order)
-    results = tuple(_result(examined, found, verdicts[i], int(i)) for i in back)
+    found = in_order(found, back) if found else None
+    results = tuple(_result(examined, found, verdicts[i], int(i), place) for place, i in enumerate(back))
     pairs = _renumber(pairs, order)
-    regimes = found.regimes if found else ()
+    regimes, contradictions = (found.regimes, found.phases.contradictions) if found else ((), ())
     tell("checking", 0, 1)
-    contradictions = tuple(replace(each, fault=int(order[each.fault])) for each in found.phases.contradictions) if found else ()
     measured, judged = tuple(r.measured for r in results), tuple(r.verdict for r in results)
     evidence_for_checks = Examined(model, measured, pairs, readings, regimes, judged, contradictions)
     used = checks.checked_limits(limits or {})
     findings = model.findings + checks.run(evidence_for_checks, used)
-    return Analysis(model, settings, results, pairs, readings, regimes, findings, CAUTIONS, __version__, used)
+    return Analysis(model, settings, results, pairs, readings, regimes, findings, CAUTIONS, __version__, used, found)
 
 
-def _result(examined: _Examination, found: Answer | None, verdict: Verdict, i: int) -> FaultResult:
+def _result(examined: _Examination, found: Answer | None, verdict: Verdict, i: int, place: int) -> FaultResult:
     several = found is not None and len(found.regimes) > 1
-    phase, membership = (int(found.homes[i]), tuple(map(float, found.phases.membership[i]))) if found and several else (0, ())
+    phase, membership = (int(found.homes[place]), tuple(map(float, found.phases.membership[place]))) if found and several else (0, ())
     return FaultResult(examined.faults[i], examined.measured[i], examined.stations[i], verdict, examined.sectors[i], phase, membership)
 
 

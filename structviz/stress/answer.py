@@ -54,6 +54,19 @@ def answer(
     return Answer(single, phases, (single,), (regime,) if is_tight(regime) else (), np.zeros(len(evidence), np.int64))
 
 
+def in_order(found: Answer, rows: NDArray[np.int64]) -> Answer:
+    """Return the answer with its faults in another order: row i of the new one is row rows[i] of the old."""
+    place = np.argsort(rows)
+    against = tuple(replace(each, fault=int(place[each.fault])) for each in found.phases.contradictions)
+    phases = replace(found.phases, membership=found.phases.membership[rows], terms=found.phases.terms[rows], contradictions=against)
+    single, posteriors = _in_order(found.single, rows), tuple(_in_order(posterior, rows) for posterior in found.posteriors)
+    return Answer(single, phases, posteriors, found.regimes, found.homes[rows])
+
+
+def _in_order(posterior: Posterior, rows: NDArray[np.int64]) -> Posterior:
+    return replace(posterior, counts=posterior.counts[:, rows], fault_terms=posterior.fault_terms[rows])
+
+
 def is_tight(regime: Regime) -> bool:
     """Return whether the cones of sigma1 and sigma3 are narrow enough for a regime to be claimed."""
     return min(regime.cones_deg[0], regime.cones_deg[2]) <= LOOSEST_CONE_DEG
