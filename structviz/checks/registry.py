@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from structviz._validate import check_range
 from structviz.errors import ArgumentError
 from structviz.model import Fault, FaultModel, Finding
+from structviz.stress.compare import Comparison
 from structviz.stress.conjugate import Pairs
 from structviz.stress.phases import Contradiction
 from structviz.stress.regime import Reading, Regime
@@ -35,6 +36,7 @@ class Examined:
     regimes: tuple[Regime, ...] = ()
     verdicts: tuple[Verdict, ...] = ()
     contradictions: tuple[Contradiction, ...] = ()  # of declared phases; faults by their place in the model
+    comparisons: tuple[Comparison, ...] = ()  # with what was measured apart from the faults
 
     def faults(self) -> Iterator[tuple[Fault, MeasuredSurface]]:
         """Return each fault with its measured surface."""

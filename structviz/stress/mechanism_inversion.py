@@ -15,7 +15,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from structviz._validate import check_finite, check_vectors
 from structviz.errors import ArgumentError
-from structviz.orientation.vectors import Array
+from structviz.orientation.vectors import Array, rotation_vectors_to_matrices
 from structviz.stress.inversion import SlipInversion, linear_inversion, shear_design
 from structviz.stress.mechanisms import auxiliary_plane_deg, choose_planes, normals_and_slips
 from structviz.stress.readings import regime_of_frames
@@ -29,6 +29,8 @@ ROUNDS = 40  # of choosing planes; most starts settle in fewer than ten
 WORK = 4_000_000  # planes x replicates judged at once, which bounds the memory
 MARGIN = 0.01  # of instability by which the other plane must lead before it is taken instead; without it, choices go in circles
 REPLICATE_ROUNDS = 6  # they begin near their end
+MEASURED_DEG = 8.0  # root mean square turn by which a good mechanism is uncertain
+COPIES = 40  # sets of turned mechanisms among the replicates
 STABLE = 0.9  # share of replicates that must agree on a plane
 
 
@@ -81,11 +83,12 @@ def invert_mechanisms(
     Notes
     -----
     Starts are both planes of each event at half weight, and random choices of planes; the end with the greatest mean instability
-    is kept. Every replicate chooses its planes anew, beginning with those of all events.
+    is kept. Every replicate chooses its planes anew, beginning with those of all events, from mechanisms turned by 8 degrees.
     """
     angles = both_planes_deg(planes_deg)
     w = _checked_weights(weights, len(angles))
-    planes = _planes(angles)
+    vectors = normals_and_slips(*np.moveaxis(angles, -1, 0))
+    planes = _planes(*vectors)
     first = _first_choices(len(angles), random_state)
     ends, tensors, settled = _settled(planes, np.broadcast_to(w, first.shape), first, friction)
     best = int((_mean_instability(planes, ends, tensors, w, friction)).argmax())
@@ -93,7 +96,7 @@ def invert_mechanisms(
     inversion = linear_inversion(n, s, w)
     _, instability = choose_planes(angles, inversion.axes, inversion.shape_ratio, friction)
     counts = bootstrap_counts(len(angles), replicates, random_state)
-    again, others = _replicates(planes, counts * w, ends[best], friction)
+    again, others = _replicates(vectors, counts * w, ends[best], friction, random_state)
     same = float(((again == ends[best]).mean(0) >= STABLE).mean())
     regime = _regime(inversion, others, len(angles))
     return MechanismInversion(regime, inversion, ends[best].astype(np.intp), instability, angles, bool(settled[best]), same)
@@ -116,8 +119,9 @@ def _checked_weights(weights: ArrayLike | None, count: int) -> Array:
     return w
 
 
-def _planes(angles: Array) -> _Planes:
-    n, s = (np.swapaxes(part, 0, 1) for part in normals_and_slips(*np.moveaxis(angles, -1, 0)))
+def _planes(normals: Array, slips: Array) -> _Planes:
+    """Return what is needed of normals and slips (N, 2, 3); a normal may point either way, as long as its slip turns with it."""
+    n, s = np.swapaxes(normals, 0, 1), np.swapaxes(slips, 0, 1)
     design = shear_design(n.reshape(-1, 3)).reshape(2, -1, 3, 5)
     x, y, z = np.moveaxis(n, -1, 0)
     products = np.stack([x * x, y * y, z * z, 2 * x * y, 2 * x * z, 2 * y * z], -1)
@@ -179,11 +183,18 @@ def _mean_instability(planes: _Planes, shares: Array, tensors: Array, weights: A
     return np.where(shares == 1, near[1], near[0]) @ weights
 
 
-def _replicates(planes: _Planes, weights: Array, shares: Array, friction: float) -> tuple[Array, Array]:
-    """Return choices (B, N) and stresses (B, 3, 3) of each row of weights (B, N), some rows at a time."""
-    step = max(1, WORK // (2 * len(shares)))
-    parts = [weights[k : k + step] for k in range(0, len(weights), step)]
-    ends = [_settled(planes, part, np.broadcast_to(shares, part.shape), friction, REPLICATE_ROUNDS) for part in parts]
+def _replicates(vectors: tuple[Array, Array], weights: Array, shares: Array, friction: float, random_state: int) -> tuple[Array, Array]:
+    """Return choices (B, N) and stresses (B, 3, 3) of each row of weights (B, N), some rows at a time.
+
+    Every few rows have the mechanisms turned by what they are uncertain by: a bootstrap of a few like earthquakes is too sure.
+    """
+    rng = np.random.default_rng(random_state)
+    step = max(1, min(-(-len(weights) // COPIES), WORK // (2 * len(shares))))
+    ends = []
+    for part in (weights[k : k + step] for k in range(0, len(weights), step)):
+        turns = rotation_vectors_to_matrices(rng.normal(0.0, np.radians(MEASURED_DEG) / np.sqrt(3), (len(shares), 3)))
+        turned = _planes(*(np.einsum("nij,npj->npi", turns, each) for each in vectors))
+        ends.append(_settled(turned, part, np.broadcast_to(shares, part.shape), friction, REPLICATE_ROUNDS))
     return np.concatenate([end[0] for end in ends]), np.concatenate([end[1] for end in ends])
 
 
