@@ -116,7 +116,8 @@ def compare_mechanisms(regime: Regime, found: MechanismInversion) -> Comparison:
     both = float(np.hypot(max(regime.cones_deg), max(quakes.cones_deg))) / SD_OF_CONE
     word = _word(difference, both)
     azimuths = abs(_apart(regime.shmax_deg, quakes.shmax_deg))
-    told = f"{quakes.faults} earthquakes tell of {_described(quakes)}; the faults of {_described(regime)}: as axes {_verdict(word, difference, both)}, in SHmax {azimuths:.0f} deg apart."
+    told = f"{quakes.faults} earthquakes tell of {_described(quakes)}; the faults of {_described(regime)}: "
+    told += f"as axes {_verdict(word, difference, both)}, in SHmax {azimuths:.0f} deg apart."
     if (misfit := found.inversion.mean_misfit_deg) > ONE_STRESS_DEG:
         told += f" Slip of the earthquakes stands {misfit:.0f} deg off their one stress on average: they hold more than one."
     own = quakes.shmax_half_width_deg / SD_OF_WIDTH

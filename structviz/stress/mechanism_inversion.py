@@ -9,6 +9,7 @@ planes are not, the axes stay good and R does not.
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -21,6 +22,7 @@ from structviz.stress.mechanisms import auxiliary_plane_deg, choose_planes, norm
 from structviz.stress.readings import regime_of_frames
 from structviz.stress.regime import Regime, ShapeRatio
 from structviz.stress.replicates import bootstrap_counts
+from structviz.stress.slip_lines import SlipLines, slip_term
 from structviz.stress.tensor import FRICTION, principal
 
 FEWEST = 4  # events; fewer cannot fix three angles and a shape ratio with anything to spare
@@ -203,3 +205,19 @@ def _regime(inversion: SlipInversion, tensors: Array, events: int) -> Regime:
     frames, _, ratios = principal(tensors)
     regime = regime_of_frames(inversion.axes, frames, ShapeRatio(inversion.shape_ratio, *map(float, np.quantile(ratios, [0.05, 0.95]))))
     return replace(regime, shape_ratio=None, name="mechanisms", faults=events)
+
+
+def mechanism_term(
+    planes_deg: ArrayLike, weights: ArrayLike, frames: NDArray[Any], ratios: Array, scatter_deg: float, wrong_share: float
+) -> NDArray[Any]:
+    """Return the log-likelihood ratio of each mechanism as evidence, (N, G, R): that of slip on either plane, at even odds.
+
+    Planes as in `invert_mechanisms`; scatter and wrong share as in `slip_term`. Which plane slipped is left open at every stress, so
+    that a choice made once cannot feed on itself.
+    """
+    angles, w = both_planes_deg(planes_deg), check_finite("weights", weights)
+    n, s = normals_and_slips(*np.moveaxis(angles, -1, 0))
+    signed, heard = np.ones((len(w), 1), bool), np.ones((len(w), 1))
+    each = [SlipLines(n[:, [k]], s[:, [k]], signed, heard) for k in (0, 1)]
+    first, second = (slip_term(lines, frames, ratios, scatter_deg, wrong_share) for lines in each)
+    return w[:, None, None].astype(frames.dtype) * (np.logaddexp(first, second) - np.log(2.0).astype(frames.dtype))
