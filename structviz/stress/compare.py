@@ -28,6 +28,7 @@ SD_OF_WIDTH = 1.959964  # standard deviations in the half-width of an interval o
 SD_OF_CONE = 2.447747  # standard deviations about each of two axes in the half-angle of a cone of 95 %
 VAGUE_DEG = 45.0  # where two standard deviations reach this, agreement would be no news
 ONE_STRESS_DEG = 25.0  # mean misfit of earthquakes from which one stress does not explain them
+FEW = 3  # wells, of which no test can tell whether they agree by chance
 NO_MEAN = 0.05  # chance from which a mean azimuth is taken for none: wells all round the compass have it too
 
 
@@ -69,7 +70,8 @@ def mean_of_wells(azimuths_deg: ArrayLike, uncertainties_deg: ArrayLike) -> Mean
     Angles are doubled to average them [mardia2000]; weights are one over the variance. The middle is the whole degree with the least
     sum of weighted distances; wells further from it than 2.5 times the median distance (as a standard deviation) or 2.5
     times their own uncertainty, whichever is more, are left out. The standard error is the larger of what the
-    uncertainties give and what the scatter gives. There is no mean where azimuths at random would agree as well in one of twenty cases.
+    uncertainties give and what the scatter gives (circular dispersion over the effective number of wells). There
+    is no mean where azimuths at random would agree as well in one of twenty cases.
     """
     azimuth = check_finite("azimuths_deg", azimuths_deg) % 180.0
     error = np.maximum(check_range("uncertainties_deg", uncertainties_deg, 0.0, 90.0, "deg"), LEAST_UNCERTAINTY_DEG)
@@ -80,12 +82,20 @@ def mean_of_wells(azimuths_deg: ArrayLike, uncertainties_deg: ArrayLike) -> Mean
     kept = away <= FAR * np.maximum(SD_OF_MEDIAN * np.median(away), error)
     azimuth, weight = azimuth[kept], 1 / error[kept] ** 2
     mean, length = axial_mean_azimuth_deg(azimuth, weight)
-    off, effective = _apart(azimuth, mean), weight.sum() ** 2 / (weight**2).sum()
+    off, left_out = _apart(azimuth, mean), int((~kept).sum())
     spread = float(np.sqrt((weight @ off**2) / weight.sum()))
-    if not np.isfinite(mean) or (len(azimuth) > 2 and np.exp(-effective * length**2) > NO_MEAN):
-        return MeanAzimuth(np.nan, np.nan, spread, len(azimuth), int((~kept).sum()))
-    scatter = spread / np.sqrt(max(effective - 1, 1))
-    return MeanAzimuth(mean, float(max(scatter, 1 / np.sqrt(weight.sum()))), spread, len(azimuth), int((~kept).sum()))
+    if not np.isfinite(mean) or (len(azimuth) > FEW and np.exp(-len(azimuth) * length**2) > NO_MEAN):
+        return MeanAzimuth(np.nan, np.nan, spread, len(azimuth), left_out)
+    error_deg = max(_scatter_deg(off, weight, length), float(1 / np.sqrt(weight.sum())))
+    return MeanAzimuth(mean, error_deg, spread, len(azimuth), left_out)
+
+
+def _scatter_deg(off: Floats, weight: Floats, length: float) -> float:
+    """Return the standard error of a mean azimuth from the scatter about it, degrees [mardia2000]."""
+    effective = weight.sum() ** 2 / (weight**2).sum()
+    second = float(weight @ np.cos(np.radians(4 * off)) / weight.sum())
+    dispersion = max(1 - second, 0.0) / (2 * length**2)
+    return float(np.degrees(np.sqrt(dispersion / max(effective - 1, 1))) / 2)
 
 
 def compare_azimuths(regime: Regime, azimuths_deg: ArrayLike, uncertainties_deg: ArrayLike) -> Comparison:
@@ -96,9 +106,9 @@ def compare_azimuths(regime: Regime, azimuths_deg: ArrayLike, uncertainties_deg:
     both = float(np.hypot(wells.standard_error_deg, own))
     word = _word(difference, both)
     left = f", {wells.left_out} more left out as far from the rest" if wells.left_out else ""
-    source = f"{wells.count} {'well' if wells.count == 1 else 'wells'}{left}"
+    source = "1 well" if wells.count == 1 else f"{wells.count} wells (scatter {wells.spread_deg:.0f} deg){left}"
     if not np.isfinite(wells.azimuth_deg):
-        told = f"Azimuths from {source} have no common direction (spread {wells.spread_deg:.0f} deg), so they decide nothing."
+        told = f"Azimuths from {source} have no common direction, so they decide nothing."
     else:
         measured = f"SHmax is {_degrees(wells.azimuth_deg)} +/- {2 * wells.standard_error_deg:.0f} from {source}"
         inferred = f"and {_degrees(regime.shmax_deg)} +/- {2 * own:.0f} from the faults"
