@@ -53,7 +53,7 @@ def inversion_of(mechanisms: Sequence[Mechanism], friction: float, random_state:
 
 def refused(reason: str, regime: Regime, model: FaultModel) -> Comparison:
     """Return the comparison with mechanisms that tell of no stress."""
-    text = f"The earthquakes tell of no stress to compare with ({reason})."
+    text = f"The earthquakes are too few, or too much alike, to tell of a stress ({reason})."
     return Comparison("mechanisms", "earthquake mechanisms", len(model.mechanisms), np.nan, np.nan, "undecided", text, regime.name)
 
 

@@ -113,6 +113,8 @@ def events_of(content: bytes, file: str) -> list[Any]:
     except ImportError:
         hint = "install structviz with the extra 'quakes', or give the mechanisms as a CSV table"
         raise FormatError(file, "QuakeML, which needs ObsPy", "ObsPy to be installed", hint=hint) from None
+    if b"<!DOCTYPE" in content:  # entities could name other files, or grow without end
+        raise FormatError(file, "a document type declaration", "QuakeML, which has none", hint="download the catalogue again")
     try:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")

@@ -169,3 +169,12 @@ def test_a_run_ended_while_writing_leaves_the_earlier_result(wrong: Path, tmp_pa
         assert [path.name for path in tmp_path.iterdir()] == ["out"]
     entry(arguments)
     assert {path: path.read_bytes() for path in (tmp_path / "out").rglob("*") if path.is_file()} == before
+
+
+def test_a_folder_of_meshes_is_compared_with_wells_and_earthquakes(wrong: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    (tmp_path / "wells.csv").write_text("shmax_deg,uncertainty_deg\n20,10\n30,10\n", encoding="utf-8")
+    (tmp_path / "quakes.csv").write_text("strike_deg,dip_deg,rake_deg\n0,95,0\n", encoding="utf-8")
+    assert entry(["check", str(wrong), "--json", *QUICK, "--well-azimuths", str(tmp_path / "wells.csv")]) == 1
+    assert "wells.csv" in [each["path"] for each in json.loads(capsys.readouterr().out)["model"]["inputs"]]
+    assert entry(["check", str(wrong), "--mechanisms", str(tmp_path / "quakes.csv")]) == 2
+    assert "quakes.csv, row 2: found dip_deg 95; wanted 0 to 90" in capsys.readouterr().err

@@ -124,7 +124,8 @@ def test_what_is_said_of_wells():
     vague = compare_azimuths(regime(), [179.9], [30.0])
     assert vague.text == "SHmax is 000 +/- 60 from 1 well, and 000 +/- 4 from the faults: 0 deg apart, too loose to decide (+/- 60)."
     none = compare_azimuths(regime(), np.arange(0.0, 180.0, 15.0), np.full(12, 10.0))
-    assert none.text.startswith("Azimuths from 12 wells (scatter)
+    assert none.text.startswith("Azimuths from 12 wells (scatter ")
+    assert none.text.endswith(" deg) have no common direction, so they decide nothing.")
     assert none.word == "undecided"
     assert np.isnan(none.difference_deg)
 
