@@ -11,7 +11,16 @@ from structviz.stress.evidence import EvidenceModel
 from structviz.stress.joint import Terms, infer
 from structviz.stress.replicates import Posterior, bootstrap_counts
 from structviz.stress.tensor import reduced_tensor
-from structviz.stress.verdict import VerdictLimits, judge, likely_causes, mean_rake_deg, predict, replicates_without, weighted_quantile
+from structviz.stress.verdict import (
+    VerdictLimits,
+    calibrated,
+    judge,
+    likely_causes,
+    mean_rake_deg,
+    predict,
+    replicates_without,
+    weighted_quantile,
+)
 from tests.stress.planes import conjugate_normals, evidence_of, labels_of
 
 UPRIGHT = np.array([[0.0, 0, 1], [0, 1, 0], [-1, 0, 0]])  # normal faulting, sigma2 north
@@ -119,3 +128,12 @@ def test_quantile_and_mean_rake_are_those_of_repeated_values():
     n = normals(0.0, 60.0)[None]
     rake, spread = mean_rake_deg(predict(UPRIGHT[None], np.full((1, 7), 1 / 7), GRID, n, np.ones(1)))
     assert (rake, spread) == (pytest.approx(-90.0), pytest.approx(0.0, abs=1e-6))
+
+
+def test_calibration_keeps_certainty_and_evenness_and_treats_both_sides_alike():
+    shares = np.linspace(0.0, 1.0, 101)
+    told = np.array([calibrated(float(share)) for share in shares])
+    assert told[[0, 50, 100]].tolist() == [0.0, 0.5, 1.0]
+    assert (np.diff(told) > 0).all()
+    np.testing.assert_allclose(told + told[::-1], 1.0)
+    assert told[80] > 0.8, "a share of predicted slips understates what it is worth"
