@@ -31,7 +31,8 @@ ROUNDS = 40  # of choosing planes; most starts settle in fewer than ten
 WORK = 4_000_000  # planes x replicates judged at once, which bounds the memory
 MARGIN = 0.01  # of instability by which the other plane must lead before it is taken instead; without it, choices go in circles
 REPLICATE_ROUNDS = 6  # they begin near their end
-MEASURED_DEG = 8.0  # root mean square turn by which a good mechanism is uncertain
+MEASURED_DEG = 8.0  # root mean square turn by which a good mechanism is uncertain; it is added in full up to
+FEW = 10  # events, and less the more there are: their scatter then shows it, and cones cover the truth without
 COPIES = 40  # sets of turned mechanisms among the replicates
 STABLE = 0.9  # share of replicates that must agree on a plane
 
@@ -85,7 +86,7 @@ def invert_mechanisms(
     Notes
     -----
     Starts are both planes of each event at half weight, and random choices of planes; the end with the greatest mean instability
-    is kept. Every replicate chooses its planes anew, beginning with those of all events, from mechanisms turned by 8 degrees.
+    is kept. Every replicate chooses its planes anew, beginning with those of all events.
     """
     angles = both_planes_deg(planes_deg)
     w = _checked_weights(weights, len(angles))
@@ -188,13 +189,13 @@ def _mean_instability(planes: _Planes, shares: Array, tensors: Array, weights: A
 def _replicates(vectors: tuple[Array, Array], weights: Array, shares: Array, friction: float, random_state: int) -> tuple[Array, Array]:
     """Return choices (B, N) and stresses (B, 3, 3) of each row of weights (B, N), some rows at a time.
 
-    Every few rows have the mechanisms turned by what they are uncertain by: a bootstrap of a few like earthquakes is too sure.
+    Every few rows have the mechanisms turned by what they are uncertain by: a bootstrap of few and like earthquakes is too sure.
     """
-    rng = np.random.default_rng(random_state)
+    rng, own = np.random.default_rng(random_state), np.radians(MEASURED_DEG) * min(1.0, FEW / len(shares))
     step = max(1, min(-(-len(weights) // COPIES), WORK // (2 * len(shares))))
     ends = []
     for part in (weights[k : k + step] for k in range(0, len(weights), step)):
-        turns = rotation_vectors_to_matrices(rng.normal(0.0, np.radians(MEASURED_DEG) / np.sqrt(3), (len(shares), 3)))
+        turns = rotation_vectors_to_matrices(rng.normal(0.0, own / np.sqrt(3), (len(shares), 3)))
         turned = _planes(*(np.einsum("nij,npj->npi", turns, each) for each in vectors))
         ends.append(_settled(turned, part, np.broadcast_to(shares, part.shape), friction, REPLICATE_ROUNDS))
     return np.concatenate([end[0] for end in ends]), np.concatenate([end[1] for end in ends])
