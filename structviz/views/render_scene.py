@@ -50,7 +50,7 @@ def draw(scene: Scene, path: Path) -> None:
     _names(axes, scene, project)
     _words(axes, scene)
     canvas.draw()
-    Image.fromarray(_over(image, np.asarray(canvas.buffer_rgba()))).save(path, dpi=(200, 200))
+    Image.fromarray(_over(image, np.asarray(canvas.buffer_rgba()))).save(path, dpi=(200, 200), compress_level=4)
 
 
 def _over(picture: NDArray[np.uint8], words: NDArray[np.uint8]) -> NDArray[np.uint8]:
@@ -84,8 +84,22 @@ def _photograph(plotter: Any, scene: Scene) -> tuple[NDArray[np.uint8], Any]:
     _aim(plotter, scene)
     plotter.enable_depth_peeling(PEELS)
     plotter.enable_anti_aliasing("ssaa")
-    image = plotter.screenshot(return_img=True)
-    return image, _projector(plotter)
+    return _picture(plotter), _projector(plotter)
+
+
+def _picture(plotter: Any) -> NDArray[np.uint8]:
+    """Return the pixels (H, W, 3) of one rendering; the plotter's own way renders twice."""
+    from vtkmodules.util.numpy_support import vtk_to_numpy
+    from vtkmodules.vtkRenderingCore import vtkWindowToImageFilter
+
+    plotter.render_window.Render()
+    reader = vtkWindowToImageFilter()
+    reader.SetInput(plotter.render_window)
+    reader.ReadFrontBufferOff()
+    reader.ShouldRerenderOff()
+    reader.Update()
+    pixels = vtk_to_numpy(reader.GetOutput().GetPointData().GetScalars())
+    return np.asarray(pixels.reshape(PIXELS[1], PIXELS[0], -1)[::-1, :, :3]).copy()
 
 
 def _merged(pieces: list[tuple[Floats, NDArray[np.int64]]]) -> Any:
