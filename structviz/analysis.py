@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from structviz import checks
 from structviz._version import __version__
+from structviz.checks.independent import comparisons, inversion_of
 from structviz.checks.registry import Examined
 from structviz.errors import ArgumentError
 from structviz.kinematics.declared import usable_sector
@@ -21,15 +22,18 @@ from structviz.model import Fault, FaultModel, Finding, Stria
 from structviz.orientation.planes import normals as plane_normals
 from structviz.orientation.planes import slip_vectors
 from structviz.stress.answer import Answer, answer, in_order, is_tight, judge_in_phases
+from structviz.stress.causes import causes_of
+from structviz.stress.compare import Comparison
 from structviz.stress.conjugate import PairLimits, Pairs
 from structviz.stress.evidence import EvidenceModel, FaultEvidence, gather, sector_edges
 from structviz.stress.joint import Terms, infer
+from structviz.stress.mechanism_evidence import evidence_of_mechanisms, joined
 from structviz.stress.pairing import CURVED_DEG, PairSubjects, admissible_pairs, partner_support, with_senses
 from structviz.stress.readings import pair_frames, regime_of_frames, shape_ratio_of
 from structviz.stress.regime import Reading, Regime
 from structviz.stress.replicates import Posterior, bootstrap_counts
 from structviz.stress.slip_lines import OFF_PLANE_DEG, SlipLines, gather_lines, off_plane_deg
-from structviz.stress.verdict import Verdict, VerdictLimits, likely_causes, undetermined
+from structviz.stress.verdict import Verdict, VerdictLimits, undetermined
 from structviz.surfaces.measure import measure
 from structviz.surfaces.proximity import candidate_pairs, nearest_approach
 from structviz.surfaces.stations import sample_stations
@@ -114,6 +118,7 @@ class Analysis:
     version: str
     limits: Mapping[str, float] = field(default_factory=dict)  # of every check that was run
     answer: Answer | None = None  # the stress with its replicates, faults in the order of the model; None where nothing speaks
+    comparisons: tuple[Comparison, ...] = ()  # of each regime with wells and earthquakes
 
     @property
     def conflicting(self) -> tuple[FaultResult, ...]:
@@ -146,21 +151,22 @@ def run(
     tell("pairing faults", 0, 1)
     subjects, geometric, pairs = _pair(examined, settings)
     tell("inferring stress", 0, 1)
-    evidence = _evidence(examined, model.striae, subjects, geometric)
-    counts = bootstrap_counts(len(examined.faults), settings.replicates, settings.random_state)
+    evidence, told = _with_earthquakes(_evidence(examined, model.striae, subjects, geometric), model, settings)
+    counts = bootstrap_counts(len(evidence), settings.replicates, settings.random_state)
     readings, found = _read(evidence, geometric, pairs, counts, [fault.phase for fault in examined.faults], settings)
     verdicts = _judge_all(examined, found, settings, tell)
     back = np.argsort(order)
-    found = in_order(found, back) if found else None
+    found = in_order(found, np.append(back, np.arange(len(back), len(evidence)))) if found else None
     results = tuple(_result(examined, found, verdicts[i], int(i), place) for place, i in enumerate(back))
     pairs = _renumber(pairs, order)
     regimes, contradictions = (found.regimes, found.phases.contradictions) if found else ((), ())
     tell("checking", 0, 1)
     measured, judged = tuple(r.measured for r in results), tuple(r.verdict for r in results)
-    evidence_for_checks = Examined(model, measured, pairs, readings, regimes, judged, contradictions)
+    compared = comparisons(model, regimes, _friction(settings), settings.random_state)
+    evidence_for_checks = Examined(model, measured, pairs, readings, regimes, judged, contradictions, compared)
     used = checks.checked_limits(limits or {})
-    findings = model.findings + checks.run(evidence_for_checks, used)
-    return Analysis(model, settings, results, pairs, readings, regimes, findings, CAUTIONS, __version__, used, found)
+    findings = model.findings + told + checks.run(evidence_for_checks, used)
+    return Analysis(model, settings, results, pairs, readings, regimes, findings, CAUTIONS, __version__, used, found, compared)
 
 
 def _result(examined: _Examination, found: Answer | None, verdict: Verdict, i: int, place: int) -> FaultResult:
@@ -256,6 +262,25 @@ def _evidence(examined: _Examination, striae: Sequence[Stria], subjects: PairSub
     return gather([f[0] for f in facets], [f[1] for f in facets], examined.sectors, support, subjects.known, slips)
 
 
+def _with_earthquakes(evidence: FaultEvidence, model: FaultModel, settings: Settings) -> tuple[FaultEvidence, tuple[Finding, ...]]:
+    """Return the evidence of the faults, joined by that of earthquakes where the model asks for it, and what to tell where it cannot be.
+
+    However many the earthquakes are, together they weigh no more than the faults: a catalogue is longer than any model.
+    """
+    if not model.mechanisms or model.mechanisms_are != "evidence":
+        return evidence, ()
+    quakes = inversion_of(model.mechanisms, _friction(settings), settings.random_state)
+    if isinstance(quakes, str):
+        hint = "give more earthquakes, of more kinds, or none"
+        return evidence, (Finding("import", "warning", "model", f"the mechanisms were not used as evidence: {quakes}", (), hint),)
+    weights = np.array([each.weight for each in model.mechanisms])
+    return joined(evidence, evidence_of_mechanisms(quakes, weights * min(1.0, len(evidence) / max(weights.sum(), 1e-12)))), ()
+
+
+def _friction(settings: Settings) -> float:
+    return float(np.tan(np.radians(settings.friction_angle_deg)))
+
+
 def _slip_lines(examined: _Examination, striae: Sequence[Stria]) -> SlipLines:
     """Return the striae of each fault that lie on its surface; those farther off it are told by a check and not used.
 
@@ -299,7 +324,8 @@ def _read(
         )
     )
     speaking = int((evidence.declared | evidence.measured | (evidence.partnered > 0)).sum())
-    found = answer(evidence, odds, counts, phases, settings.random_state) if speaking >= 2 else None
+    events = [""] * (len(evidence) - len(phases))
+    found = answer(evidence, odds, counts, [*phases, *events], settings.random_state, events=len(events)) if speaking >= 2 else None
     joint, why_not = found.single if found else None, "no admissible pair and fewer than two declared movements"
     readings.append(_posterior_reading("joint", "all evidence together", joint, speaking, why_not))
     return tuple(readings), found
@@ -333,7 +359,9 @@ def _judge_all(examined: _Examination, found: Answer | None, settings: Settings,
 def _judge_one(found: Answer, number: int, stations: Stations, sector: Sector | None, why: str, limits: VerdictLimits) -> Verdict:
     shares = np.full(len(stations.normals), 1 / len(stations.normals))
     verdict, prediction = judge_in_phases(found, number, stations.normals, shares, sector, why, limits)
-    if verdict.word != "conflicting" or prediction is None or sector is None:
+    if prediction is None or sector is None:
         return verdict
-    causes = likely_causes(found.posteriors[found.homes[number]], number, prediction, stations.normals, shares, sector)
+    home = int(found.homes[number])
+    others = [posterior for k, posterior in enumerate(found.posteriors) if k != home]
+    causes = causes_of(verdict, found.posteriors[home], number, prediction, stations.normals, shares, sector, limits, others)
     return Verdict(**{**verdict.__dict__, "causes": causes})

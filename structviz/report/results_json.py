@@ -15,6 +15,7 @@ from structviz.analysis import Analysis, FaultResult
 from structviz.kinematics.senses import Sector, describe_rake
 from structviz.model import FaultModel, Finding
 from structviz.orientation.lines import trend_plunge_deg
+from structviz.stress.compare import Comparison
 from structviz.stress.regime import Reading, Regime
 from structviz.surfaces.surface import Floats
 
@@ -47,6 +48,7 @@ def results(analysis: Analysis, *, meshes: Mapping[str, str] | None = None, outp
         "pairs": _pairs(analysis),
         "regimes": [_regime(regime) for regime in analysis.regimes],
         "readings": [_reading(reading) for reading in analysis.readings],
+        "comparisons": [_comparison(each) for each in analysis.comparisons],
         "findings": [_finding(finding) for finding in analysis.findings],
         "outputs": list(outputs),
     }
@@ -137,7 +139,10 @@ def _fault(result: FaultResult, mesh: str | None) -> Row:
         "predicted_sense": None if predicted is None else describe_rake(predicted),
         "slip_tendency": rounded(verdict.slip_tendency, 4),
         "reasons": list(verdict.reasons),
-        "causes": [{"key": cause.key, "text": cause.text, "score": rounded(cause.score, 3)} for cause in verdict.causes],
+        "causes": [
+            {"key": cause.key, "text": cause.text, "score": rounded(cause.score, 3), "next_step": cause.next_step}
+            for cause in verdict.causes
+        ],
     }
 
 
@@ -192,6 +197,22 @@ def _reading(reading: Reading) -> Row:
         "count": int(reading.count),
         "regime": None if reading.regime is None else _regime(reading.regime),
         "why_not": reading.why_not or None,
+    }
+
+
+def _comparison(each: Comparison) -> Row:
+    return {
+        "with": each.key,
+        "title": each.title,
+        "regime": each.regime,
+        "count": each.count,
+        "left_out": each.left_out,
+        "shmax_deg": azimuth(each.shmax_deg, 180.0),
+        "shmax_uncertainty_deg": rounded(each.shmax_uncertainty_deg, 2),
+        "difference_deg": rounded(each.difference_deg, 2),
+        "uncertainty_deg": rounded(each.uncertainty_deg, 2),
+        "word": each.word,
+        "text": each.text,
     }
 
 

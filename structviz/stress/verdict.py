@@ -6,7 +6,6 @@ faults, so leaving one out costs nothing more [efron1992].
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -14,7 +13,6 @@ from numpy.typing import NDArray
 
 from structviz.kinematics.senses import Sector, describe_rake
 from structviz.orientation.planes import strike_vectors
-from structviz.orientation.vectors import dot
 from structviz.stress.replicates import Posterior
 from structviz.stress.tensor import reduced_tensor, slip_tendency
 
@@ -28,11 +26,12 @@ LOOSE_RAKE_DEG = 75.0  # a prediction spread wider than this is none
 
 @dataclass(frozen=True)
 class Cause:
-    """One possible explanation of a conflict, with how well it explains the evidence (0 to 1)."""
+    """One possible explanation of a misfit, with its probability among all of them, and what to do next (see `causes`)."""
 
     key: str
     text: str
     score: float
+    next_step: str = ""
 
 
 @dataclass(frozen=True)
@@ -197,47 +196,3 @@ def _by_ratio(prediction: Prediction, outside: NDArray[np.bool_]) -> Floats:
     held = np.bincount(prediction.ratio_of, prediction.weights)
     wrong = np.bincount(prediction.ratio_of, prediction.weights * outside)
     return wrong[held > 0] / held[held > 0]
-
-
-def mirrored(normals: Floats, signs: Sequence[float]) -> Floats:
-    """Return the normals of a surface mirrored by signs on easting, northing, up, still on the hanging-wall side."""
-    flipped = normals * np.asarray(signs, float)
-    up = flipped[:, 2].sum()
-    return flipped if up > 0 or (up == 0 and dot(flipped, normals).sum() >= 0) else -flipped
-
-
-LABEL_BELIEF = 0.9
-MIRRORS: tuple[tuple[str, tuple[float, float, float], str, float], ...] = (
-    (
-        "dips_other_way",
-        (-1.0, -1.0, 1.0),
-        "the surface may dip the other way (mirrored across its strike, or depth read as elevation)",
-        0.85,
-    ),
-    ("mirrored", (-1.0, 1.0, 1.0), "the surface may be mirrored in plan (easting reversed, or easting and northing exchanged)", 0.7),
-)
-
-
-def likely_causes(
-    posterior: Posterior, fault: int, prediction: Prediction, normals: Floats, shares: Floats, sector: Sector
-) -> tuple[Cause, ...]:
-    """Return the first likely causes of a conflict, best first: how much of the predicted slip each would put right.
-
-    A mirrored surface is believed less readily than a swapped label, the commoner slip of the pen, unless the mirrored plane
-    stands better in the stress than the one that was drawn.
-    """
-    frames, ratios = replicates_without(posterior, fault)
-    opposite = sector.opposite()
-    causes = [
-        Cause(
-            "label_swapped", f"the label may be swapped: as {opposite.text} it would fit", LABEL_BELIEF * share_inside(prediction, opposite)
-        )
-    ]
-    tensor = reduced_tensor(posterior.frame, 0.5)
-    stands = float(shares @ slip_tendency(tensor, normals))
-    for key, signs, text, belief in MIRRORS:
-        other = mirrored(normals, signs)
-        fits = share_inside(predict(frames, ratios, posterior.ratio_grid, other, shares), sector)
-        better = float(shares @ slip_tendency(tensor, other)) - stands
-        causes.append(Cause(key, text, fits * min(1.0, belief + max(0.0, better))))
-    return tuple(sorted((cause for cause in causes if cause.score >= 0.3), key=lambda cause: -cause.score))

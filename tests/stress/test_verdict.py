@@ -15,7 +15,6 @@ from structviz.stress.verdict import (
     VerdictLimits,
     calibrated,
     judge,
-    likely_causes,
     mean_rake_deg,
     predict,
     replicates_without,
@@ -93,22 +92,6 @@ def test_too_few_others_is_said():
     verdict, prediction = judge(nobody, 0, normals(0.0, 60.0)[None], np.ones(1), sector_of_words("normal"), "", VerdictLimits())
     assert prediction is None
     assert "too few other faults" in verdict.reasons[0]
-
-
-def causes_on(plane, word, axes=UPRIGHT):
-    posterior, n, sector = known_stress(axes), normals(*plane)[None], sector_of_words(word)
-    _, prediction = judge(posterior, 0, n, np.ones(1), sector, "", VerdictLimits())
-    return [cause.key for cause in likely_causes(posterior, 0, prediction, n, np.ones(1), sector)]
-
-
-def test_a_swapped_label_is_named_first():
-    assert causes_on((0.0, 60.0), "reverse")[0] == "label_swapped"
-
-
-def test_a_surface_drawn_the_wrong_way_is_named():
-    # Strike-slip stress, sigma1 north: a plane mirrored across a meridian turns sinistral into dextral.
-    north = np.array([[0.0, 1, 0], [0, 0, 1], [1, 0, 0]])
-    assert "mirrored" in causes_on((30.0, 85.0), "dextral", north)
 
 
 def test_down_side_decides_a_steep_fault():
