@@ -30,7 +30,14 @@ LEAST_NAME = 16  # columns kept for names on a narrow terminal
 POINTS = ("N", "NNE", "NE", "ENE", "E", "ESE", "SE", "SSE", "S", "SSW", "SW", "WSW", "W", "WNW", "NW", "NNW")
 LOOSE_DEG = 30.0  # a regime with a wider cone is called poorly determined
 FAR_DEG = 30.0  # a reading further than this from the stress that is followed is marked
-TOLD_ALREADY = {"conflict", "undetermined", "no-regime", "shape-ratio-open"}  # checks whose findings the lines above them tell
+TOLD_ALREADY = {
+    "conflict",
+    "undetermined",
+    "no-regime",
+    "shape-ratio-open",
+    "wells-differ",
+    "mechanisms-differ",
+}  # checks whose findings the lines above them tell
 MARKS = {"error": ("!", "bold red"), "warning": ("!", "yellow"), "note": ("-", "dim")}
 NUMBER = re.compile(r"\d+(?:\.\d+)?")
 COLOUR = {"conflicting": "bold red", "consistent": "green", "undetermined": "yellow"}
@@ -50,6 +57,7 @@ def blocks(analysis: Analysis, written: Written | None, width: int) -> Iterator[
     """Return the pieces of the summary in order."""
     yield from _head(analysis)
     yield from _readings(analysis)
+    yield from _compared(analysis)
     yield from _conflicts(analysis, width)
     yield from _others(analysis)
     yield from _findings(analysis, width)
@@ -165,6 +173,15 @@ def _readings(analysis: Analysis) -> Iterator[RenderableType]:
     for reading in told:
         if reading.regime is None:
             yield _line((f"{reading.title}: none; {printable(reading.why_not)}", "dim"), indent=2)
+
+
+def _compared(analysis: Analysis) -> Iterator[RenderableType]:
+    """Return what wells and earthquakes say of the stress."""
+    if not analysis.comparisons:
+        return
+    yield from _heading("Measured apart from the faults")
+    for each in analysis.comparisons:
+        yield _line((printable(each.text, 400), "bold yellow" if each.word == "differs" else ""), indent=2)
 
 
 def _conflicts(analysis: Analysis, width: int) -> Iterator[RenderableType]:

@@ -34,23 +34,31 @@ class Answer:
 
 
 def answer(
-    evidence: FaultEvidence, odds: EvidenceModel, counts: NDArray[np.int64], declared_phases: Sequence[str], random_state: int
+    evidence: FaultEvidence,
+    odds: EvidenceModel,
+    counts: NDArray[np.int64],
+    declared_phases: Sequence[str],
+    random_state: int,
+    *,
+    events: int = 0,
 ) -> Answer:
     """Return the stress of the faults as one, and as so many phases as they call for.
 
-    counts are bootstrap draws, (B, F). A fault belongs to the phase it is declared to be of, where that phase was found; else to
-    the likeliest one. The phases are then inferred each from its own faults, so that leaving a fault out leaves it out of its phase.
+    counts are bootstrap draws, (B, F). The last `events` rows are earthquakes: heard like faults, but not counted as such. A fault
+    belongs to the phase it is declared to be of, where that phase was found; else to the likeliest one. The phases are then
+    inferred each from its own faults, so that leaving a fault out leaves it out of its phase.
     """
+    faults = len(evidence) - events
     single = infer(evidence, odds, Terms(), counts)
     phases = find_phases(evidence, odds, declared_phases=declared_phases)
     if phases.count > 1:
         homes = _homes(phases, declared_phases)
         posteriors = tuple(_of_phase(evidence, odds, homes == k, len(counts), random_state + k) for k in range(phases.count))
-        regimes = tuple(_regime(p, float(s), int((homes == k).sum())) for k, (p, s) in enumerate(zip(posteriors, phases.shares)))
+        regimes = tuple(_regime(p, float(s), int((homes[:faults] == k).sum())) for k, (p, s) in enumerate(zip(posteriors, phases.shares)))
         if all(is_tight(regime) for regime in regimes):
             return Answer(single, phases, posteriors, _named(regimes, phases), homes)
         phases = find_phases(evidence, odds, declared_phases=declared_phases, most=1)
-    regime = _regime(single, 1.0, len(evidence))
+    regime = _regime(single, 1.0, faults)
     return Answer(single, phases, (single,), (regime,) if is_tight(regime) else (), np.zeros(len(evidence), np.int64))
 
 
