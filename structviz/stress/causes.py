@@ -26,8 +26,6 @@ from numpy.typing import NDArray
 from structviz.kinematics.senses import Sector
 from structviz.orientation.vectors import dot
 from structviz.stress.evidence import EvidenceModel, gather, geometry_term
-from structviz.stress.frames import all_frames
-from structviz.stress.joint import COARSE_RATIOS, Terms, log_likelihood
 from structviz.stress.replicates import Posterior
 from structviz.stress.verdict import (
     Cause,
@@ -48,9 +46,9 @@ EDGE_FIT = 0.1  # how readily a word is written for a slip at the very edge of i
 OBLIQUE_DEG = 15.0  # scatter of a slip, written down by its lesser component, beyond the edge of the sector
 ALIKE = 0.6  # a cause this near the first in score cannot be told from it
 NOISE_DEG = 18.0  # local orientations scattered more than this about the mean make noise more likely than not
-SHARED_FRAMES = 3000  # about 10 degrees apart: enough to tell whether faults share a stress
-MOST_SHARED = 150  # conflicts; of more, an older phase is found by `phases`
-UNTOLD_SCORE = 0.03  # of an older phase that was too unlikely to be told
+LOW_SHEAR = 1.3  # times the least shear that is judged: to there the direction of slip is still doubtful
+UNFLAGGED = 0.35  # belief in a mistake where no conflict is claimed, against belief in it where one is
+MISTAKES = ("label_swapped", "mirrored", "dips_other_way", "older_phase", "obtuse_pair")
 
 
 @dataclass(frozen=True, eq=False)
@@ -67,6 +65,7 @@ class Case:
     prediction: Prediction
     limits: VerdictLimits
     others: tuple[Posterior, ...] = ()  # stresses of other phases
+    conflicting: bool = True
 
 
 def graded_fit(rakes_deg: Floats, sector: Sector) -> Floats:
@@ -85,10 +84,14 @@ def by_chance(sector: Sector) -> float:
 
 
 def standing(normals: Floats, shares: Floats, frames: Floats, odds: EvidenceModel) -> float:
-    """Return the density of the mean plane among those a stress makes and those it inherits, as a ratio to all orientations alike."""
+    """Return the density of the mean plane among those a stress makes and those it inherits, as a ratio to all orientations alike.
+
+    The mean of a rough surface says little: its ratio is drawn towards one.
+    """
     mean = shares @ normals
     evidence = gather([mean[None] / max(float(np.sqrt(dot(mean, mean))), 1e-12)], [np.ones(1)], [None], np.ones(1), np.ones(1, bool))
-    return float(np.exp(geometry_term(evidence, frames, odds)).mean())
+    rough = roughness(normals, shares)
+    return rough + (1 - rough) * float(np.exp(geometry_term(evidence, frames, odds)).mean())
 
 
 def mirrored(normals: Floats, signs: Sequence[float]) -> Floats:
@@ -159,20 +162,24 @@ def scatter_deg(normals: Floats, shares: Floats) -> float:
     return float(np.degrees(np.sqrt(shares @ np.arccos(cosine) ** 2)))
 
 
+def roughness(normals: Floats, shares: Floats) -> float:
+    """Return how surely local orientations scatter more than those of an ordinary surface, 0 to 1."""
+    return float(1 / (1 + np.exp(-(scatter_deg(normals, shares) - NOISE_DEG) / 2)))
+
+
 def _orientation_noise(case: Case) -> float:
-    """Local planes scatter more than those of an ordinary surface, and the declared word fits on some of them."""
-    scatter = scatter_deg(case.normals, case.shares)
-    rough = 1 / (1 + np.exp(-(scatter - NOISE_DEG) / 2))
+    """The surface is rough, and the declared word fits on some of its local planes."""
+    rough = roughness(case.normals, case.shares)
     rakes = case.prediction.rakes_deg.reshape(len(case.shares), -1)
     weights = case.prediction.weights.reshape(rakes.shape)
     inside = (weights * (off_sector_deg(rakes, case.sector) <= case.sector.half_width_deg)).sum(1) / weights.sum(1)
     fits = float(case.shares @ (inside > 0.5))
-    return _drawn(case) * float(rough) * min(1.0, 4 * fits)
+    return _drawn(case) * rough * min(1.0, 4 * fits)
 
 
 def _too_little_shear(case: Case) -> float:
     shear = weighted_quantile(case.prediction.shear, case.prediction.weights, 0.5)
-    return float(_drawn(case) / (1 + (shear / max(case.limits.least_shear, 1e-9)) ** 6))
+    return float(_drawn(case) / (1 + (shear / max(LOW_SHEAR * case.limits.least_shear, 1e-9)) ** 6))
 
 
 def _shape_ratio_open(case: Case) -> float:
@@ -205,7 +212,7 @@ CAUSES: tuple[CauseRow, ...] = (
     ),
     CauseRow(
         "mirrored",
-        0.12,
+        0.20,
         "the surface may be mirrored in plan (easting reversed, or easting and northing exchanged)",
         "lay the surface over the mapped trace: does it strike as the trace does; then look at the axes of the export",
         _mirrored,
@@ -247,7 +254,7 @@ CAUSES: tuple[CauseRow, ...] = (
     ),
     CauseRow(
         "too_little_shear",
-        0.80,
+        1.00,
         "the plane carries little shear in this stress, so that its direction of slip is open",
         "leave this fault out of the argument; if it moved for certain, look for an older phase or a local stress",
         _too_little_shear,
@@ -264,7 +271,8 @@ CAUSES: tuple[CauseRow, ...] = (
 
 def scores(case: Case) -> dict[str, float]:
     """Return the probability of every cause by key; what they lack of one is that of none of these."""
-    weight = {row.key: row.belief * row.likelihood(case) for row in CAUSES}
+    doubt = 1.0 if case.conflicting else UNFLAGGED
+    weight = {row.key: row.belief * row.likelihood(case) * (doubt if row.key in MISTAKES else 1.0) for row in CAUSES}
     total = sum(weight.values()) + NONE_BELIEF * by_chance(case.sector)
     return {key: value / total for key, value in weight.items()}
 
@@ -300,6 +308,7 @@ def causes_of(
         prediction,
         limits or VerdictLimits(),
         tuple(other_phases),
+        verdict.word == "conflicting",
     )
     return ranked(scores(case), sector)
 
@@ -314,42 +323,3 @@ def ranked(found: dict[str, float], sector: Sector) -> tuple[Cause, ...]:
         text = row.text.format(opposite=sector.opposite().text) + ("; the evidence hardly tells it from the first" if tied else "")
         told.append(Cause(row.key, text, found[row.key], row.next_step))
     return tuple(told)
-
-
-def shared_stress(normals: Floats, sectors: Sequence[Sector], odds: EvidenceModel) -> Floats:
-    """Return the likelihood of each of C misfits under the stress that the other misfits speak for, shape (C,).
-
-    normals are mean planes (C, 3). A fault alone, or one with others that share nothing, has about the likelihood of any stress at
-    all (`by_chance`); faults of one older phase vouch for each other. Each of the others counts as one of the phase or not, evenly.
-    """
-    count = len(normals)
-    evidence = gather([n[None] for n in normals], [np.ones(1)] * count, sectors, np.ones(count), np.ones(count, bool))
-    frames = all_frames(SHARED_FRAMES).astype(np.float32)
-    each = log_likelihood(evidence, frames, COARSE_RATIOS, odds, Terms(lines=False)).astype(float).reshape(count, -1)
-    chance = np.array([by_chance(sector) for sector in sectors])
-    alone = 0.5 * np.exp(each)  # of two half-spaces apart by words, half is what one readily writes a word for
-    mixed = np.log((alone + chance[:, None]) / 2)
-    rest = mixed.sum(0) - mixed
-    weight = np.exp(rest - rest.max(1, keepdims=True))
-    return np.asarray((weight * alone).sum(1) / weight.sum(1))
-
-
-def with_shared_stress(
-    verdicts: Sequence[Verdict], normals: Floats, sectors: Sequence[Sector | None], odds: EvidenceModel
-) -> list[Verdict]:
-    """Return the verdicts, an older phase weighed anew for each conflict by how well the others share a stress with it.
-
-    normals are mean planes (F, 3) in the order of the verdicts. With one conflict, or more than MOST_SHARED, nothing changes.
-    """
-    rows = [k for k, v in enumerate(verdicts) if v.word == "conflicting" and sectors[k] is not None]
-    done = list(verdicts)
-    if not 2 <= len(rows) <= MOST_SHARED:
-        return done
-    declared = [sector for sector in (sectors[k] for k in rows) if sector is not None]
-    found = shared_stress(np.asarray(normals)[rows], declared, odds)
-    for k, sector, likelihood in zip(rows, declared, found, strict=True):
-        known = dict.fromkeys((row.key for row in CAUSES), 0.0) | {cause.key: cause.score for cause in verdicts[k].causes}
-        known["older_phase"] = max(known["older_phase"], UNTOLD_SCORE) * max(1.0, float(likelihood) / by_chance(sector))
-        total = max(1.0, sum(known.values()))
-        done[k] = replace(verdicts[k], causes=ranked({key: score / total for key, score in known.items()}, sector))
-    return done

@@ -27,8 +27,9 @@ from structviz.kinematics.senses import nearest_word, sector_of_words
 from structviz.kinematics.slip import resolved_slip, shear_and_normal
 from structviz.model import Fault, FaultModel
 from structviz.orientation.planes import rakes_deg
-from structviz.stress.causes import ALIKE, with_shared_stress
+from structviz.stress.causes import ALIKE
 from structviz.stress.evidence import EvidenceModel
+from structviz.stress.shared_causes import with_shared_stress
 from structviz.stress.tensor import reduced_tensor
 from structviz.stress.verdict import Verdict
 from structviz.synthetic.models import Known, declaration, random_model, random_surface
