@@ -15,7 +15,7 @@ from dataclasses import Field, fields
 from types import FrameType
 from typing import Any
 
-from structviz.analysis import Analysis, Settings, bounds
+from structviz.analysis import Analysis
 from structviz.analysis import run as analyse
 from structviz.checks import checked_limits
 from structviz.cli.progress import progress_bar
@@ -25,6 +25,7 @@ from structviz.io.independent import with_measurements
 from structviz.report.results_json import results_text
 from structviz.report.summary import show
 from structviz.report.write import RESULTS, Written, checked_target, write_outputs
+from structviz.settings import Settings, bounds
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:

@@ -20,6 +20,8 @@ LAYERS: tuple[set[str], ...] = (
     {"model"},
     {"synthetic"},
     {"checks", "io"},
+    {"settings"},
+    {"examination"},
     {"analysis"},
     {"views"},
     {"report"},
