@@ -23,6 +23,7 @@ from structviz.stress.shared_causes import ModelCause, whole_model_causes
 from structviz.stress.verdict import Cause
 
 WORTH = 0.2  # score from which a cause explains a fault
+SLIPS_OF_THE_PEN = 0.25  # share of the judged faults up to which swapped labels are single mistakes
 SYSTEMATIC = {
     "dips_other_way": "depth read as elevation, or one export that mirrored them, would explain them all",
     "mirrored": "easting reversed, or easting and northing exchanged, in one export would explain them all",
@@ -56,13 +57,16 @@ def cause_shared(examined: Examined, limit: float) -> Iterator[Found]:
     """Return an error on the model for the cause that explains the most conflicts, from so many faults on as the limit says.
 
     The faults it names are those that name it first, with those that give it a good share though another comes first. It must explain
-    most conflicts of the model; else they are told one by one.
+    most conflicts of the model; else they are told one by one. A few swapped labels are no convention, whatever they share.
     """
     wrong = [k for k, v in enumerate(examined.verdicts) if v.word == "conflicting"]
+    judged = sum(v.word != "undetermined" for v in examined.verdicts)
     counted = []
     for place, key in enumerate(SYSTEMATIC):
         first = [k for k in wrong if examined.verdicts[k].causes and examined.verdicts[k].causes[0].key == key]
         fits = [k for k in wrong if any(c.key == key and c.score >= WORTH for c in examined.verdicts[k].causes)]
+        if key == "label_swapped" and len(fits) <= SLIPS_OF_THE_PEN * judged:
+            continue
         if len(fits) >= limit and 2 * len(fits) > len(wrong) and 2 * len(first) >= len(fits):
             counted.append((len(fits), -place, key, fits))
     if counted:

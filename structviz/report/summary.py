@@ -26,6 +26,7 @@ if TYPE_CHECKING:
 
 MOST_CONFLICTS = 12
 MOST_ROWS = 5  # of reasons, findings of the model, kinds of findings
+MOST_STEPS = 3  # causes whose next step is told under the conflicts
 LEAST_NAME = 16  # columns kept for names on a narrow terminal
 POINTS = ("N", "NNE", "NE", "ENE", "E", "ESE", "SE", "SSE", "S", "SSW", "SW", "WSW", "W", "WNW", "NW", "NNW")
 LOOSE_DEG = 30.0  # a regime with a wider cone is called poorly determined
@@ -198,6 +199,7 @@ def _conflicts(analysis: Analysis, width: int) -> Iterator[RenderableType]:
         verb = "conflicts" if len(found) == 1 else "conflict"
         yield from _heading(f"{len(found)} of {_count(total, 'fault')} {verb} with the others", COLOUR["conflicting"])
         yield _conflict_table(found[:MOST_CONFLICTS], width)
+        yield from _next_steps(found[:MOST_CONFLICTS])
     if len(found) > MOST_CONFLICTS:
         yield _line((f"and {len(found) - MOST_CONFLICTS} more, in faults.csv and results.json", "dim"), indent=2)
 
@@ -215,6 +217,14 @@ def _conflict_table(found: Sequence[FaultResult], width: int) -> Table:
         shown, sure = (middle_cut(result.fault.name, name), "bold"), f"{100 * (verdict.conflict_probability or 0):.0f} %"
         _row(table, shown, declared, (predicted, "red"), sure, f"{verdict.misfit_deg or 0:.0f}°", cause)
     return table
+
+
+def _next_steps(found: Sequence[FaultResult]) -> Iterator[RenderableType]:
+    """Return what to do next for the commonest likely causes of the faults shown, each told once."""
+    first = [result.verdict.causes[0] for result in found if result.verdict.causes]
+    steps = {cause.key: cause.next_step for cause in first if cause.next_step}
+    for key, _ in Counter(cause.key for cause in first if cause.next_step).most_common(MOST_STEPS):
+        yield _line((f"{key.replace('_', ' ')}: ", "bold"), (steps[key], "dim"), indent=2)
 
 
 def _declared(result: FaultResult) -> str:

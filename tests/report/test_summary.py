@@ -16,7 +16,7 @@ from structviz.model import Finding
 from structviz.report.summary import middle_cut, show
 from structviz.report.write import Written
 from structviz.stress.regime import ShapeRatio
-from structviz.stress.verdict import Verdict
+from structviz.stress.verdict import Cause, Verdict
 
 SGR = re.compile(r"\x1b\[[0-9;]*m")  # colours and weights, the only sequences we send
 COLOUR = re.compile(r"\x1b\[[0-9;]*(3[0-7]|9[0-7])[0-9;]*m")
@@ -169,3 +169,11 @@ def test_a_long_name_keeps_both_ends() -> None:
     assert len(cut) == 16
     assert cut.startswith("MJVA")
     assert cut.endswith("CFM5")
+
+
+def test_what_to_do_next_is_told_once_a_cause(analysis: Analysis) -> None:
+    cause = Cause("older_phase", "the fault may be older", 0.7, "look for what dates it")
+    verdict = Verdict("conflicting", 0.99, 150.0, -80.0, 5.0, 0.9, ("declared otherwise",), (cause,))
+    faults = tuple(replace(result, verdict=verdict) for result in analysis.faults[:3])
+    text = shown(replace(analysis, faults=faults))
+    assert text.count("older phase: look for what dates it") == 1
