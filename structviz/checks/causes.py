@@ -23,6 +23,7 @@ from structviz.stress.shared_causes import ModelCause, whole_model_causes
 from structviz.stress.verdict import Cause
 
 WORTH = 0.2  # score from which a cause explains a fault
+SAME_NATS = 5.0  # gains this near each other do not tell their causes apart
 SLIPS_OF_THE_PEN = 0.25  # share of the judged faults up to which swapped labels are single mistakes
 SYSTEMATIC = {
     "dips_other_way": "depth read as elevation, or one export that mirrored them, would explain them all",
@@ -102,17 +103,19 @@ def _turned_words(swapped: bool) -> Examined:
     needs="stress",
 )
 def cause_of_whole_model(examined: Examined, limit: float) -> Iterator[Found]:
-    """Return a warning for the change of all faults that gains the most likelihood, where it gains more than the limit."""
+    """Return a warning where a change of all faults gains more likelihood than the limit, naming those that gain about as much.
+
+    Rotated blocks and planes reused under another stress give obtuse pairs too, in models without any mistake: the words say so.
+    """
     found = _whole(examined)
     if found and found[0].gain_nats > limit:
-        best = found[0]
-        yield Found(
-            "model",
-            "warning",
-            f"{best.text}: it fits better by {best.gain_nats:.0f} nats",
-            (("gain_nats", round(best.gain_nats, 1)),),
-            best.next_step,
-        )
+        best = found[0].gain_nats
+        close = [cause for cause in found if cause.gain_nats > best - SAME_NATS]
+        text = " or with ".join(cause.text for cause in close)
+        but = "rotated blocks, or older planes used again, look the same"
+        steps = "; ".join(cause.next_step for cause in close)
+        numbers = (("gain_nats", round(best, 1)), ("explanations", len(close)))
+        yield Found("model", "warning", f"planes and movements fit each other better by {best:.0f} nats with {text}; {but}", numbers, steps)
 
 
 def _whole(examined: Examined) -> tuple[ModelCause, ...]:

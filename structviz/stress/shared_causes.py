@@ -81,13 +81,13 @@ MODEL_CAUSES = (  # key, what is done to a declared rake to undo it, words, next
     (
         "labels_swapped",
         lambda rake: rake + 180.0,
-        "all declared movements seem reversed: with every one turned round the pairs are acute",
+        "every declared movement reversed",
         "ask how sense and rake were defined (footwall or hanging wall, sign of the rake); if they are right, the blocks are rotated",
     ),
     (
         "plan_mirrored",
         lambda rake: 180.0 - rake,
-        "the whole plan seems mirrored (easting reversed, or exchanged with northing), or sinistral and dextral exchanged",
+        "the plan mirrored (easting reversed, or exchanged with northing), or sinistral and dextral exchanged",
         "compare the strike of any fault with the geological map; then how sinistral and dextral were written down",
     ),
 )

@@ -234,3 +234,44 @@ def test_depth_read_as_elevation_of_all_faults_cannot_be_seen(axes):
 
 def mirrored_each(n, signs):
     return np.concatenate([mirrored(row[None], signs) for row in n])
+
+
+@pytest.mark.parametrize(("plane", "word"), [((10.0, 55.0), "reverse"), ((70.0, 40.0), "dextral"), ((130.0, 75.0), "normal-sinistral")])
+def test_scores_are_those_of_plain_sums(plane, word):
+    lean = np.array([[0.1, 0.2, 0.974679], [0.0, 0.979589, -0.201008], [0, 0, 0]])
+    lean[1] -= (lean[1] @ lean[0]) * lean[0]
+    lean[:2] /= np.sqrt((lean[:2] ** 2).sum(1))[:, None]
+    lean[2] = np.cross(lean[0], lean[1])
+    n, sector, odds = normals(*plane), sector_of_words(word), EvidenceModel()
+    posterior = known_stress(lean)
+    _, prediction = judge(posterior, 0, n[None], np.ones(1), sector, "", VerdictLimits(conflicting_from=0.0))
+    verdict = Verdict("conflicting", 1.0, 100.0, 0.0, 5.0, 0.5)
+    found = causes_of(verdict, posterior, 0, prediction, n[None], np.ones(1), sector)
+
+    def fits(m, declared):
+        rake = float(rakes_deg(m, resolved_slip(reduced_tensor(lean, GRID[3]), m)))
+        off = abs((rake - declared.rake_deg + 180) % 360 - 180)
+        half = declared.half_width_deg
+        return 0.0 if off > half else 1.0 if off < half / 2 else 1 - 0.9 * (off - half / 2) / (half / 2)
+
+    def stands(m):
+        return standing(m[None], np.ones(1), lean[None], odds)
+
+    belief = {row.key: row.belief for row in CAUSES}
+    around = [np.array([-n[0], -n[1], n[2]])]
+    plan = [np.array([-n[0], n[1], n[2]]), np.array([n[1], n[0], n[2]])]
+    plain = {
+        "label_swapped": belief["label_swapped"] * stands(n) * fits(n, sector.opposite()),
+        "dips_other_way": belief["dips_other_way"] * sum(stands(m) * fits(m, sector) for m in around),
+        "mirrored": belief["mirrored"] * sum(stands(m) * fits(m, sector) for m in plan) / 2,
+    }
+    scores = {cause.key: cause.score for cause in found}
+    told = [key for key in plain if key in scores]
+    unit = belief["older_phase"] * by_chance(sector)
+    for key in told:
+        if "older_phase" in scores:
+            assert scores[key] / scores["older_phase"] == pytest.approx(plain[key] / unit, rel=1e-6)
+        else:
+            assert scores[key] == pytest.approx(plain[key] / unit * (scores[told[0]] * unit / plain[told[0]]), rel=1e-6)
+    best = max(plain, key=lambda key: plain[key])
+    assert plain[best] < 0.3 * unit or best in told or "older_phase" in scores
