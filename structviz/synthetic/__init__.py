@@ -8,12 +8,14 @@ from structviz.synthetic.demo import Demo, demo_model
 from structviz.synthetic.models import Known, large_model, random_model
 from structviz.synthetic.phased import KnownPhases, phased_model
 from structviz.synthetic.shapes import Relief, bent_surface, overturning_surface, plane_surface, relief_surface
+from structviz.synthetic.turning import KnownTurning, turning_model
 
 __all__ = [
     "DAMAGE",
     "Demo",
     "Known",
     "KnownPhases",
+    "KnownTurning",
     "Relief",
     "bent_surface",
     "damaged_surface",
@@ -25,4 +27,5 @@ __all__ = [
     "random_model",
     "relief_surface",
     "sound_surface",
+    "turning_model",
 ]
