@@ -14,6 +14,7 @@ from structviz.errors import ArgumentError
 from structviz.model import Fault, FaultModel, Finding
 from structviz.stress.compare import Comparison
 from structviz.stress.conjugate import Pairs
+from structviz.stress.field import FieldSummary
 from structviz.stress.phases import Contradiction
 from structviz.stress.regime import Reading, Regime
 from structviz.stress.verdict import Verdict
@@ -37,6 +38,7 @@ class Examined:
     verdicts: tuple[Verdict, ...] = ()
     contradictions: tuple[Contradiction, ...] = ()  # of declared phases; faults by their place in the model
     comparisons: tuple[Comparison, ...] = ()  # with what was measured apart from the faults
+    field: FieldSummary | None = None  # where the stress turns from one part of the model to another
 
     def faults(self) -> Iterator[tuple[Fault, MeasuredSurface]]:
         """Return each fault with its measured surface."""

@@ -143,3 +143,33 @@ def _foretold(data: LocalData, radius_m: float) -> float:
         p = _posterior(data, weights[at : at + CHUNK_POINTS])
         total += float(np.log((p * np.exp(data.logs[at : at + CHUNK_POINTS])).sum(1)).sum())
     return total
+
+
+@dataclass(frozen=True)
+class FieldSummary:
+    """The two supported faults between which the azimuth of the greatest horizontal compression differs most."""
+
+    turn_deg: float  # 0 to 90
+    first: tuple[float, float, float]  # m
+    second: tuple[float, float, float]  # m
+    first_shmax_deg: float
+    second_shmax_deg: float
+    radius_m: float
+    gain_nats: float  # over one stress
+
+
+def field_summary(data: LocalData, chosen: Bandwidth) -> FieldSummary | None:
+    """Return by how much the azimuth turns between the places of the faults; None where one stress serves the whole model."""
+    if np.isinf(chosen.radius_m):
+        return None
+    field = stress_field(data, data.places, chosen.radius_m)
+    rows = np.flatnonzero(field.supported)
+    if len(rows) < 2:
+        return None
+    azimuth = field.shmax_deg[rows]
+    apart = np.abs((azimuth[:, None] - azimuth[None] + 90) % 180 - 90)
+    pair = rows[list(np.unravel_index(int(np.nanargmax(apart)), apart.shape))]
+    one, two = sorted(pair, key=lambda row: tuple(data.places[row]))  # from west to east
+    first, second = ((float(p[0]), float(p[1]), float(p[2])) for p in data.places[[one, two]])
+    turn, azimuths = float(np.nanmax(apart)), (float(field.shmax_deg[one]), float(field.shmax_deg[two]))
+    return FieldSummary(turn, first, second, *azimuths, chosen.radius_m, chosen.gain)
