@@ -40,6 +40,28 @@ def shmax_trajectories(azimuths: Azimuths, seeds: Floats, step_m: float, separat
     return lines
 
 
+def azimuths_on_grid(origin: tuple[float, float], step_m: float, shmax_deg: Floats) -> Azimuths:
+    """Return the function of places that interpolates azimuths (N, E), degrees, of a level grid, northing by easting.
+
+    It is linear in twice the angle, so that 179 and 1 deg meet at 0; NaN outside and where one of the four corners is NaN. The grid
+    begins at `origin` (easting, northing, m). Quick, where a field asked at every step would be slow.
+    """
+    doubled = np.exp(2j * np.radians(shmax_deg))
+    most = np.array(shmax_deg.shape)[::-1] - 1
+
+    def azimuths(places: Floats) -> Floats:
+        at = (places[:, :2] - np.array(origin)) / step_m
+        inside = (at >= 0).all(1) & (at <= most).all(1) & (most > 0).all()
+        cell = np.clip(np.where(inside[:, None], at, 0.0).astype(int), 0, np.maximum(most - 1, 0))
+        (i, j), (u, v) = cell.T, np.where(inside[:, None], at - cell, 0.0).T
+        n, e = np.minimum(j + 1, most[1]), np.minimum(i + 1, most[0])
+        low = (1 - u) * doubled[j, i] + u * doubled[j, e]
+        high = (1 - u) * doubled[n, i] + u * doubled[n, e]
+        return np.where(inside, np.degrees(np.angle((1 - v) * low + v * high)) / 2 % 180.0, np.nan)
+
+    return azimuths
+
+
 def _nearest_m(place: Floats, lines: list[Floats]) -> float:
     return min((float(np.sqrt(((line - place) ** 2).sum(1).min())) for line in lines), default=np.inf)
 

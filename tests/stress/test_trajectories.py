@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from structviz.errors import ArgumentError
-from structviz.stress.trajectories import shmax_trajectories
+from structviz.stress.trajectories import azimuths_on_grid, shmax_trajectories
 
 
 def circles(places: np.ndarray) -> np.ndarray:
@@ -40,3 +40,18 @@ def test_a_seed_near_a_line_starts_none() -> None:
 def test_steps_must_be_shorter_than_the_separation() -> None:
     with pytest.raises(ArgumentError, match="two steps or more"):
         shmax_trajectories(circles, np.zeros((1, 3)), 100.0, 150.0)
+
+
+def test_a_grid_is_read_between_its_points_across_north() -> None:
+    grid = azimuths_on_grid((100.0, 200.0), 10.0, np.array([[178.0, 2.0, 40.0], [178.0, 2.0, np.nan]]))
+    found = grid(np.array([[100.0, 200, 0], [105.0, 205, 0], [112.0, 200, 0], [99.0, 205, 0], [110.0, 210.0, 5]]))
+    np.testing.assert_allclose(found[0], 178.0)
+    assert min(found[1], 180 - found[1]) < 1e-9
+    assert np.isnan(found[2:4]).all()
+
+
+def test_lines_on_a_grid_are_those_of_the_azimuths_themselves() -> None:
+    north, east = np.meshgrid(np.arange(-3500.0, 3501, 50), np.arange(-3500.0, 3501, 50), indexing="ij")
+    values = circles(np.stack([east.ravel(), north.ravel()], 1)).reshape(north.shape)
+    (line,) = shmax_trajectories(azimuths_on_grid((-3500.0, -3500.0), 50.0, values), np.array([[1500.0, 0.0, 0.0]]), 50.0, 400.0)
+    np.testing.assert_allclose(np.hypot(line[:, 0], line[:, 1]), 1500.0, atol=5.0)
