@@ -8,7 +8,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from structviz.errors import ArgumentError
-from structviz.orientation.vectors import axial_angle_deg
 from structviz.stress.classify import shmax_deg
 from structviz.stress.evidence import EvidenceModel, FaultEvidence
 from structviz.stress.frames import all_frames
@@ -41,7 +40,7 @@ class StressField:
 
     points: Floats  # (P, 3) m
     axes: Floats  # (P, 3, 3) unit rows sigma1, sigma2, sigma3
-    spread_deg: Floats  # (P, 3) root mean square angle of each axis under what the faults near by say
+    spread_deg: Floats  # (P, 3) angle of each axis (root mean square sine) under what the faults near by say
     count: NDArray[np.int64]  # (P,) faults within two bandwidths
     supported: NDArray[np.bool_]  # (P,)
     shmax_deg: Floats  # (P,) azimuth of the greatest horizontal compression, [0, 180), for R = 1/2
@@ -115,14 +114,14 @@ def _estimated(data: LocalData, weights: Floats) -> tuple[Floats, Floats]:
     mean = (p @ squares).reshape(-1, 3, 3, 3)
     axes = np.swapaxes(np.linalg.eigh(mean[:, 0] + mean[:, 1] / 2)[1], -1, -2)[:, ::-1].copy()
     axes[:, 2] = np.cross(axes[:, 0], axes[:, 1])
-    angles = np.stack([axial_angle_deg(frame[None], data.frames) for frame in axes])
-    return axes, np.sqrt(np.einsum("pg,pgk->pk", p, angles**2))
+    held = np.einsum("pki,pkij,pkj->pk", axes, mean, axes)  # mean squared cosine between each axis and that of the mean
+    return axes, np.degrees(np.arcsin(np.sqrt(np.clip(1 - held, 0.0, 1.0))))
 
 
 def _posterior(data: LocalData, weights: Floats) -> Floats:
-    sums = (weights.astype(np.float32) @ data.logs).astype(float)
+    sums = weights.astype(np.float32) @ data.logs
     p = np.exp(sums - sums.max(1, keepdims=True))
-    return p / p.sum(1, keepdims=True)
+    return p / p.sum(1, keepdims=True, dtype=float)
 
 
 def choose_bandwidth(data: LocalData) -> Bandwidth:
