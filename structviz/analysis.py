@@ -25,6 +25,7 @@ from structviz.stress.joint import Terms, infer
 from structviz.stress.readings import pair_frames, regime_of_frames, shape_ratio_of
 from structviz.stress.regime import Reading, Regime
 from structviz.stress.replicates import Posterior, bootstrap_counts
+from structviz.stress.shared_causes import with_shared_stress
 from structviz.stress.verdict import Verdict, VerdictLimits, undetermined
 from structviz.surfaces.surface import MeasuredSurface, Stations
 
@@ -170,7 +171,9 @@ def _judge_all(examined: Examination, found: Answer | None, settings: Settings, 
     if found is None:
         return [undetermined("no stress could be inferred")] * len(examined.faults)
     cases = list(enumerate(zip(examined.stations, examined.sectors, examined.why_no_sector, strict=True)))
-    return for_each(lambda case: _judge_one(found, case[0], case[1][0], case[1][1], case[1][2], limits), cases, "judging faults", tell)
+    judged = for_each(lambda case: _judge_one(found, case[0], case[1][0], case[1][1], case[1][2], limits), cases, "judging faults", tell)
+    normals = np.stack([measured.normal for measured in examined.measured])
+    return with_shared_stress(judged, normals, examined.sectors, found.single.odds)
 
 
 def _judge_one(found: Answer, number: int, stations: Stations, sector: Sector | None, why: str, limits: VerdictLimits) -> Verdict:

@@ -103,7 +103,7 @@ def _turned_words(swapped: bool) -> Examined:
     needs="stress",
 )
 def cause_of_whole_model(examined: Examined, limit: float) -> Iterator[Found]:
-    """Return a warning where a change of all faults gains more likelihood than the limit, naming those that gain about as much.
+    """Return a note where a change of all faults gains more likelihood than the limit, naming those that gain about as much.
 
     Rotated blocks and planes reused under another stress give obtuse pairs too, in models without any mistake: the words say so.
     """
@@ -115,7 +115,7 @@ def cause_of_whole_model(examined: Examined, limit: float) -> Iterator[Found]:
         but = "rotated blocks, or older planes used again, look the same"
         steps = "; ".join(cause.next_step for cause in close)
         numbers = (("gain_nats", round(best, 1)), ("explanations", len(close)))
-        yield Found("model", "warning", f"planes and movements fit each other better by {best:.0f} nats with {text}; {but}", numbers, steps)
+        yield Found("model", "note", f"planes and movements fit each other better by {best:.0f} nats with {text}; {but}", numbers, steps)
 
 
 def _whole(examined: Examined) -> tuple[ModelCause, ...]:

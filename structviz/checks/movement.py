@@ -109,8 +109,9 @@ def conflicting_set(examined: Examined, limit: float) -> Iterator[Found]:
     """Return a warning on the largest group of three or more conflicting faults within the limit of one of them and declared alike.
 
     It is told only where no more than twice as many faults of that orientation agree with the rest; else single labels are suspect.
+    Faults that each name an older phase as their likeliest cause are told by `cause-shared`.
     """
-    wrong = [k for k, verdict in enumerate(examined.verdicts) if verdict.word == "conflicting"]
+    wrong = [k for k, v in enumerate(examined.verdicts) if v.word == "conflicting" and not (v.causes and v.causes[0].key == "older_phase")]
     right = [k for k, verdict in enumerate(examined.verdicts) if verdict.word == "consistent"]
     groups = []
     for leader in wrong:
