@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -20,7 +20,9 @@ from structviz.stress.answer import Answer, answer, in_order, is_tight, judge_in
 from structviz.stress.causes import causes_of
 from structviz.stress.compare import Comparison
 from structviz.stress.conjugate import Pairs
+from structviz.stress.domains import Domains, find_domains
 from structviz.stress.evidence import EvidenceModel, FaultEvidence
+from structviz.stress.field import Bandwidth, FieldSummary, LocalData, choose_bandwidth, field_summary, local_data
 from structviz.stress.joint import Terms, infer
 from structviz.stress.readings import pair_frames, regime_of_frames, shape_ratio_of
 from structviz.stress.regime import Reading, Regime
@@ -29,7 +31,7 @@ from structviz.stress.shared_causes import with_shared_stress
 from structviz.stress.verdict import Verdict, VerdictLimits, undetermined
 from structviz.surfaces.surface import MeasuredSurface, Stations
 
-__all__ = ["CAUTIONS", "Analysis", "FaultResult", "Progress", "Settings", "run"]
+__all__ = ["CAUTIONS", "Analysis", "ByPlace", "FaultResult", "Progress", "Settings", "run"]
 
 CAUTIONS = (
     "A screening aid: it tests geometry against declared movement. It does not measure stress magnitude, fault stability or hazard.",
@@ -39,6 +41,7 @@ CAUTIONS = (
     "Directions only: the shape ratio R is reported where the data resolve it, stress magnitudes never are.",
 )
 PAIR_REPLICATES = 200
+FEWEST_BY_PLACE = 12  # faults; of fewer, where each lies tells nothing
 
 
 @dataclass(frozen=True, eq=False)
@@ -52,6 +55,16 @@ class FaultResult:
     sector: Sector | None = None  # the declaration as it could be tested on this surface; None where it could not
     phase: int = 0  # row of Analysis.regimes by which it is judged
     membership: tuple[float, ...] = ()  # probability of each phase, where there are several
+
+
+@dataclass(frozen=True, eq=False)
+class ByPlace:
+    """How the stress changes with place."""
+
+    data: LocalData  # what each fault says, and where
+    bandwidth: Bandwidth  # infinite where one stress serves the whole model
+    turn: FieldSummary | None  # by how much it turns; None where it does not
+    domains: Domains | None  # parts of the model with a stress of their own, where it turns
 
 
 @dataclass(frozen=True, eq=False)
@@ -70,6 +83,7 @@ class Analysis:
     limits: Mapping[str, float] = field(default_factory=dict)  # of every check that was run
     answer: Answer | None = None  # the stress with its replicates, faults in the order of the model; None where nothing speaks
     comparisons: tuple[Comparison, ...] = ()  # of each regime with wells and earthquakes
+    by_place: ByPlace | None = None  # the stress as a field; None where phases are mixed or the stress is loose
 
     @property
     def conflicting(self) -> tuple[FaultResult, ...]:
@@ -94,6 +108,7 @@ def run(
     evidence, told = with_earthquakes(evidence_of(examined, model.striae, subjects, geometric), model, settings)
     counts = bootstrap_counts(len(evidence), settings.replicates, settings.random_state)
     readings, found = _read(evidence, geometric, pairs, counts, [fault.phase for fault in examined.faults], settings)
+    place = _place(examined, evidence, found)
     verdicts = _judge_all(examined, found, settings, tell)
     back = np.argsort(order)
     found = in_order(found, np.append(back, np.arange(len(back), len(evidence)))) if found else None
@@ -103,10 +118,46 @@ def run(
     tell("checking", 0, 1)
     measured, judged = tuple(r.measured for r in results), tuple(r.verdict for r in results)
     compared = comparisons(model, regimes, friction_of(settings), settings.random_state)
-    evidence_for_checks = Examined(model, measured, pairs, readings, regimes, judged, contradictions, compared)
+    evidence_for_checks = Examined(
+        model, measured, pairs, readings, regimes, judged, contradictions, compared, place.turn if place else None
+    )
     used = checks.checked_limits(limits or {})
     findings = model.findings + told + checks.run(evidence_for_checks, used)
-    return Analysis(model, settings, results, pairs, readings, regimes, findings, CAUTIONS, __version__, used, found, compared)
+    return Analysis(
+        model,
+        settings,
+        results,
+        pairs,
+        readings,
+        regimes,
+        findings,
+        CAUTIONS,
+        __version__,
+        used,
+        found,
+        compared,
+        _in_model_order(place, back),
+    )
+
+
+def _place(examined: Examination, evidence: FaultEvidence, found: Answer | None) -> ByPlace | None:
+    """Return how the stress changes with place, faults in canonical order; None where there is no one stress to change."""
+    faults = len(examined.faults)
+    if found is None or found.single.loose or len(found.regimes) != 1 or faults < FEWEST_BY_PLACE:
+        return None
+    places = np.stack([stations.places.mean(0) for stations in examined.stations])
+    data = local_data(evidence.part(slice(0, faults)), places, found.single.frame, found.single.odds)
+    chosen = choose_bandwidth(data)
+    turns = np.isfinite(chosen.radius_m)
+    return ByPlace(data, chosen, field_summary(data, chosen), find_domains(data) if turns else None)
+
+
+def _in_model_order(place: ByPlace | None, back: NDArray[np.int64]) -> ByPlace | None:
+    if place is None:
+        return None
+    data = replace(place.data, places=place.data.places[back], logs=place.data.logs[back])
+    domains = replace(place.domains, membership=place.domains.membership[back]) if place.domains else None
+    return replace(place, data=data, domains=domains)
 
 
 def _result(examined: Examination, found: Answer | None, verdict: Verdict, i: int, place: int) -> FaultResult:

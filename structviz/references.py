@@ -17,6 +17,7 @@ REFERENCES: dict[str, str] = {
     "doi:10.1029/JB089iB13p11517",
     "morris1996": "Morris, A., Ferrill, D. A. and Henderson, D. B. (1996). Slip-tendency analysis and fault reactivation. Geology 24, "
     "275-278. doi:10.1130/0091-7613(1996)024<0275:STAAFR>2.3.CO;2",
+    "tukey1977": "Tukey, J. W. (1977). Exploratory Data Analysis. Addison-Wesley, section 16E (twicing). (Cited from memory.)",
     "platt1999": "Platt, J. (1999). Probabilistic outputs for support vector machines and comparisons to regularized likelihood methods. "
     "In: Advances in Large Margin Classifiers, MIT Press, 61-74. (Cited from memory.)",
     "simpson1997": "Simpson, R. W. (1997). Quantifying Anderson's fault types. J. Geophys. Res. 102, 17909-17919. doi:10.1029/97JB01274",

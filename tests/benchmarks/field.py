@@ -61,14 +61,14 @@ def main() -> None:
     parser.add_argument("--seed", type=int, default=0)
     parser.add_argument("--jobs", type=int, default=1)
     chosen = parser.parse_args()
-    print("turn  said to turn %   azimuth off 50%  95%   supported %  gain, nats: least  median  most   seconds")
+    print("turn  said to turn %   azimuth off 50%  95%  within 8 deg %   supported %  gain, nats: least  median  most   seconds")
     with ProcessPoolExecutor(chosen.jobs) as pool:
         for turn in (60.0, 0.0):
             rows = list(pool.map(outcome, [(state, turn) for state in range(chosen.seed, chosen.seed + chosen.models)]))
             off = np.concatenate([row[2] for row in rows])
             gains = np.array([row[0] for row in rows])
             print(
-                f"{turn:4.0f}  {100 * np.mean([row[1] for row in rows]):14.1f}   {np.median(off):15.1f} {np.quantile(off, 0.95):4.1f}"
+                f"{turn:4.0f}  {100 * np.mean([row[1] for row in rows]):14.1f}   {np.median(off):15.1f} {np.quantile(off, 0.95):4.1f}  {100 * np.mean(off <= 8.0):14.1f}"
                 f"   {100 * np.mean([row[3] for row in rows]):11.0f}  {gains.min():17.1f} {np.median(gains):7.1f} {gains.max():5.1f}"
                 f"   {np.median([row[4] for row in rows]):7.2f}",
                 flush=True,
