@@ -1,0 +1,192 @@
+"""What the page says in words: the answer, how sure it is, and each fault as text that can be pasted into a mail."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from structviz.analysis import Analysis, FaultResult
+from structviz.kinematics.senses import describe_rake
+from structviz.orientation.lines import trend_plunge_deg
+from structviz.report.names import printable
+from structviz.stress.regime import Regime
+
+POINTS = ("N", "NNE", "NE", "ENE", "E", "ESE", "SE", "SSE", "S", "SSW", "SW", "WSW", "W", "WNW", "NW", "NNW")
+WELL_DEG = 15.0  # widest cone of a regime that is called well determined
+LOOSE_DEG = 30.0  # a regime with a wider cone is called poorly determined
+WORDS = ("conflicting", "undetermined", "consistent")
+AXES = ("σ1", "σ2", "σ3")
+
+
+def counted(number: int, one: str, many: str = "") -> str:
+    """Return a number with its noun.
+
+    >>> counted(1, "fault"), counted(1200, "fault")
+    ('1 fault', '1,200 faults')
+    """
+    return f"{number:,} {one if number == 1 else many or one + 's'}"
+
+
+def listed(names: Sequence[str], most: int = 6) -> str:
+    """Return names in a row, the last after "and"; those beyond `most` as a count.
+
+    >>> listed(["a", "b", "c"]), listed(["a", "b", "c"], 2)
+    ('a, b and c', 'a, b and 1 more')
+    """
+    shown = list(names) if len(names) <= most else [*names[:most], f"{len(names) - most} more"]
+    return f"{', '.join(shown[:-1])} and {shown[-1]}" if len(shown) > 1 else "".join(shown)
+
+
+def azimuth(degrees: float, turn: int = 360) -> str:
+    """Return an azimuth in three digits, whole degrees.
+
+    >>> azimuth(6.6), azimuth(359.8)
+    ('007', '000')
+    """
+    return f"{round(degrees) % turn:03d}"
+
+
+def shmax(regime: Regime) -> str:
+    """Return the azimuth of SHmax with its interval and the points of the compass, as 017 ± 3° (NNE-SSW)."""
+    whole = round(regime.shmax_deg) % 180
+    point = round(whole / 22.5) % 8
+    ends = (POINTS[point], POINTS[point + 8]) if point <= 4 else (POINTS[point + 8], POINTS[point])  # NW-SE rather than SE-NW
+    return f"{whole:03d} ± {regime.shmax_half_width_deg:.0f}° ({'-'.join(ends)})"
+
+
+def axes(regime: Regime) -> tuple[tuple[str, str, str], ...]:
+    """Return name, trend/plunge and 95 % cone of each principal axis."""
+    trends, plunges = trend_plunge_deg(regime.axes)
+    rows = zip(AXES, trends, plunges, regime.cones_deg)
+    return tuple((name, f"{azimuth(float(trend))}/{float(plunge):02.0f}", f"± {cone:.0f}°") for name, trend, plunge, cone in rows)
+
+
+def kind(regime: Regime) -> str:
+    """Return the class of a regime in words.
+
+    >>> from types import SimpleNamespace
+    >>> kind(SimpleNamespace(kind="strike-slip"))
+    'strike-slip faulting'
+    """
+    return "stress of no Andersonian class" if regime.kind == "undefined" else f"{regime.kind} faulting"
+
+
+def ratio(regime: Regime) -> str:
+    """Return the shape ratio with its interval, or that the data leave it open."""
+    found = regime.shape_ratio
+    if found is None:
+        return "not resolved; predictions cover all of it"
+    return f"{found.value:.2f} ({found.low:.2f} to {found.high:.2f})"
+
+
+def sureness(regime: Regime) -> str:
+    """Return one word group for how tightly the axes of a regime are held."""
+    widest = max(regime.cones_deg)
+    return "well determined" if widest <= WELL_DEG else "determined" if widest <= LOOSE_DEG else "poorly determined"
+
+
+def headline(analysis: Analysis) -> str:
+    """Return which regime, in one line."""
+    found = analysis.regimes
+    if not found:
+        return "No stress could be inferred"
+    if len(found) == 1:
+        return f"{kind(found[0]).capitalize()}, SHmax {azimuth(found[0].shmax_deg, 180)} ± {found[0].shmax_half_width_deg:.0f}°"
+    return (
+        f"{counted(len(found), 'phase')} of faulting: {listed([f'{each.kind}, SHmax {azimuth(each.shmax_deg, 180)}°' for each in found])}"
+    )
+
+
+def how_sure(analysis: Analysis) -> str:
+    """Return how sure the regime is, in one or two sentences."""
+    if not analysis.regimes:
+        why = next((reading.why_not for reading in analysis.readings if reading.key == "joint" and reading.why_not), "")
+        return f"{why[:1].upper()}{why[1:]}." if why else "The evidence does not carry one."
+    first = analysis.regimes[0]
+    cones = sorted(first.cones_deg)
+    within = f"{cones[0]:.0f}°" if round(cones[0]) == round(cones[-1]) else f"{cones[0]:.0f} to {cones[-1]:.0f}°"
+    held = f"The axes are {sureness(first)}: 95 % cones of {within} from {counted(first.faults, 'fault')}."
+    open_ratio = "" if first.shape_ratio else " The shape ratio R is open, so every prediction covers all of it."
+    return held + open_ratio
+
+
+def verdict_line(analysis: Analysis) -> str:
+    """Return how many faults conflict, in a sentence."""
+    number = {word: sum(result.verdict.word == word for result in analysis.faults) for word in WORDS}
+    total = len(analysis.faults)
+    if not number["conflicting"]:
+        conflict = f"No fault of {total:,} conflicts with the others"
+    else:
+        verb = "conflicts" if number["conflicting"] == 1 else "conflict"
+        conflict = f"{number['conflicting']:,} of {counted(total, 'fault')} {verb} with the others"
+    rest = [f"{number['consistent']:,} fit" if number["consistent"] != 1 else "1 fits"] if number["consistent"] else []
+    rest += [f"{number['undetermined']:,} cannot be told"] if number["undetermined"] else []
+    return f"{conflict}; {listed(rest)}." if rest else f"{conflict}."
+
+
+def declared(result: FaultResult) -> str:
+    """Return what was declared, or that nothing was."""
+    return result.fault.declared.text if result.fault.declared else "nothing declared"
+
+
+def predicted(result: FaultResult) -> str:
+    """Return the predicted slip in words, or that none can be predicted."""
+    rake = result.verdict.predicted_rake_deg
+    return "no prediction" if rake is None else describe_rake(rake)
+
+
+def predicted_rake(result: FaultResult) -> str:
+    """Return the predicted rake with the half-width that holds 90 % of the predictions; "" where there is none."""
+    rake, spread = result.verdict.predicted_rake_deg, result.verdict.predicted_rake_spread_deg
+    return "" if rake is None or spread is None else f"rake {rake:.0f} ± {spread:.0f}°"
+
+
+def percent(share: float | None) -> str:
+    """Return a probability as a whole percentage that never claims certainty; a dash where there is none.
+
+    >>> percent(0.9999), percent(0.0), percent(0.42), percent(None)
+    ('> 99 %', '< 1 %', '42 %', '–')
+    """
+    if share is None:
+        return "–"
+    return "> 99 %" if share > 0.99 else "< 1 %" if share < 0.01 else f"{100 * share:.0f} %"
+
+
+def orientation(result: FaultResult) -> str:
+    """Return strike/dip of the mean plane with its cone, or why there is none."""
+    measured = result.measured
+    if not measured.meaningful:
+        return f"no mean plane: {measured.why_not}" if measured.why_not else "no mean plane"
+    return f"{azimuth(measured.strike_deg)}/{measured.dip_deg:02.0f} ± {measured.cone_deg:.0f}°"
+
+
+def area(result: FaultResult) -> str:
+    """Return the area of a fault in square kilometres, or square metres where it is small."""
+    m2 = result.measured.area_m2
+    return f"{m2 / 1e6:,.1f} km²" if m2 >= 1e5 else f"{m2:,.0f} m²"
+
+
+def severity(result: FaultResult) -> tuple[int, float, float, float, str]:
+    """Return what faults are sorted by, worst first: verdict, probability, misfit, then the larger."""
+    verdict = result.verdict
+    probability = verdict.conflict_probability or 0.0
+    return (WORDS.index(verdict.word), -round(probability, 2), -(verdict.misfit_deg or 0.0), -result.measured.area_m2, result.fault.name)
+
+
+def card_text(result: FaultResult, analysis: Analysis) -> str:
+    """Return one fault as plain text for a mail: what was declared, what the others predict, why, and what to do next."""
+    verdict, name = result.verdict, printable(result.fault.name)
+    lines = [f"{name}: {verdict.word}", f"Model: {printable(analysis.model.title or 'untitled')}"]
+    lines.append(f"Plane (strike/dip, 95 % cone): {orientation(result)}, {area(result)}")
+    lines.append(f"Declared: {declared(result)}")
+    lines.append(f"Predicted by the other faults: {', '.join(filter(None, (predicted(result), predicted_rake(result))))}")
+    if verdict.conflict_probability is not None and verdict.misfit_deg is not None:
+        lines.append(f"Probability of conflict: {percent(verdict.conflict_probability)}; misfit {verdict.misfit_deg:.0f}°")
+    lines += [f"Reason: {reason}" for reason in verdict.reasons[:1]]
+    for number, cause in enumerate(verdict.causes, 1):
+        lines.append(f"Possible cause {number} ({percent(cause.score)}): {cause.text}")
+        lines += [f"   Next: {cause.next_step}"] if cause.next_step else []
+    if analysis.regimes:
+        regime = analysis.regimes[result.phase]
+        lines.append(f"Stress of the faults: {kind(regime)}, SHmax {shmax(regime)}; R {ratio(regime)}")
+    lines.append(f"structviz {analysis.version}: a screening aid, it tests geometry against declared movement.")
+    return "\n".join(printable(line) for line in lines)

@@ -1,0 +1,183 @@
+// The list, the search, the record and what links them to the 3D view and the plots.
+// Every part listens for "structviz:pick" and marks its own; none knows of another.
+
+const $ = (selector, within = document) => within.querySelector(selector);
+const $$ = (selector, within = document) => [...within.querySelectorAll(selector)];
+const list = $("#fault-list");
+const record = $("#record");
+const start = record.firstElementChild;
+const buttons = $$("button.fault", list);
+let picked = null;
+
+const tell = (name, detail) => document.dispatchEvent(new CustomEvent(`structviz:${name}`, { detail }));
+const pick = (fault, from) => tell("pick", { fault, from });
+const shown = () => buttons.filter((button) => !button.closest("[hidden]"));
+
+// --- the record -----------------------------------------------------------------------------
+
+function fill(fault) {
+  const card = fault === null ? null : document.getElementById(`fault-${fault}`);
+  const copy = card ? card.cloneNode(true) : start;
+  copy.removeAttribute("id");
+  copy.removeAttribute("data-fault");
+  record.replaceChildren(copy);
+  record.scrollTop = 0;
+  $("#local").textContent = "";
+}
+
+function mark(fault) {
+  for (const element of $$(".picked")) element.classList.remove("picked");
+  for (const button of buttons) button.removeAttribute("aria-current");
+  if (fault === null) return;
+  for (const element of $$(`[data-fault="${fault}"]`)) element.classList.add("picked");
+  const row = buttons.find((button) => Number(button.dataset.fault) === fault);
+  if (!row) return;
+  row.setAttribute("aria-current", "true");
+  stop(row);
+  if (!row.closest("[hidden]")) keepInView(row);
+}
+
+// Scrolls the list alone: scrollIntoView would move the page as well.
+function keepInView(row) {
+  const box = list.getBoundingClientRect();
+  const place = row.getBoundingClientRect();
+  if (place.top < box.top + 34) list.scrollTop += place.top - box.top - 34;
+  else if (place.bottom > box.bottom) list.scrollTop += place.bottom - box.bottom;
+}
+
+document.addEventListener("structviz:pick", ({ detail }) => {
+  const fault = Number.isInteger(detail?.fault) ? detail.fault : null;
+  if (fault !== picked) fill(fault);
+  picked = fault;
+  mark(fault);
+});
+
+document.addEventListener("structviz:hover", ({ detail }) => {
+  const fault = detail?.fault ?? null;
+  for (const element of $$(".hovered")) element.classList.remove("hovered");
+  if (fault !== null) for (const element of $$(`[data-fault="${fault}"]`)) element.classList.add("hovered");
+  $("#local").textContent = fault === null || !detail.values ? "" : `Under the cursor: ${worded(detail.values)}`;
+});
+
+const worded = (values) =>
+  typeof values === "string"
+    ? values
+    : Object.entries(values).map(([key, value]) => `${key} ${typeof value === "number" ? Math.round(value * 100) / 100 : value}`).join(", ");
+
+// --- the list -------------------------------------------------------------------------------
+
+function stop(row) {
+  for (const button of buttons) button.tabIndex = button === row ? 0 : -1;
+}
+
+list.addEventListener("click", (event) => {
+  const row = event.target.closest("button.fault");
+  if (row) return pick(Number(row.dataset.fault) === picked ? null : Number(row.dataset.fault), "list");
+  const hide = event.target.closest("button.hide");
+  if (hide) showGroup(hide, hide.getAttribute("aria-pressed") === "true");
+});
+
+function showGroup(hide, visible) {
+  hide.setAttribute("aria-pressed", String(!visible));
+  hide.textContent = visible ? "hide" : "show";
+  const group = hide.closest(".group");
+  group.classList.toggle("off", !visible);
+  tell("show", { faults: $$("button.fault", group).map((row) => Number(row.dataset.fault)), shown: visible });
+}
+
+const MOVES = { ArrowDown: 1, ArrowUp: -1, PageDown: 8, PageUp: -8, Home: -Infinity, End: Infinity };
+
+list.addEventListener("keydown", (event) => {
+  const row = event.target.closest("button.fault");
+  if (!row) return;
+  if (event.key === "Escape") return pick(null, "list");
+  if (!(event.key in MOVES)) return;
+  event.preventDefault();
+  const rows = shown();
+  const next = rows[Math.min(rows.length - 1, Math.max(0, rows.indexOf(row) + MOVES[event.key]))];
+  stop(next);
+  next.focus({ preventScroll: true });
+  keepInView(next);
+});
+
+const plain = (text) => text.toLocaleLowerCase().normalize("NFKD");
+const texts = buttons.map((button) => plain(`${button.textContent} ${button.closest(".group").dataset.word}`));
+
+$("#search").addEventListener("input", (event) => {
+  const words = plain(event.target.value).split(/\s+/).filter(Boolean);
+  buttons.forEach((button, k) => (button.parentElement.hidden = !words.every((word) => texts[k].includes(word))));
+  for (const group of $$(".group", list)) group.hidden = !$("li:not([hidden])", group);
+  $("#none-found").hidden = shown().length > 0;
+  const rows = shown();
+  if (rows.length) stop(rows.find((row) => row.hasAttribute("aria-current")) ?? rows[0]);
+});
+
+$("#search").addEventListener("keydown", (event) => {
+  if (event.key !== "ArrowDown" || !shown().length) return;
+  event.preventDefault();
+  shown()[0].focus();
+});
+
+// --- the plots and the argument -----------------------------------------------------------------
+
+document.addEventListener("click", async (event) => {
+  const copy = event.target.closest("button.copy");
+  if (copy) return copied(copy);
+  const inPlot = event.target.closest(".plot [data-fault], #every-fault [data-fault]");
+  if (inPlot) pick(Number(inPlot.dataset.fault), "plot");
+});
+
+document.addEventListener("pointerover", (event) => {
+  const fault = event.target.closest?.(".plot [data-fault], button.fault[data-fault]");
+  if (fault) tell("hover", { fault: Number(fault.dataset.fault), triangle: null, values: null });
+});
+document.addEventListener("pointerout", (event) => {
+  if (event.target.closest?.(".plot [data-fault], button.fault[data-fault]")) tell("hover", { fault: null, triangle: null, values: null });
+});
+
+async function copied(button) {
+  const text = button.parentElement.querySelector(".as-text").textContent;
+  try {
+    await navigator.clipboard.writeText(text);
+  } catch {
+    byHand(text);
+  }
+  button.textContent = "Copied";
+  setTimeout(() => (button.textContent = "Copy as text"), 1600);
+}
+
+// Where the browser keeps the clipboard from pages opened from disk.
+function byHand(text) {
+  const area = document.createElement("textarea");
+  area.value = text;
+  area.className = "off-screen";
+  document.body.append(area);
+  area.select();
+  document.execCommand("copy");
+  area.remove();
+}
+
+addEventListener("beforeprint", () => $$("details").forEach((each) => (each.open = true)));
+
+// --- where the 3D view is missing ---------------------------------------------------------------
+
+function without(why) {
+  document.documentElement.classList.remove("with-scene");
+  $("#why-no-scene").textContent = why;
+}
+
+function hasWebGL() {
+  try {
+    return Boolean(document.createElement("canvas").getContext("webgl2"));
+  } catch {
+    return false;
+  }
+}
+
+document.documentElement.classList.add("scripted");
+if (!$('script[data-part="viewer"]')) without("This page was made without the 3D view: here is the prepared picture. Everything else is complete.");
+else if (!hasWebGL()) without("The 3D view needs WebGL, which this browser does not offer: here is the prepared picture. Everything else is complete.");
+else document.documentElement.classList.add("with-scene");
+document.addEventListener("structviz:scene-failed", ({ detail }) => without(`The 3D view could not be started${detail?.why ? ` (${detail.why})` : ""}: here is the prepared picture. Everything else is complete.`));
+
+if (buttons.length) stop(buttons[0]);
