@@ -35,6 +35,7 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--out", metavar="DIR", help="write results.json, tables, annotated meshes and pictures into this folder")
     parser.add_argument("--json", action="store_true", help="print results.json instead of the summary")
     parser.add_argument("--no-pictures", action="store_true", help="leave the pictures out")
+    parser.add_argument("--no-page", action="store_true", help="leave report.html out")
     parser.add_argument("--allow-outside", action="store_true", help="let the model use files outside its own folder")
     parser.add_argument("--mechanisms", metavar="FILE", default="", help="compare with earthquake mechanisms (CSV, or QuakeML by ObsPy)")
     parser.add_argument("--well-azimuths", metavar="FILE", default="", help="compare with SHmax azimuths measured in wells (CSV)")
@@ -61,7 +62,7 @@ def run(args: argparse.Namespace) -> int:
         analysis = analyse(model, settings, limits=limits, progress=progress)
         written = None
         if args.out is not None:
-            written = write_outputs(analysis, args.out, pictures=not args.no_pictures, progress=progress)
+            written = write_outputs(analysis, args.out, pictures=not args.no_pictures, page=not args.no_page, progress=progress)
     _show(analysis, written, as_json=args.json)
     return 1 if analysis.conflicting else 0
 

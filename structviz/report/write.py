@@ -19,12 +19,14 @@ from pathlib import Path
 from structviz.analysis import Analysis, Progress
 from structviz.errors import OutputError
 from structviz.report.annotated import mesh_files, write_annotated
+from structviz.report.html import page_text
 from structviz.report.names import printable
 from structviz.report.results_json import results_text
 from structviz.report.tables import csv_text, fault_table, pair_table
 from structviz.views import render
 
 RESULTS = "results.json"
+PAGE = "report.html"
 LITTER = {".DS_Store", "Thumbs.db", "desktop.ini"}  # left by file browsers, missed by nobody
 
 
@@ -38,9 +40,9 @@ class Written:
 
 
 def write_outputs(
-    analysis: Analysis, folder: str | os.PathLike[str], *, pictures: bool = True, progress: Progress | None = None
+    analysis: Analysis, folder: str | os.PathLike[str], *, pictures: bool = True, page: bool = True, progress: Progress | None = None
 ) -> Written:
-    """Write results.json, the tables, an annotated mesh a fault and the pictures into a folder; return what was written.
+    """Write results.json, the page, the tables, an annotated mesh a fault and the pictures into a folder; return what was written.
 
     The folder is made, with the folders above it. It may exist if it is empty or holds only an earlier result, which is
     replaced once the new one is complete. Raises OutputError, with nothing changed, where it cannot be written or holds
@@ -48,7 +50,7 @@ def write_outputs(
     """
     target = checked_target(folder)
     with _complete_or_nothing(target) as new:
-        files, skipped = _fill(new, analysis, pictures, progress or (lambda text, done, total: None))
+        files, skipped = _fill(new, analysis, pictures, page, progress or (lambda text, done, total: None))
     return Written(target, files, skipped)
 
 
@@ -157,7 +159,7 @@ def _swap(new: Path, target: Path) -> None:
         shutil.rmtree(old, ignore_errors=True)
 
 
-def _fill(new: Path, analysis: Analysis, pictures: bool, tell: Progress) -> tuple[tuple[str, ...], tuple[str, ...]]:
+def _fill(new: Path, analysis: Analysis, pictures: bool, page: bool, tell: Progress) -> tuple[tuple[str, ...], tuple[str, ...]]:
     """Write every file into a new folder; return their names, relative to it, and why pictures are missing."""
     meshes = mesh_files(analysis)
     (new / "faults").mkdir()
@@ -166,7 +168,10 @@ def _fill(new: Path, analysis: Analysis, pictures: bool, tell: Progress) -> tupl
         write_annotated(result, analysis.regimes[result.phase] if analysis.regimes else None, new / meshes[result.fault.name])
     _write_text(new / "faults.csv", csv_text(fault_table(analysis)))
     _write_text(new / "pairs.csv", csv_text(pair_table(analysis)))
-    skipped = render(analysis, new, progress=tell)[1] if pictures else ()
+    drawn, skipped = render(analysis, new, progress=tell) if pictures else ((), ())
+    if page:
+        tell("writing the page", 0, 1)
+        _write_text(new / PAGE, page_text(analysis, pictures={name: (new / name).read_bytes() for name in drawn}))
     files = (RESULTS, *sorted(_all_files(new), key=lambda name: ("/" in name, name)))
     _write_text(new / RESULTS, results_text(analysis, meshes=meshes, outputs=files))
     return files, tuple(skipped)

@@ -198,4 +198,4 @@ def test_a_link_to_a_folder_stays_a_link(no_stress: Analysis, tmp_path: Path) ->
 def test_progress_counts_the_meshes(no_stress: Analysis, tmp_path: Path) -> None:
     told: list[tuple[str, int, int]] = []
     write_outputs(no_stress, tmp_path / "out", pictures=False, progress=lambda *step: told.append(step))
-    assert told == [("writing meshes", 0, 2), ("writing meshes", 1, 2)]
+    assert told == [("writing meshes", 0, 2), ("writing meshes", 1, 2), ("writing the page", 0, 1)]
