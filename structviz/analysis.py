@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,12 +17,12 @@ from structviz.kinematics.senses import Sector
 from structviz.model import Fault, FaultModel, Finding
 from structviz.settings import Settings
 from structviz.stress.answer import Answer, answer, in_order, is_tight, judge_in_phases
+from structviz.stress.by_place import ByPlace, by_place
+from structviz.stress.by_place import in_order as place_in_order
 from structviz.stress.causes import causes_of
 from structviz.stress.compare import Comparison
 from structviz.stress.conjugate import Pairs
-from structviz.stress.domains import Domains, find_domains
 from structviz.stress.evidence import EvidenceModel, FaultEvidence
-from structviz.stress.field import Bandwidth, FieldSummary, LocalData, choose_bandwidth, field_summary, local_data
 from structviz.stress.joint import Terms, infer
 from structviz.stress.readings import pair_frames, regime_of_frames, shape_ratio_of
 from structviz.stress.regime import Reading, Regime
@@ -41,7 +41,6 @@ CAUTIONS = (
     "Directions only: the shape ratio R is reported where the data resolve it, stress magnitudes never are.",
 )
 PAIR_REPLICATES = 200
-FEWEST_BY_PLACE = 12  # faults; of fewer, where each lies tells nothing
 
 
 @dataclass(frozen=True, eq=False)
@@ -55,16 +54,6 @@ class FaultResult:
     sector: Sector | None = None  # the declaration as it could be tested on this surface; None where it could not
     phase: int = 0  # row of Analysis.regimes by which it is judged
     membership: tuple[float, ...] = ()  # probability of each phase, where there are several
-
-
-@dataclass(frozen=True, eq=False)
-class ByPlace:
-    """How the stress changes with place."""
-
-    data: LocalData  # what each fault says, and where
-    bandwidth: Bandwidth  # infinite where one stress serves the whole model
-    turn: FieldSummary | None  # by how much it turns; None where it does not
-    domains: Domains | None  # parts of the model with a stress of their own, where it turns
 
 
 @dataclass(frozen=True, eq=False)
@@ -107,8 +96,7 @@ def run(
     tell("inferring stress", 0, 1)
     evidence, told = with_earthquakes(evidence_of(examined, model.striae, subjects, geometric), model, settings)
     counts = bootstrap_counts(len(evidence), settings.replicates, settings.random_state)
-    readings, found = _read(evidence, geometric, pairs, counts, [fault.phase for fault in examined.faults], settings)
-    place = _place(examined, evidence, found)
+    readings, place, found = _read(examined, evidence, geometric, pairs, counts, settings)
     verdicts = _judge_all(examined, found, settings, tell)
     back = np.argsort(order)
     found = in_order(found, np.append(back, np.arange(len(back), len(evidence)))) if found else None
@@ -136,33 +124,15 @@ def run(
         used,
         found,
         compared,
-        _in_model_order(place, back),
+        place_in_order(place, back) if place else None,
     )
-
-
-def _place(examined: Examination, evidence: FaultEvidence, found: Answer | None) -> ByPlace | None:
-    """Return how the stress changes with place, faults in canonical order; None where there is no one stress to change."""
-    faults = len(examined.faults)
-    if found is None or found.single.loose or len(found.regimes) != 1 or faults < FEWEST_BY_PLACE:
-        return None
-    places = np.stack([stations.places.mean(0) for stations in examined.stations])
-    data = local_data(evidence.part(slice(0, faults)), places, found.single.frame, found.single.odds)
-    chosen = choose_bandwidth(data)
-    turns = np.isfinite(chosen.radius_m)
-    return ByPlace(data, chosen, field_summary(data, chosen), find_domains(data) if turns else None)
-
-
-def _in_model_order(place: ByPlace | None, back: NDArray[np.int64]) -> ByPlace | None:
-    if place is None:
-        return None
-    data = replace(place.data, places=place.data.places[back], logs=place.data.logs[back])
-    domains = replace(place.domains, membership=place.domains.membership[back]) if place.domains else None
-    return replace(place, data=data, domains=domains)
 
 
 def _result(examined: Examination, found: Answer | None, verdict: Verdict, i: int, place: int) -> FaultResult:
     several = found is not None and len(found.regimes) > 1
     phase, membership = (int(found.homes[place]), tuple(map(float, found.phases.membership[place]))) if found and several else (0, ())
+    if found and found.by == "place":
+        membership = ()
     return FaultResult(examined.faults[i], examined.measured[i], examined.stations[i], verdict, examined.sectors[i], phase, membership)
 
 
@@ -174,9 +144,9 @@ def _renumber(pairs: Pairs, order: NDArray[np.int64]) -> Pairs:
 
 
 def _read(
-    evidence: FaultEvidence, geometric: Pairs, pairs: Pairs, counts: NDArray[np.int64], phases: Sequence[str], settings: Settings
-) -> tuple[tuple[Reading, ...], Answer | None]:
-    """Return the three readings of the evidence and the joint one, and the answer that the verdicts follow."""
+    examined: Examination, evidence: FaultEvidence, geometric: Pairs, pairs: Pairs, counts: NDArray[np.int64], settings: Settings
+) -> tuple[tuple[Reading, ...], ByPlace | None, Answer | None]:
+    """Return the three readings of the evidence and the joint one, how it changes with place, and the answer that the verdicts follow."""
     odds = EvidenceModel(friction_angle_deg=settings.friction_angle_deg)
     some = counts[:PAIR_REPLICATES]
     readings = [
@@ -193,11 +163,16 @@ def _read(
         )
     )
     speaking = int((evidence.declared | evidence.measured | (evidence.partnered > 0)).sum())
-    events = [""] * (len(evidence) - len(phases))
-    found = answer(evidence, odds, counts, [*phases, *events], settings.random_state, events=len(events)) if speaking >= 2 else None
-    joint, why_not = found.single if found else None, "no admissible pair and fewer than two declared movements"
+    joint = infer(evidence, odds, Terms(), counts) if speaking >= 2 else None
+    why_not = "no admissible pair and fewer than two declared movements"
     readings.append(_posterior_reading("joint", "all evidence together", joint, speaking, why_not))
-    return tuple(readings), found
+    if joint is None:
+        return tuple(readings), None, None
+    faults = len(examined.faults)
+    place = by_place(evidence.part(slice(0, faults)), np.stack([s.places.mean(0) for s in examined.stations]), joint)
+    phases = [fault.phase for fault in examined.faults] + [""] * (len(evidence) - faults)
+    found = answer(evidence, odds, joint, phases, settings.random_state, faults=faults, place=place)
+    return tuple(readings), place, found
 
 
 def _pair_reading(key: str, title: str, pairs: Pairs, counts: NDArray[np.int64], why_not: str) -> Reading:

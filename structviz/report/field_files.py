@@ -10,7 +10,9 @@ from numpy.typing import NDArray
 
 from structviz.errors import ArgumentError
 from structviz.io.formats.vtk_xml import appended
-from structviz.stress.field import StressField
+from structviz.stress.by_place import ByPlace
+from structviz.stress.field import StressField, stress_field
+from structviz.stress.trajectories import azimuths_on_grid, shmax_trajectories
 
 Floats = NDArray[np.float64]
 
@@ -97,3 +99,20 @@ def _file(kind: str, head: str, body: str, blocks: list[bytes]) -> bytes:
     opening = f'<?xml version="1.0"?>\n<VTKFile type="{kind}" version="1.0" byte_order="LittleEndian" header_type="UInt64">\n'
     text = f'{opening}<{kind}{" " if head else ""}{head}>\n{body}</{kind}>\n<AppendedData encoding="raw">\n_'
     return b"".join([text.encode(), *blocks, b"\n</AppendedData>\n</VTKFile>\n"])
+
+
+def field_outputs(place: ByPlace) -> dict[str, bytes]:
+    """Return field.vti, the stress on a grid about the faults, and trajectories.vtp, lines of SHmax at their middle depth, by name.
+
+    Where one stress serves the whole model the field is made with the longest bandwidth that was tried, so that it still ends
+    where the faults do.
+    """
+    chosen = place.bandwidth
+    radius = chosen.radius_m if np.isfinite(chosen.radius_m) else float(chosen.candidates_m[-2])
+    grid = grid_about(place.data.places)
+    east, north, _ = grid.origin
+    level = Grid((east, north, float(place.data.places[:, 2].mean())), grid.spacing, (*grid.size[:2], 1))
+    flat = stress_field(place.data, level.points(), radius)
+    azimuths = azimuths_on_grid((east, north), grid.spacing[0], flat.shmax_deg.reshape(grid.size[1], grid.size[0]))
+    lines = shmax_trajectories(azimuths, level.points()[flat.supported], grid.spacing[0] / 4, 1.5 * grid.spacing[0])
+    return {"field.vti": grid_file(stress_field(place.data, grid.points(), radius), grid), "trajectories.vtp": trajectories_file(lines)}

@@ -11,7 +11,7 @@ from typing import Any
 
 import numpy as np
 
-from structviz.analysis import Analysis, FaultResult
+from structviz.analysis import Analysis, ByPlace, FaultResult
 from structviz.kinematics.senses import Sector, describe_rake
 from structviz.model import FaultModel, Finding
 from structviz.orientation.lines import trend_plunge_deg
@@ -47,6 +47,7 @@ def results(analysis: Analysis, *, meshes: Mapping[str, str] | None = None, outp
         "faults": [_fault(result, (meshes or {}).get(result.fault.name)) for result in analysis.faults],
         "pairs": _pairs(analysis),
         "regimes": [_regime(regime) for regime in analysis.regimes],
+        "by_place": _by_place(analysis.by_place),
         "readings": [_reading(reading) for reading in analysis.readings],
         "comparisons": [_comparison(each) for each in analysis.comparisons],
         "findings": [_finding(finding) for finding in analysis.findings],
@@ -198,6 +199,22 @@ def _reading(reading: Reading) -> Row:
         "regime": None if reading.regime is None else _regime(reading.regime),
         "why_not": reading.why_not or None,
     }
+
+
+def _by_place(place: ByPlace | None) -> Row | None:
+    if place is None:
+        return None
+    turn, domains = place.turn, place.domains
+    found = {
+        "bandwidth_m": rounded(place.bandwidth.radius_m, 0),
+        "gain_nats": rounded(place.bandwidth.gain, 2),
+        "turn_deg": rounded(turn.turn_deg, 1) if turn else None,
+    }
+    if domains is None or domains.count < 2:
+        return {**found, "domains": []}
+    told = zip(domains.frames, domains.middles, np.bincount(domains.membership, minlength=domains.count))
+    rows = [{**_axes(axes), "middle": [rounded(v, 0) for v in middle], "faults": int(count)} for axes, middle, count in told]
+    return {**found, "domains": rows, "domain_of_fault": [int(k) for k in domains.membership]}
 
 
 def _comparison(each: Comparison) -> Row:

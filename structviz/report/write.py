@@ -19,6 +19,7 @@ from pathlib import Path
 from structviz.analysis import Analysis, Progress
 from structviz.errors import OutputError
 from structviz.report.annotated import mesh_files, write_annotated
+from structviz.report.field_files import field_outputs
 from structviz.report.html import page_text
 from structviz.report.names import printable
 from structviz.report.results_json import results_text
@@ -40,17 +41,23 @@ class Written:
 
 
 def write_outputs(
-    analysis: Analysis, folder: str | os.PathLike[str], *, pictures: bool = True, page: bool = True, progress: Progress | None = None
+    analysis: Analysis,
+    folder: str | os.PathLike[str],
+    *,
+    pictures: bool = True,
+    page: bool = True,
+    field: bool = False,
+    progress: Progress | None = None,
 ) -> Written:
     """Write results.json, the page, the tables, an annotated mesh a fault and the pictures into a folder; return what was written.
 
     The folder is made, with the folders above it. It may exist if it is empty or holds only an earlier result, which is
-    replaced once the new one is complete. Raises OutputError, with nothing changed, where it cannot be written or holds
-    other files.
+    replaced once the new one is complete. `field` adds field.vti and trajectories.vtp. Raises OutputError, with nothing
+    changed, where it cannot be written or holds other files.
     """
     target = checked_target(folder)
     with _complete_or_nothing(target) as new:
-        files, skipped = _fill(new, analysis, pictures, page, progress or (lambda text, done, total: None))
+        files, skipped = _fill(new, analysis, pictures, page, field, progress or (lambda text, done, total: None))
     return Written(target, files, skipped)
 
 
@@ -159,7 +166,9 @@ def _swap(new: Path, target: Path) -> None:
         shutil.rmtree(old, ignore_errors=True)
 
 
-def _fill(new: Path, analysis: Analysis, pictures: bool, page: bool, tell: Progress) -> tuple[tuple[str, ...], tuple[str, ...]]:
+def _fill(
+    new: Path, analysis: Analysis, pictures: bool, page: bool, field: bool, tell: Progress
+) -> tuple[tuple[str, ...], tuple[str, ...]]:
     """Write every file into a new folder; return their names, relative to it, and why pictures are missing."""
     meshes = mesh_files(analysis)
     (new / "faults").mkdir()
@@ -169,12 +178,24 @@ def _fill(new: Path, analysis: Analysis, pictures: bool, page: bool, tell: Progr
     _write_text(new / "faults.csv", csv_text(fault_table(analysis)))
     _write_text(new / "pairs.csv", csv_text(pair_table(analysis)))
     drawn, skipped = render(analysis, new, progress=tell) if pictures else ((), ())
+    if field:
+        skipped = (*skipped, *_write_field(analysis, new, tell))
     if page:
         tell("writing the page", 0, 1)
         _write_text(new / PAGE, page_text(analysis, pictures={name: (new / name).read_bytes() for name in drawn}))
     files = (RESULTS, *sorted(_all_files(new), key=lambda name: ("/" in name, name)))
     _write_text(new / RESULTS, results_text(analysis, meshes=meshes, outputs=files))
     return files, tuple(skipped)
+
+
+def _write_field(analysis: Analysis, new: Path, tell: Progress) -> tuple[str, ...]:
+    """Write the stress as a field; return why not, where there is none."""
+    if analysis.by_place is None:
+        return ("no field was written: it needs one stress, well determined, and a dozen faults",)
+    tell("writing the field", 0, 1)
+    for name, content in field_outputs(analysis.by_place).items():
+        (new / name).write_bytes(content)
+    return ()
 
 
 def _write_text(path: Path, text: str) -> None:

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from structviz.kinematics.senses import Sector
+from structviz.stress.by_place import ByPlace
 from structviz.stress.evidence import EvidenceModel, FaultEvidence
 from structviz.stress.joint import Terms, infer
 from structviz.stress.phases import Phases, find_phases
@@ -31,35 +32,57 @@ class Answer:
     posteriors: tuple[Posterior, ...]  # of each phase, with counts over all faults: those of other phases are never drawn
     regimes: tuple[Regime, ...]  # of each phase, most faults first; empty where the evidence is too loose to claim one
     homes: NDArray[np.int64]  # (F,) phase by which each fault is judged
+    by: str = "phase"  # "phase", or "place" where the parts of the model take the place of phases
 
 
 def answer(
     evidence: FaultEvidence,
     odds: EvidenceModel,
-    counts: NDArray[np.int64],
+    single: Posterior,
     declared_phases: Sequence[str],
     random_state: int,
     *,
-    events: int = 0,
+    faults: int,
+    place: ByPlace | None = None,
 ) -> Answer:
-    """Return the stress of the faults as one, and as so many phases as they call for.
+    """Return the stress of the faults as so many phases, or as so many parts of the model, as they call for.
 
-    counts are bootstrap draws, (B, F). The last `events` rows are earthquakes: heard like faults, but not counted as such. A fault
-    belongs to the phase it is declared to be of, where that phase was found; else to the likeliest one. The phases are then
-    inferred each from its own faults, so that leaving a fault out leaves it out of its phase.
+    single is the posterior of all of them. Rows after the first `faults` are earthquakes: heard like faults, but not counted as
+    such. A fault belongs to the phase it is declared to be of, where that phase was found; else to the likeliest one. The phases
+    are then inferred each from its own faults, so that leaving a fault out leaves it out of its phase. A stress that turns from place to
+    place looks like several phases too: whichever explains the faults better is followed.
     """
-    faults = len(evidence) - events
-    single = infer(evidence, odds, Terms(), counts)
     phases = find_phases(evidence, odds, declared_phases=declared_phases)
-    if phases.count > 1:
+    gain = (phases.criterion[0] - phases.criterion[phases.count - 1]) / 2
+    turning = place is not None and place.domains is not None and place.bandwidth.gain > gain and not any(declared_phases)
+    if place and place.domains and turning:
+        homes = np.concatenate([place.domains.membership, np.full(len(evidence) - faults, -1)])
+        one = find_phases(evidence, odds, declared_phases=declared_phases, most=1)
+        made = _inferred(evidence, odds, homes, faults, single, random_state)
+        if made:
+            return Answer(single, one, made[0], tuple(replace(r, name=f"part {k + 1}") for k, r in enumerate(made[1])), homes, "place")
+    elif phases.count > 1:
         homes = _homes(phases, declared_phases)
-        posteriors = tuple(_of_phase(evidence, odds, homes == k, len(counts), random_state + k) for k in range(phases.count))
-        regimes = tuple(_regime(p, float(s), int((homes[:faults] == k).sum())) for k, (p, s) in enumerate(zip(posteriors, phases.shares)))
-        if all(is_tight(regime) for regime in regimes):
-            return Answer(single, phases, posteriors, _named(regimes, phases), homes)
+        made = _inferred(evidence, odds, homes, faults, single, random_state)
+        if made:
+            return Answer(single, phases, made[0], _named(made[1], phases), homes)
+    if phases.count > 1:
         phases = find_phases(evidence, odds, declared_phases=declared_phases, most=1)
     regime = _regime(single, 1.0, faults)
     return Answer(single, phases, (single,), (regime,) if is_tight(regime) else (), np.zeros(len(evidence), np.int64))
+
+
+def _inferred(
+    evidence: FaultEvidence, odds: EvidenceModel, homes: NDArray[np.int64], faults: int, single: Posterior, random_state: int
+) -> tuple[tuple[Posterior, ...], tuple[Regime, ...]] | None:
+    """Return posterior and regime of each group of faults; None where there is but one, or one of them is too loose."""
+    count = int(homes.max()) + 1
+    if count < 2:
+        return None
+    posteriors = tuple(_of_group(evidence, odds, homes == k, len(single.counts), random_state + k) for k in range(count))
+    members = [int((homes[:faults] == k).sum()) for k in range(count)]
+    regimes = tuple(_regime(posterior, mine / faults, mine) for posterior, mine in zip(posteriors, members))
+    return (posteriors, regimes) if all(is_tight(regime) for regime in regimes) else None
 
 
 def in_order(found: Answer, rows: NDArray[np.int64]) -> Answer:
@@ -68,7 +91,7 @@ def in_order(found: Answer, rows: NDArray[np.int64]) -> Answer:
     against = tuple(replace(each, fault=int(place[each.fault])) for each in found.phases.contradictions)
     phases = replace(found.phases, membership=found.phases.membership[rows], terms=found.phases.terms[rows], contradictions=against)
     single, posteriors = _in_order(found.single, rows), tuple(_in_order(posterior, rows) for posterior in found.posteriors)
-    return Answer(single, phases, posteriors, found.regimes, found.homes[rows])
+    return Answer(single, phases, posteriors, found.regimes, found.homes[rows], found.by)
 
 
 def _in_order(posterior: Posterior, rows: NDArray[np.int64]) -> Posterior:
@@ -86,8 +109,8 @@ def _homes(phases: Phases, declared_phases: Sequence[str]) -> NDArray[np.int64]:
     return np.array([rows.get(name, int(found)) for name, found in zip(declared_phases, likeliest)], np.int64)
 
 
-def _of_phase(evidence: FaultEvidence, odds: EvidenceModel, mine: NDArray[np.bool_], replicates: int, random_state: int) -> Posterior:
-    """Return the posterior of the faults of one phase, its counts and terms spread over all faults."""
+def _of_group(evidence: FaultEvidence, odds: EvidenceModel, mine: NDArray[np.bool_], replicates: int, random_state: int) -> Posterior:
+    """Return the posterior of the faults of one group, its counts and terms spread over all faults."""
     rows = np.flatnonzero(mine)
     found = infer(evidence.part(rows), odds, Terms(), bootstrap_counts(len(rows), replicates, random_state))
     counts, terms = np.zeros((replicates, len(mine)), np.int64), np.zeros(len(mine))
@@ -117,7 +140,7 @@ def judge_in_phases(
     home = int(found.homes[fault])
     each = [judge(posterior, fault, normals, shares, sector, why_no_sector, limits) for posterior in found.posteriors]
     own, prediction = each[home]
-    if len(each) == 1 or sector is None or own.word == "undetermined":
+    if len(each) == 1 or found.by == "place" or sector is None or own.word == "undetermined":
         return own, prediction
     member = found.phases.membership[fault]
     told = [(k, verdict) for k, (verdict, _) in enumerate(each) if verdict.word in ("consistent", "conflicting")]

@@ -13,7 +13,8 @@ def regime_line(analysis: Analysis) -> str:
     if not analysis.regimes:
         return "No stress regime could be inferred"
     if len(analysis.regimes) > 1:
-        return f"{COUNTS.get(len(analysis.regimes), 'Several')} phases of faulting"
+        many = COUNTS.get(len(analysis.regimes), "Several")
+        return f"{many} parts, each under its stress" if analysis.answer and analysis.answer.by == "place" else f"{many} phases of faulting"
     regime = analysis.regimes[0]
     kind = "Undefined class of stress" if regime.kind == "undefined" else f"{regime.kind.capitalize()} faulting"
     return f"{kind}, SHmax {round(regime.shmax_deg) % 180:03d} \u00b1 {regime.shmax_half_width_deg:.0f}\u00b0"
