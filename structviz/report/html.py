@@ -20,7 +20,7 @@ from structviz.analysis import Analysis
 from structviz.report import page_words as words
 from structviz.report.markup import Markup, element, joined, plain
 from structviz.report.page_argument import argument
-from structviz.report.page_parts import answer, cards, fault_list, why_whole
+from structviz.report.page_parts import answer, cards, fault_list, plain_lines, why_whole
 from structviz.views import palette
 
 PICTURE_WIDTH = 1200  # pixels; enough for a page of A4 at 160 dots an inch
@@ -60,6 +60,24 @@ def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], live: str = 
         "scripts": "".join(_script(name, text) for name, text in scripts.items() if text),
     }
     return Template(_template("page.html")).substitute(slots)
+
+
+def live_script(version: str) -> str:
+    """Return the script of a page that is served, which asks whether there is a newer version than this one."""
+    return Template(_template("live.js")).substitute(version=version)
+
+
+def notice_page(title: str, text: str, *, live: str) -> str:
+    """Return a page that says one thing, and waits for the next."""
+    lines = element("p", plain_lines(text), class_="said lines")
+    slots = {
+        "policy": _policy([live], asks=True),
+        "title": plain(f"{title} – structviz"),
+        "style": _palette_css() + _template("page.css"),
+        "body": element("main", element("h1", title), lines, class_="notice"),
+        "scripts": _script("live", live),
+    }
+    return Template(_template("notice.html")).substitute(slots)
 
 
 def _optional(module: str, name: str) -> Callable[..., Any] | None:

@@ -82,7 +82,7 @@ def _comparisons(analysis: Analysis) -> Markup:
         text = "Nothing was given to compare with: neither azimuths from wells nor earthquakes. The answer rests on the faults alone."
         return joined(element("h3", "Measured apart from the faults"), element("p", text))
     rows = [
-        element("li", element("b", plain(each.title)), f" ({each.word}): ", plain(each.text), class_=f"compared {each.word}")
+        element("li", element("b", plain(each.title)), f" ({each.word}): ", plain(words.typeset(each.text)), class_=f"compared {each.word}")
         for each in analysis.comparisons
     ]
     return joined(element("h3", "Measured apart from the faults"), element("ul", rows))
@@ -137,17 +137,13 @@ def _found(title: str, findings: Sequence[Finding]) -> Markup:
 def _finding(severity: str, group: Sequence[Finding]) -> Markup:
     first = group[0]
     word = element("span", severity, class_=f"severity {severity}")
-    hint = element("em", plain(_sentence(first.hint))) if first.hint else ""
+    hint = element("em", plain(words.typeset(first.hint))) if first.hint else ""
     if first.subject == "model":
-        return element("li", word, " ", plain(_sentence(first.message)), " ", hint)
+        return element("li", word, " ", plain(words.typeset(first.message)), " ", hint)
     names = joined([joined(", " if place else "", given(finding.subject)) for place, finding in enumerate(group[:MOST_NAMES])])
     more = f" and {len(group) - MOST_NAMES:,} more" if len(group) > MOST_NAMES else ""
     title = CHECKS[first.check].title if first.check in CHECKS and len(group) > 1 else first.message
-    return element("li", word, " ", names, more, ": ", plain(_sentence(title)), " ", hint)
-
-
-def _sentence(text: str) -> str:
-    return f"{text[:1].upper()}{text[1:]}." if text and not text.endswith(".") else text
+    return element("li", word, " ", names, more, ": ", plain(words.typeset(title)), " ", hint)
 
 
 def _methods(analysis: Analysis) -> Markup:

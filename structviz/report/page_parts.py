@@ -48,12 +48,10 @@ def why_whole(analysis: Analysis) -> Markup:
     told = [finding for finding in analysis.findings if finding.check in ABOUT_WHOLE and finding.subject == "model"]
     if not told:
         return Markup("")
-    rows = [element("li", plain(_sentence(finding.message)), " ", element("em", plain(_sentence(finding.hint)))) for finding in told]
+    rows = [
+        element("li", plain(words.typeset(finding.message)), " ", element("em", plain(words.typeset(finding.hint)))) for finding in told
+    ]
     return element("ul", rows, class_="shared")
-
-
-def _sentence(text: str) -> str:
-    return f"{text[:1].upper()}{text[1:]}." if text and not text.endswith(".") else text
 
 
 def ordered(analysis: Analysis) -> list[tuple[int, FaultResult]]:
@@ -87,6 +85,8 @@ def _list_row(row: int, result: FaultResult) -> Markup:
     if verdict.conflict_probability is not None and verdict.word != "consistent":
         pieces.append(element("span", words.percent(verdict.conflict_probability), class_="chance"))
     pieces.append(element("span", _in_short(result), class_="short"))
+    if verdict.word != "consistent" and verdict.causes:
+        pieces.append(element("span", verdict.causes[0].key.replace("_", " "), class_="cause"))
     return element("li", element("button", pieces, type="button", class_="fault", data_fault=row, tabindex=-1))
 
 
@@ -95,8 +95,7 @@ def _in_short(result: FaultResult) -> str:
     said = words.declared(result)
     if verdict.word == "consistent":
         return said
-    cause = f": {verdict.causes[0].key.replace('_', ' ')}" if verdict.causes else ""
-    return f"{said}, predicted {words.predicted(result)}{cause}" if verdict.predicted_rake_deg is not None else said
+    return f"{said}, predicted {words.predicted(result)}" if verdict.predicted_rake_deg is not None else said
 
 
 def cards(analysis: Analysis, word: str) -> Markup:
@@ -152,7 +151,7 @@ def _membership(analysis: Analysis, result: FaultResult) -> Markup:
 def _reasons(result: FaultResult) -> Markup:
     if not result.verdict.reasons:
         return Markup("")
-    return element("p", plain(_sentence("; ".join(result.verdict.reasons))), class_="reasons")
+    return element("p", plain(words.typeset("; ".join(result.verdict.reasons))), class_="reasons")
 
 
 def _causes(result: FaultResult) -> Markup:
@@ -162,8 +161,8 @@ def _causes(result: FaultResult) -> Markup:
     rows = []
     for cause in result.verdict.causes:
         share = element("span", words.percent(cause.score), class_="chance")
-        step = element("p", element("b", "Next: "), plain(_sentence(cause.next_step)), class_="next") if cause.next_step else ""
-        rows.append(element("li", element("p", share, plain(_sentence(cause.text))), step))
+        step = element("p", element("b", "Next: "), plain(words.typeset(cause.next_step)), class_="next") if cause.next_step else ""
+        rows.append(element("li", element("p", share, plain(words.typeset(cause.text))), step))
     return element("ol", rows, class_="causes", aria_label="Possible causes")
 
 

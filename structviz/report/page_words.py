@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 
 from structviz.analysis import Analysis, FaultResult
@@ -15,6 +16,8 @@ WELL_DEG = 15.0  # widest cone of a regime that is called well determined
 LOOSE_DEG = 30.0  # a regime with a wider cone is called poorly determined
 WORDS = ("conflicting", "undetermined", "consistent")
 AXES = ("σ1", "σ2", "σ3")
+DEGREES = re.compile(r"(?<=\d) deg\b")
+MINUS = re.compile(r"(?<![\w.])-(?=\d)")
 
 
 def counted(number: int, one: str, many: str = "") -> str:
@@ -34,6 +37,16 @@ def listed(names: Sequence[str], most: int = 6) -> str:
     """
     shown = list(names) if len(names) <= most else [*names[:most], f"{len(names) - most} more"]
     return f"{', '.join(shown[:-1])} and {shown[-1]}" if len(shown) > 1 else "".join(shown)
+
+
+def typeset(text: str) -> str:
+    """Return a sentence of ours with signs in place of what the terminal spells out, a capital and a full stop.
+
+    >>> typeset("161 deg from the predicted slip (rake -157 +/- 35)")
+    '161° from the predicted slip (rake −157 ± 35).'
+    """
+    signs = DEGREES.sub("°", MINUS.sub("−", text.replace("+/-", "±")))
+    return f"{signs[:1].upper()}{signs[1:]}{'' if signs.endswith('.') else '.'}" if signs else ""
 
 
 def azimuth(degrees: float, turn: int = 360) -> str:
@@ -74,7 +87,7 @@ def ratio(regime: Regime) -> str:
     """Return the shape ratio with its interval, or that the data leave it open."""
     found = regime.shape_ratio
     if found is None:
-        return "not resolved; predictions cover all of it"
+        return "not resolved"
     return f"{found.value:.2f} ({found.low:.2f} to {found.high:.2f})"
 
 
@@ -137,7 +150,7 @@ def predicted(result: FaultResult) -> str:
 def predicted_rake(result: FaultResult) -> str:
     """Return the predicted rake with the half-width that holds 90 % of the predictions; "" where there is none."""
     rake, spread = result.verdict.predicted_rake_deg, result.verdict.predicted_rake_spread_deg
-    return "" if rake is None or spread is None else f"rake {rake:.0f} ± {spread:.0f}°"
+    return "" if rake is None or spread is None else f"rake {rake:.0f} ± {spread:.0f}°".replace("-", "−")
 
 
 def percent(share: float | None) -> str:

@@ -15,7 +15,7 @@ import jsonschema
 import pytest
 
 from structviz.analysis import Settings
-from structviz.cli.check import option
+from structviz.cli.choices import option
 from structviz.cli.main import entry
 from structviz.report.results_json import schema
 

@@ -7,6 +7,8 @@ const list = $("#fault-list");
 const record = $("#record");
 const start = record.firstElementChild;
 const buttons = $$("button.fault", list);
+const narrow = matchMedia("(max-width: 999px)");
+const calm = matchMedia("(prefers-reduced-motion: reduce)");
 let picked = null;
 
 const tell = (name, detail) => document.dispatchEvent(new CustomEvent(`structviz:${name}`, { detail }));
@@ -50,6 +52,7 @@ document.addEventListener("structviz:pick", ({ detail }) => {
   if (fault !== picked) fill(fault);
   picked = fault;
   mark(fault);
+  if (fault !== null && detail.from !== "scene" && narrow.matches) record.parentElement.scrollIntoView({ behavior: calm.matches ? "auto" : "smooth" });
 });
 
 document.addEventListener("structviz:hover", ({ detail }) => {
