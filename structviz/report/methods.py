@@ -23,6 +23,10 @@ def _stress(analysis: Analysis) -> bool:
     return bool(analysis.regimes)
 
 
+def _by_place(analysis: Analysis) -> bool:
+    return analysis.answer is not None and analysis.answer.by == "place"
+
+
 METHODS: tuple[Method, ...] = (
     Method(
         "Orientation",
@@ -59,7 +63,14 @@ METHODS: tuple[Method, ...] = (
         "Phases",
         "Whether more than one stress is called for is a mixture fitted by expectation and maximisation [dempster1977] and chosen by the "
         "Bayesian criterion [schwarz1978]. Each phase is then inferred anew from its own faults.",
-        lambda analysis: len(analysis.regimes) > 1,
+        lambda analysis: len(analysis.regimes) > 1 and not _by_place(analysis),
+    ),
+    Method(
+        "Stress by place",
+        "Whether the stress turns from one part of the model to another is asked with a local likelihood, its weights falling off with "
+        "distance [tukey1977]; the bandwidth is chosen by how well each fault is told by those near it. The model is cut into parts "
+        "where two stresses explain it better than one by the Bayesian criterion [schwarz1978].",
+        _by_place,
     ),
     Method(
         "Verdicts",

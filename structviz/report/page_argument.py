@@ -54,7 +54,7 @@ def _stress(analysis: Analysis) -> Markup:
 def _regime_line(analysis: Analysis, number: int) -> Iterator[Markup]:
     regime = analysis.regimes[number]
     yield plain(f"({number + 1}) ")
-    yield given(regime.name or f"phase {number + 1}")
+    yield given(words.regime_name(analysis, number))
     yield plain(f": {words.kind(regime)}, SHmax {words.shmax(regime)}, {words.sureness(regime)}, {words.counted(regime.faults, 'fault')}.")
 
 

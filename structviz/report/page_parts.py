@@ -36,7 +36,7 @@ def _measures(analysis: Analysis, number: int) -> Markup:
     regime = analysis.regimes[number]
     rows = [(element("i", name), where, cone) for name, where, cone in words.axes(regime)]
     several = len(analysis.regimes) > 1
-    name = joined(f"({number + 1}) ", given(regime.name or f"phase {number + 1}"), f", {words.counted(regime.faults, 'fault')}")
+    name = joined(f"({number + 1}) ", given(words.regime_name(analysis, number)), f", {words.counted(regime.faults, 'fault')}")
     caption = element("caption", name) if several else ""
     body = [element("tr", [element("td", cell) for cell in row]) for row in rows]
     last = element("tr", element("td", element("i", "R")), element("td", words.ratio(regime), colspan=2))
@@ -130,7 +130,7 @@ def _facts(analysis: Analysis, result: FaultResult) -> Markup:
     rows += [("plane", words.orientation(result)), ("area", words.area(result))]
     if verdict.slip_tendency is not None:
         rows.append(("slip tendency", f"{verdict.slip_tendency:.2f}"))
-    rows += [("phase", _membership(analysis, result))] if len(analysis.regimes) > 1 else []
+    rows += [(words.group(analysis), _membership(analysis, result))] if len(analysis.regimes) > 1 else []
     shown = [joined(element("dt", name), element("dd", value)) for name, value in rows]
     return element("dl", [element("div", each) for each in shown], class_="facts")
 

@@ -14,6 +14,7 @@ from structviz.stress.regime import Regime
 POINTS = ("N", "NNE", "NE", "ENE", "E", "ESE", "SE", "SSE", "S", "SSW", "SW", "WSW", "W", "WNW", "NW", "NNW")
 WELL_DEG = 15.0  # widest cone of a regime that is called well determined
 LOOSE_DEG = 30.0  # a regime with a wider cone is called poorly determined
+NUMBERS = {2: "Two", 3: "Three", 4: "Four"}
 WORDS = ("conflicting", "undetermined", "consistent")
 AXES = ("σ1", "σ2", "σ3")
 DEGREES = re.compile(r"(?<=\d) deg\b")
@@ -104,9 +105,13 @@ def headline(analysis: Analysis) -> str:
         return "No stress could be inferred"
     if len(found) == 1:
         return f"{kind(found[0]).capitalize()}, SHmax {azimuth(found[0].shmax_deg, 180)} ± {found[0].shmax_half_width_deg:.0f}°"
-    return (
-        f"{counted(len(found), 'phase')} of faulting: {listed([f'{each.kind}, SHmax {azimuth(each.shmax_deg, 180)}°' for each in found])}"
-    )
+    each = "; ".join(f"{regime.kind}, SHmax {azimuth(regime.shmax_deg, 180)}°" for regime in found)
+    return f"{NUMBERS.get(len(found), str(len(found)))} {group(analysis)}s, each under its own stress: {each}"
+
+
+def group(analysis: Analysis) -> str:
+    """Return what the regimes of an analysis are of: phases, or parts of the model where the stress turns with place."""
+    return "part" if analysis.answer and analysis.answer.by == "place" else "phase"
 
 
 def how_sure(analysis: Analysis) -> str:
@@ -114,12 +119,18 @@ def how_sure(analysis: Analysis) -> str:
     if not analysis.regimes:
         why = next((reading.why_not for reading in analysis.readings if reading.key == "joint" and reading.why_not), "")
         return f"{why[:1].upper()}{why[1:]}." if why else "The evidence does not carry one."
+    if len(analysis.regimes) > 1:
+        return " ".join(f"({k}) is {sureness(regime)}: cones of {cones(regime)}." for k, regime in enumerate(analysis.regimes, 1))
     first = analysis.regimes[0]
-    cones = sorted(first.cones_deg)
-    within = f"{cones[0]:.0f}°" if round(cones[0]) == round(cones[-1]) else f"{cones[0]:.0f} to {cones[-1]:.0f}°"
-    held = f"The axes are {sureness(first)}: 95 % cones of {within} from {counted(first.faults, 'fault')}."
+    held = f"The axes are {sureness(first)}: 95 % cones of {cones(first)} from {counted(first.faults, 'fault')}."
     open_ratio = "" if first.shape_ratio else " The shape ratio R is open, so every prediction covers all of it."
     return held + open_ratio
+
+
+def cones(regime: Regime) -> str:
+    """Return the range of the 95 % cones of a regime."""
+    low, high = round(min(regime.cones_deg)), round(max(regime.cones_deg))
+    return f"{low}°" if low == high else f"{low} to {high}°"
 
 
 def verdict_line(analysis: Analysis) -> str:
@@ -185,6 +196,15 @@ def severity(result: FaultResult) -> tuple[int, float, float, float, str]:
     return (WORDS.index(verdict.word), -round(probability, 2), -(verdict.misfit_deg or 0.0), -result.measured.area_m2, result.fault.name)
 
 
+def regime_name(analysis: Analysis, number: int) -> str:
+    """Return the name of a regime, as given or as phase 1, part 1."""
+    return analysis.regimes[number].name or f"{group(analysis)} {number + 1}"
+
+
+def _named(analysis: Analysis, number: int) -> str:
+    return f"{regime_name(analysis, number)}, " if len(analysis.regimes) > 1 else ""
+
+
 def card_text(result: FaultResult, analysis: Analysis) -> str:
     """Return one fault as plain text for a mail: what was declared, what the others predict, why, and what to do next."""
     verdict, name = result.verdict, printable(result.fault.name)
@@ -200,6 +220,6 @@ def card_text(result: FaultResult, analysis: Analysis) -> str:
         lines += [f"   Next: {cause.next_step}"] if cause.next_step else []
     if analysis.regimes:
         regime = analysis.regimes[result.phase]
-        lines.append(f"Stress of the faults: {kind(regime)}, SHmax {shmax(regime)}; R {ratio(regime)}")
+        lines.append(f"Stress of the faults: {_named(analysis, result.phase)}{kind(regime)}, SHmax {shmax(regime)}; R {ratio(regime)}")
     lines.append(f"structviz {analysis.version}: a screening aid, it tests geometry against declared movement.")
     return "\n".join(printable(line) for line in lines)
