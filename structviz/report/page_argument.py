@@ -90,7 +90,7 @@ def _comparisons(analysis: Analysis) -> Markup:
 
 def _conflicts(analysis: Analysis) -> Markup:
     if not analysis.conflicting:
-        return element("p", words.verdict_line(analysis))
+        return joined(element("p", words.verdict_line(analysis)), why_whole(analysis))
     intro = "One card a fault, worst first. Percentages before causes are their probabilities among all causes considered."
     return joined(
         element("p", words.verdict_line(analysis), " ", intro), why_whole(analysis), element("div", cards(analysis, "conflicting"))
