@@ -34,7 +34,12 @@ def known() -> Known:
 @pytest.fixture(scope="session")
 def model(known: Known) -> FaultModel:
     """Return the model with hostile names on its first faults and no declaration on the last."""
-    faults = list(known.model.faults)
+    return with_hostile_names(known.model)
+
+
+def with_hostile_names(model: FaultModel) -> FaultModel:
+    """Return a model with hostile names on its first faults and no declaration on the last."""
+    faults = list(model.faults)
     faults = [replace(fault, name=name) for name, fault in zip([*HOSTILE, *(f.name for f in faults[len(HOSTILE) :])], faults)]
     faults[-1] = Fault(faults[-1].name, faults[-1].surface)
     return FaultModel("[bold]hostile\x1b[0m", tuple(faults), crs="EPSG:25831", inputs=(InputFile("a.vtp", "0" * 64),))
