@@ -18,6 +18,7 @@ from structviz.io.independent import with_measurements
 from structviz.report.results_json import results_text
 from structviz.report.summary import show
 from structviz.report.write import RESULTS, Written, checked_target, write_outputs
+from structviz.scenarios import Sensitivity, sensitivity
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -29,6 +30,9 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--no-pictures", action="store_true", help="leave the pictures out")
     parser.add_argument("--no-page", action="store_true", help="leave report.html out")
     parser.add_argument("--field", action="store_true", help="write the stress as a field too: field.vti and trajectories.vtp")
+    parser.add_argument(
+        "--sensitivity", action="store_true", help="try other choices: which verdicts depend on them, what carries the stress"
+    )
     add_choices(parser)
 
 
@@ -41,21 +45,32 @@ def run(args: argparse.Namespace) -> int:
         model = read_model(args.path, allow_outside=args.allow_outside, progress=progress)
         model = with_measurements(model, args.mechanisms, args.well_azimuths)
         analysis = analyse(model, settings, limits=limits, progress=progress)
+        depends = sensitivity(analysis, progress) if args.sensitivity else None
         written = None
         if args.out is not None:
             written = write_outputs(
-                analysis, args.out, pictures=not args.no_pictures, page=not args.no_page, field=args.field, progress=progress
+                analysis,
+                args.out,
+                pictures=not args.no_pictures,
+                page=not args.no_page,
+                field=args.field,
+                depends=depends,
+                progress=progress,
             )
-    _show(analysis, written, as_json=args.json)
+    _show(analysis, written, depends, as_json=args.json)
     return 1 if analysis.conflicting else 0
 
 
-def _show(analysis: Analysis, written: Written | None, *, as_json: bool) -> None:
+def _show(analysis: Analysis, written: Written | None, depends: Sensitivity | None, *, as_json: bool) -> None:
     if as_json:
-        text = (written.folder / RESULTS).read_bytes() if written else results_text(analysis).encode("utf-8", "backslashreplace")
+        text = (
+            (written.folder / RESULTS).read_bytes()
+            if written
+            else results_text(analysis, depends=depends).encode("utf-8", "backslashreplace")
+        )
         sys.stdout.flush()
         sys.stdout.buffer.write(text)  # UTF-8 whatever the terminal speaks: it is meant for programs
         return
     from rich.console import Console
 
-    show(Console(highlight=False, markup=False, emoji=False, soft_wrap=False), analysis, written)
+    show(Console(highlight=False, markup=False, emoji=False, soft_wrap=False), analysis, written, depends)

@@ -21,6 +21,7 @@ from structviz.report import page_words as words
 from structviz.report.markup import Markup, element, joined, plain
 from structviz.report.page_argument import argument
 from structviz.report.page_parts import answer, cards, fault_list, plain_lines, why_whole
+from structviz.scenarios import Sensitivity
 from structviz.views import palette
 
 PICTURE_WIDTH = 1200  # pixels; enough for a page of A4 at 160 dots an inch
@@ -34,10 +35,11 @@ PLOTS = (
 )
 
 
-def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], live: str = "") -> str:
+def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], depends: Sensitivity | None = None, live: str = "") -> str:
     """Return report.html as text. `pictures` are PNG files by name, those of `views`; a page without them says so.
 
-    `live` is a script for pages that are served: it alone may ask, and only where the page came from.
+    `depends` is what the verdicts depend on, where that was asked. `live` is a script for pages that are served: it alone may ask,
+    and only where the page came from.
     """
     data, arrays = _scene_data(analysis)
     viewer = _optional("structviz.report.page_data", "viewer_script")
@@ -53,7 +55,7 @@ def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], live: str = 
         "scene_picture": _picture(pictures.get("scene.png"), "The faults in 3D, coloured by verdict, with the stress as glyphs"),
         "net": _plot(analysis, *PLOTS[0], instead=pictures.get("net.png")),
         "plots": joined([_plot(analysis, *each) for each in PLOTS[1:]]),
-        "argument": argument(analysis),
+        "argument": argument(analysis, depends),
         "records": cards(analysis, "consistent"),
         "data": _in_script(json.dumps(data, ensure_ascii=False, sort_keys=True, separators=(",", ":"), allow_nan=False)),
         "arrays": arrays,

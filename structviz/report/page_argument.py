@@ -14,6 +14,8 @@ from structviz.report import page_words as words
 from structviz.report.markup import Markup, element, given, joined, plain, table
 from structviz.report.methods import methods_of, pieces, short_source, sources_of
 from structviz.report.page_parts import cards, fault_table, measures, why_whole
+from structviz.report.page_sensitivity import sensitivity_part
+from structviz.scenarios import Sensitivity
 from structviz.stress.tensor import frame_angle_deg
 
 SEVERITIES = ("error", "warning", "note")
@@ -22,12 +24,13 @@ MOST_NAMES = 8
 MOST_CARDS = 40  # undetermined faults beyond these are told in the table alone
 
 
-def argument(analysis: Analysis) -> Markup:
+def argument(analysis: Analysis, depends: Sensitivity | None = None) -> Markup:
     """Return the sections of the argument in order, numbered."""
     sections = [
         ("stress", "The stress, and how sure it is", _stress(analysis)),
         ("conflicts", "The faults in conflict", _conflicts(analysis)),
         ("open", "The faults that cannot be told", _open(analysis)),
+        ("sensitivity", "What the answer depends on", sensitivity_part(analysis, depends)),
         ("read", "What was read, and what was noticed", _read(analysis)),
         ("every-fault", "Every fault", fault_table(analysis)),
         ("methods", "Methods and sources", _methods(analysis)),
@@ -139,11 +142,11 @@ def _finding(severity: str, group: Sequence[Finding]) -> Markup:
     word = element("span", severity, class_=f"severity {severity}")
     hint = element("em", plain(words.typeset(first.hint))) if first.hint else ""
     if first.subject == "model":
-        return element("li", word, " ", plain(words.typeset(first.message)), " ", hint)
+        return element("li", word, plain(words.typeset(first.message)), " ", hint)
     names = joined([joined(", " if place else "", given(finding.subject)) for place, finding in enumerate(group[:MOST_NAMES])])
     more = f" and {len(group) - MOST_NAMES:,} more" if len(group) > MOST_NAMES else ""
     title = CHECKS[first.check].title if first.check in CHECKS and len(group) > 1 else first.message
-    return element("li", word, " ", names, more, ": ", plain(words.typeset(title)), " ", hint)
+    return element("li", word, names, more, ": ", plain(words.typeset(title)), " ", hint)
 
 
 def _methods(analysis: Analysis) -> Markup:

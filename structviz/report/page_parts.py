@@ -122,7 +122,7 @@ def _facts(analysis: Analysis, result: FaultResult) -> Markup:
     verdict = result.verdict
     rows: list[tuple[str, str]] = [("declared", words.declared(result)), ("predicted", words.predicted(result))]
     if words.predicted_rake(result):
-        rows[-1] = ("predicted", f"{words.predicted(result)} ({words.predicted_rake(result)})")
+        rows.append(("predicted rake", words.predicted_rake(result)))
     if verdict.conflict_probability is not None:
         rows.append(("conflict", words.percent(verdict.conflict_probability)))
     if verdict.misfit_deg is not None:

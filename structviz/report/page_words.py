@@ -40,14 +40,19 @@ def listed(names: Sequence[str], most: int = 6) -> str:
     return f"{', '.join(shown[:-1])} and {shown[-1]}" if len(shown) > 1 else "".join(shown)
 
 
-def typeset(text: str) -> str:
-    """Return a sentence of ours with signs in place of what the terminal spells out, a capital and a full stop.
+def signs(text: str) -> str:
+    """Return words of ours with signs in place of what the terminal spells out.
 
-    >>> typeset("161 deg from the predicted slip (rake -157 +/- 35)")
-    '161° from the predicted slip (rake −157 ± 35).'
+    >>> signs("161 deg from the predicted slip (rake -157 +/- 35)")
+    '161° from the predicted slip (rake −157 ± 35)'
     """
-    signs = DEGREES.sub("°", MINUS.sub("−", text.replace("+/-", "±")))
-    return f"{signs[:1].upper()}{signs[1:]}{'' if signs.endswith('.') else '.'}" if signs else ""
+    return DEGREES.sub("°", MINUS.sub("−", text.replace("+/-", "±")))
+
+
+def typeset(text: str) -> str:
+    """Return words of ours as a sentence: with signs, a capital and a full stop."""
+    shown = signs(text)
+    return f"{shown[:1].upper()}{shown[1:]}{'' if shown.endswith('.') else '.'}" if shown else ""
 
 
 def azimuth(degrees: float, turn: int = 360) -> str:
@@ -161,7 +166,7 @@ def predicted(result: FaultResult) -> str:
 def predicted_rake(result: FaultResult) -> str:
     """Return the predicted rake with the half-width that holds 90 % of the predictions; "" where there is none."""
     rake, spread = result.verdict.predicted_rake_deg, result.verdict.predicted_rake_spread_deg
-    return "" if rake is None or spread is None else f"rake {rake:.0f} ± {spread:.0f}°".replace("-", "−")
+    return "" if rake is None or spread is None else f"{rake:.0f} ± {spread:.0f}°".replace("-", "−")
 
 
 def percent(share: float | None) -> str:
@@ -211,7 +216,8 @@ def card_text(result: FaultResult, analysis: Analysis) -> str:
     lines = [f"{name}: {verdict.word}", f"Model: {printable(analysis.model.title or 'untitled')}"]
     lines.append(f"Plane (strike/dip, 95 % cone): {orientation(result)}, {area(result)}")
     lines.append(f"Declared: {declared(result)}")
-    lines.append(f"Predicted by the other faults: {', '.join(filter(None, (predicted(result), predicted_rake(result))))}")
+    rake = f", rake {predicted_rake(result)}" if predicted_rake(result) else ""
+    lines.append(f"Predicted by the other faults: {predicted(result)}{rake}")
     if verdict.conflict_probability is not None and verdict.misfit_deg is not None:
         lines.append(f"Probability of conflict: {percent(verdict.conflict_probability)}; misfit {verdict.misfit_deg:.0f}°")
     lines += [f"Reason: {reason}" for reason in verdict.reasons[:1]]

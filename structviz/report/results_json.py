@@ -15,6 +15,7 @@ from structviz.analysis import Analysis, ByPlace, FaultResult
 from structviz.kinematics.senses import Sector, describe_rake
 from structviz.model import FaultModel, Finding
 from structviz.orientation.lines import trend_plunge_deg
+from structviz.scenarios import Sensitivity
 from structviz.stress.compare import Comparison
 from structviz.stress.regime import Reading, Regime
 from structviz.surfaces.surface import Floats
@@ -24,16 +25,21 @@ AXES = ("sigma1", "sigma2", "sigma3")
 Row = dict[str, Any]
 
 
-def results_text(analysis: Analysis, *, meshes: Mapping[str, str] | None = None, outputs: Sequence[str] = ()) -> str:
+def results_text(
+    analysis: Analysis, *, meshes: Mapping[str, str] | None = None, outputs: Sequence[str] = (), depends: Sensitivity | None = None
+) -> str:
     """Return results.json as text: metres and degrees, UTF-8, null where a number is not known.
 
-    `meshes` gives the annotated mesh of each fault by name; `outputs` the files written beside it.
+    `meshes` gives the annotated mesh of each fault by name; `outputs` the files written beside it; `depends` what the
+    verdicts depend on, where that was asked.
     """
-    whole = results(analysis, meshes=meshes, outputs=outputs)
+    whole = results(analysis, meshes=meshes, outputs=outputs, depends=depends)
     return "{\n" + ",\n".join(f"{_json(key)}: {_laid_out(value)}" for key, value in whole.items()) + "\n}\n"
 
 
-def results(analysis: Analysis, *, meshes: Mapping[str, str] | None = None, outputs: Sequence[str] = ()) -> Row:
+def results(
+    analysis: Analysis, *, meshes: Mapping[str, str] | None = None, outputs: Sequence[str] = (), depends: Sensitivity | None = None
+) -> Row:
     """Return the same as plain dicts and lists, in the order of the file."""
     words = [result.verdict.word for result in analysis.faults]
     return {
@@ -50,6 +56,7 @@ def results(analysis: Analysis, *, meshes: Mapping[str, str] | None = None, outp
         "by_place": _by_place(analysis.by_place),
         "readings": [_reading(reading) for reading in analysis.readings],
         "comparisons": [_comparison(each) for each in analysis.comparisons],
+        "sensitivity": _sensitivity(analysis, depends),
         "findings": [_finding(finding) for finding in analysis.findings],
         "outputs": list(outputs),
     }
@@ -215,6 +222,31 @@ def _by_place(place: ByPlace | None) -> Row | None:
     told = zip(domains.frames, domains.middles, np.bincount(domains.membership, minlength=domains.count))
     rows = [{**_axes(axes), "middle": [rounded(v, 0) for v in middle], "faults": int(count)} for axes, middle, count in told]
     return {**found, "domains": rows, "domain_of_fault": [int(k) for k in domains.membership]}
+
+
+def _sensitivity(analysis: Analysis, depends: Sensitivity | None) -> Row | None:
+    if depends is None:
+        return None
+    names = [result.fault.name for result in analysis.faults]
+    carried = []
+    for number, name in enumerate(names):
+        mine = depends.influence[analysis.faults[number].phase]
+        row = {"fault": name, "turn_deg": rounded(mine.turn_deg[number].max(), 2)}
+        carried.append(
+            {**row, "shmax_turn_deg": rounded(mine.shmax_turn_deg[number], 2), "support_nats": rounded(mine.support_nats[number], 2)}
+        )
+    runs = [
+        {
+            "key": each.key,
+            "text": each.text,
+            "class": each.kind or None,
+            "shmax_deg": azimuth(each.shmax_deg, 180.0),
+            "changed": {name: word for name, word in each.words.items() if word != depends.base.words.get(name, word)},
+        }
+        for each in depends.scenarios
+    ]
+    told = [{"fault": each.fault, "on": list(each.on), "text": each.text} for each in depends.dependences]
+    return {"scenarios": runs, "dependences": told, "influence": carried, "pair_influence_deg": [rounded(v, 3) for v in depends.pair_deg]}
 
 
 def _comparison(each: Comparison) -> Row:

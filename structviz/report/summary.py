@@ -16,7 +16,9 @@ from structviz.kinematics.senses import describe_rake
 from structviz.model import Finding
 from structviz.orientation.lines import trend_plunge_deg
 from structviz.report.names import printable
+from structviz.report.terminal import counted, grid, heading, line, middle_cut, row
 from structviz.report.write import Written
+from structviz.scenarios import TITLES, Sensitivity
 from structviz.stress.regime import Regime
 from structviz.stress.tensor import frame_angle_deg
 
@@ -45,93 +47,45 @@ COLOUR = {"conflicting": "bold red", "consistent": "green", "undetermined": "yel
 SHORT_CAUTION = "A screening aid: it tests geometry against declared movement, not stress magnitude, stability or hazard."
 
 
-def show(console: Console, analysis: Analysis, written: Written | None = None) -> None:
+def show(console: Console, analysis: Analysis, written: Written | None = None, depends: Sensitivity | None = None) -> None:
     """Print the summary of an analysis to a rich console, in about 40 lines or fewer."""
     with console.capture() as captured:
-        for block in blocks(analysis, written, console.width):
+        for block in blocks(analysis, written, console.width, depends):
             console.print(block)
     lines = captured.get().splitlines()
     console.file.write("\n".join(line.rstrip() for line in lines) + "\n")
 
 
-def blocks(analysis: Analysis, written: Written | None, width: int) -> Iterator[RenderableType]:
+def blocks(analysis: Analysis, written: Written | None, width: int, depends: Sensitivity | None = None) -> Iterator[RenderableType]:
     """Return the pieces of the summary in order."""
     yield from _head(analysis)
     yield from _readings(analysis)
     yield from _compared(analysis)
     yield from _conflicts(analysis, width)
     yield from _others(analysis)
+    yield from _depends(analysis, depends)
     yield from _findings(analysis, width)
-    yield _line(("", ""))
-    yield _line((SHORT_CAUTION, "dim italic"))
+    yield line(("", ""))
+    yield line((SHORT_CAUTION, "dim italic"))
     yield from _where(written)
-
-
-def middle_cut(name: str, most: int) -> str:
-    """Return a name with its middle left out where it is longer than `most`: names of one model differ towards the end.
-
-    >>> middle_cut("MJVA-CREC-EMRS-Emerson_fault-CFM5", 20)
-    'MJVA-…son_fault-CFM5'
-    """
-    clean = printable(name)
-    if len(clean) <= most:
-        return clean
-    head = (most - 1) // 4 + 1
-    return f"{clean[:head]}…{clean[len(clean) - (most - 1 - head) :]}"
-
-
-def _line(*pieces: tuple[str, str], indent: int = 0) -> RenderableType:
-    """Return a line of (text, style) pieces that wraps with a hanging indent."""
-    from rich.padding import Padding
-    from rich.text import Text
-
-    text = Text.assemble(*pieces, overflow="fold")
-    return Padding(text, (0, 0, 0, indent), expand=False) if indent else text
-
-
-def _heading(text: str, style: str = "bold") -> Iterator[RenderableType]:
-    yield _line(("", ""))
-    yield _line((text, style))
-
-
-def _grid(*sides: str) -> Table:
-    """Return a table without lines, indented by two, its columns aligned "left" or "right"; only the last one wraps."""
-    from rich.table import Table
-
-    table = Table.grid(padding=(0, 2, 0, 0))
-    table.add_column(width=0)
-    for number, side in enumerate(sides):
-        table.add_column(justify="right" if side == "right" else "left", overflow="fold", no_wrap=number < len(sides) - 1)
-    return table
-
-
-def _row(table: Table, *cells: str | tuple[str, str]) -> None:
-    from rich.text import Text
-
-    pairs = [(cell, "") if isinstance(cell, str) else cell for cell in cells]
-    table.add_row("", *(Text(text, style=style, overflow="ellipsis") for text, style in pairs))
-
-
-def _count(number: int, one: str) -> str:
-    return f"{number:,} {one}{'' if number == 1 else 's'}"
 
 
 def _head(analysis: Analysis) -> Iterator[RenderableType]:
     triangles = sum(len(result.measured.areas_m2) for result in analysis.faults)
     title = printable(analysis.model.title or "untitled", 60)
-    yield _line((title, "bold"), (f"  {_count(len(analysis.faults), 'fault')}, {_count(triangles, 'triangle')}", "dim"))
-    yield _line(("", ""))
+    yield line((title, "bold"), (f"  {counted(len(analysis.faults), 'fault')}, {counted(triangles, 'triangle')}", "dim"))
+    yield line(("", ""))
     if not analysis.regimes:
         why = next((f": {printable(reading.why_not)}" for reading in analysis.readings if reading.key == "joint" and reading.why_not), "")
-        yield _line(("No stress could be inferred", "bold yellow"), (f"{why}.", ""), indent=2)
+        yield line(("No stress could be inferred", "bold yellow"), (f"{why}.", ""), indent=2)
         return
     for regime in analysis.regimes:
-        share = f"   {printable(regime.name, 30)}, {_count(regime.faults, 'fault')}" if len(analysis.regimes) > 1 else ""
+        share = f"   {printable(regime.name, 30)}, {counted(regime.faults, 'fault')}" if len(analysis.regimes) > 1 else ""
         loose = "   poorly determined" if max(regime.cones_deg) > LOOSE_DEG else ""
         kind, azimuth = (f"{regime.kind.upper()} stress", "bold cyan"), (f"   SHmax {_shmax(regime)}", "bold")
-        yield _line(kind, azimuth, (loose, "bold yellow"), (share, "dim"), indent=2)
+        yield line(kind, azimuth, (loose, "bold yellow"), (share, "dim"), indent=2)
         yield _axes(regime)
-        yield _line((_ratio(regime), "dim"), indent=2)
+        yield line((_ratio(regime), "dim"), indent=2)
 
 
 def _shmax(regime: Regime) -> str:
@@ -144,7 +98,7 @@ def _shmax(regime: Regime) -> str:
 def _axes(regime: Regime) -> RenderableType:
     trends, plunges = trend_plunge_deg(regime.axes)
     shown = [f"sigma{k + 1} {round(float(trends[k])) % 360:03d}/{float(plunges[k]):02.0f} ± {regime.cones_deg[k]:.0f}°" for k in range(3)]
-    return _line(("   ".join(shown), ""), indent=2)
+    return line(("   ".join(shown), ""), indent=2)
 
 
 def _ratio(regime: Regime) -> str:
@@ -159,30 +113,30 @@ def _readings(analysis: Analysis) -> Iterator[RenderableType]:
     told = [reading for reading in analysis.readings if reading.key != "joint"]
     if not told:
         return
-    yield from _heading("Three readings of the evidence" if len(told) == 3 else "Readings of the evidence")
-    table = _grid("left", "left", "left", "right", "right")
+    yield from heading("Three readings of the evidence" if len(told) == 3 else "Readings of the evidence")
+    table = grid("left", "left", "left", "right", "right")
     for reading in told:
         if reading.regime is None:
             continue
         followed = analysis.regimes[0] if analysis.regimes else None
         apart = float(frame_angle_deg(reading.regime.axes, followed.axes)) if followed else None
         far = "bold yellow" if apart is not None and apart > FAR_DEG else ""
-        carried = _count(reading.count, "fault" if reading.key == "senses" else "pair")
+        carried = counted(reading.count, "fault" if reading.key == "senses" else "pair")
         off = "" if apart is None else f"{apart:.0f}° away"
-        _row(table, reading.title, reading.regime.kind, _shmax(reading.regime), carried, (off, far))
+        row(table, reading.title, reading.regime.kind, _shmax(reading.regime), carried, (off, far))
     yield table
     for reading in told:
         if reading.regime is None:
-            yield _line((f"{reading.title}: none; {printable(reading.why_not)}", "dim"), indent=2)
+            yield line((f"{reading.title}: none; {printable(reading.why_not)}", "dim"), indent=2)
 
 
 def _compared(analysis: Analysis) -> Iterator[RenderableType]:
     """Return what wells and earthquakes say of the stress."""
     if not analysis.comparisons:
         return
-    yield from _heading("Measured apart from the faults")
+    yield from heading("Measured apart from the faults")
     for each in analysis.comparisons:
-        yield _line((printable(each.text, 400), "bold yellow" if each.word == "differs" else ""), indent=2)
+        yield line((printable(each.text, 400), "bold yellow" if each.word == "differs" else ""), indent=2)
 
 
 def _conflicts(analysis: Analysis, width: int) -> Iterator[RenderableType]:
@@ -192,16 +146,16 @@ def _conflicts(analysis: Analysis, width: int) -> Iterator[RenderableType]:
     total = len(analysis.faults)
     judged = sum(result.verdict.word != "undetermined" for result in analysis.faults)
     if not judged:
-        yield from _heading("No fault could be judged", COLOUR["undetermined"])
+        yield from heading("No fault could be judged", COLOUR["undetermined"])
     elif not found:
-        yield from _heading(f"None of the {_count(judged, 'judged fault')} conflicts with the others", COLOUR["consistent"])
+        yield from heading(f"None of the {counted(judged, 'judged fault')} conflicts with the others", COLOUR["consistent"])
     else:
         verb = "conflicts" if len(found) == 1 else "conflict"
-        yield from _heading(f"{len(found)} of {_count(total, 'fault')} {verb} with the others", COLOUR["conflicting"])
+        yield from heading(f"{len(found)} of {counted(total, 'fault')} {verb} with the others", COLOUR["conflicting"])
         yield _conflict_table(found[:MOST_CONFLICTS], width)
         yield from _next_steps(found[:MOST_CONFLICTS])
     if len(found) > MOST_CONFLICTS:
-        yield _line((f"and {len(found) - MOST_CONFLICTS} more, in faults.csv and results.json", "dim"), indent=2)
+        yield line((f"and {len(found) - MOST_CONFLICTS} more, in faults.csv and results.json", "dim"), indent=2)
 
 
 def _conflict_table(found: Sequence[FaultResult], width: int) -> Table:
@@ -209,13 +163,13 @@ def _conflict_table(found: Sequence[FaultResult], width: int) -> Table:
     senses = [(_declared(result), _predicted(result)) for result in found]
     wide = sum(max(len(pair[k]) for pair in [*senses, ("declared", "predicted")]) for k in (0, 1))
     name = max(LEAST_NAME, width - wide - 36)
-    table = _grid("left", "left", "left", "right", "right", "left")
-    _row(table, *((text, "dim") for text in ("fault", "declared", "predicted", "prob.", "off", "likely cause")))
+    table = grid("left", "left", "left", "right", "right", "left")
+    row(table, *((text, "dim") for text in ("fault", "declared", "predicted", "prob.", "off", "likely cause")))
     for result, (declared, predicted) in zip(found, senses):
         verdict = result.verdict
         cause = verdict.causes[0].key.replace("_", " ") if verdict.causes else "none found"
         shown, sure = (middle_cut(result.fault.name, name), "bold"), f"{100 * (verdict.conflict_probability or 0):.0f} %"
-        _row(table, shown, declared, (predicted, "red"), sure, f"{verdict.misfit_deg or 0:.0f}°", cause)
+        row(table, shown, declared, (predicted, "red"), sure, f"{verdict.misfit_deg or 0:.0f}°", cause)
     return table
 
 
@@ -224,7 +178,7 @@ def _next_steps(found: Sequence[FaultResult]) -> Iterator[RenderableType]:
     first = [result.verdict.causes[0] for result in found if result.verdict.causes]
     steps = {cause.key: cause.next_step for cause in first if cause.next_step}
     for key, _ in Counter(cause.key for cause in first if cause.next_step).most_common(MOST_STEPS):
-        yield _line((f"{key.replace('_', ' ')}: ", "bold"), (steps[key], "dim"), indent=2)
+        yield line((f"{key.replace('_', ' ')}: ", "bold"), (steps[key], "dim"), indent=2)
 
 
 def _declared(result: FaultResult) -> str:
@@ -240,19 +194,39 @@ def _others(analysis: Analysis) -> Iterator[RenderableType]:
     """Return how many are consistent, and why the undetermined ones are."""
     words = Counter(result.verdict.word for result in analysis.faults)
     if words["consistent"]:
-        yield _line((f"{words['consistent']} consistent", COLOUR["consistent"]), (" with the others.", ""))
+        yield line((f"{words['consistent']} consistent", COLOUR["consistent"]), (" with the others.", ""))
     unknown = [result for result in analysis.faults if result.verdict.word == "undetermined"]
     if not unknown:
         return
-    yield _line((f"{words['undetermined']} undetermined", COLOUR["undetermined"]), (":", ""))
+    yield line((f"{words['undetermined']} undetermined", COLOUR["undetermined"]), (":", ""))
     ranked = _by_reason(unknown)
-    table = _grid("right", "left")
+    table = grid("right", "left")
     for reason, names in ranked[:MOST_ROWS]:
-        _row(table, str(len(names)), f"{reason}: {_listed(names)}" if len(names) < len(analysis.faults) else reason)
+        row(table, str(len(names)), f"{reason}: {_listed(names)}" if len(names) < len(analysis.faults) else reason)
     rest = sum(len(names) for _, names in ranked[MOST_ROWS:])
     if rest:
-        _row(table, str(rest), "for other reasons")
+        row(table, str(rest), "for other reasons")
     yield table
+
+
+def _depends(analysis: Analysis, depends: Sensitivity | None) -> Iterator[RenderableType]:
+    """Return what carries the stress, and which verdicts hang on a choice."""
+    if depends is None:
+        return
+    yield from heading("What carries the stress")
+    turns = depends.influence[0].turn_deg.max(1)
+    heavy = [int(k) for k in (-turns).argsort(kind="stable")[:3] if turns[k] > 0]
+    told = ", ".join(f"{middle_cut(analysis.faults[k].fault.name, 28)} ({turns[k]:.1f}°)" for k in heavy)
+    yield line((f"the axes turn most without {told}" if told else "no single fault turns it", ""), indent=2)
+    yield from heading("What the verdicts depend on")
+    if not depends.dependences:
+        yield line(("no verdict changes with friction angle, R, scale or the fault that carries most", ""), indent=2)
+    for key, title in TITLES.items():
+        names = [each.fault for each in depends.dependences if key in each.on]
+        if names:
+            tried = [each for each in depends.scenarios if each.key == key]
+            at = ", ".join(each.text for each in tried if any(each.words.get(n) != depends.base.words[n] for n in names))
+            yield line((f"on {title} ({printable(at, 80)}): ", "yellow"), (_listed(names, 5), ""), indent=2)
 
 
 def _by_reason(results: Iterable[FaultResult]) -> list[tuple[str, list[str]]]:
@@ -292,19 +266,21 @@ def _findings(analysis: Analysis, width: int) -> Iterator[RenderableType]:
     rest = list(_by_check(finding for finding in told if finding.subject != "model"))
     if not told:
         return
-    yield from _heading("Findings")
-    table = _grid("left", "left")
+    yield from heading("Findings")
+    table = grid("left", "left")
     lines = 3 if len(whole) <= 2 else 2
     for finding in whole[:MOST_ROWS]:
-        _row(table, MARKS[finding.severity], _cut(printable(finding.message), lines * (width - 9)))
+        row(table, MARKS[finding.severity], _cut(printable(finding.message), lines * (width - 9)))
     for severity, text in rest[:MOST_ROWS]:
-        _row(table, MARKS[severity], text)
+        row(table, MARKS[severity], text)
     left = max(0, len(whole) - MOST_ROWS) + max(0, len(rest) - MOST_ROWS)
     more = [
-        text for text in (_count(left, "more kind") if left else "", _count(len(notes), "note") + " on the model" if notes else "") if text
+        text
+        for text in (counted(left, "more kind") if left else "", counted(len(notes), "note") + " on the model" if notes else "")
+        if text
     ]
     if more:
-        _row(table, MARKS["note"], (f"{' and '.join(more)}, in results.json", "dim"))
+        row(table, MARKS["note"], (f"{' and '.join(more)}, in results.json", "dim"))
     yield table
 
 
@@ -326,16 +302,16 @@ def _by_check(findings: Iterable[Finding]) -> Iterator[_Group]:
     order = list(MARKS)
     for (severity, key), names in sorted(groups.items(), key=lambda item: (order.index(item[0][0]), -len(item[1]), item[0][1])):
         title = CHECKS[key].title if key in CHECKS else "while reading"
-        yield _Group(severity, f"{title}: {_listed(names, 2) if len(names) < 3 else _count(len(names), 'fault')}")
+        yield _Group(severity, f"{title}: {_listed(names, 2) if len(names) < 3 else counted(len(names), 'fault')}")
 
 
 def _where(written: Written | None) -> Iterator[RenderableType]:
     if written is None:
-        yield _line(("Nothing was written: add --out DIR for tables, annotated meshes and pictures.", "dim"))
+        yield line(("Nothing was written: add --out DIR for tables, annotated meshes and pictures.", "dim"))
         return
     meshes = sum(name.startswith("faults/") for name in written.files)
     plain = [name for name in written.files if not name.startswith("faults/")]
     inside = f"{', '.join(plain)}, and {meshes:,} mesh{'' if meshes == 1 else 'es'} in faults/"
-    yield _line(("Written to ", ""), (printable(str(written.folder)), "bold"), (f": {inside}", ""))
+    yield line(("Written to ", ""), (printable(str(written.folder)), "bold"), (f": {inside}", ""))
     for reason in written.skipped:
-        yield _line((printable(reason), "yellow"))
+        yield line((printable(reason), "yellow"))

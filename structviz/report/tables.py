@@ -20,6 +20,7 @@ from structviz.errors import StructvizError
 from structviz.kinematics.senses import describe_rake
 from structviz.orientation.lines import trend_plunge_deg
 from structviz.report.results_json import azimuth, rake, rounded
+from structviz.scenarios import Sensitivity
 
 if TYPE_CHECKING:
     import pandas
@@ -117,3 +118,14 @@ def _cells(column: NDArray) -> list:
     if column.dtype.kind == "U":
         return [f"'{text}" if text.startswith(FORMULA_STARTS) else text for text in values]
     return ["" if math.isnan(value) else value for value in values] if column.dtype.kind == "f" else values
+
+
+def sensitivity_table(depends: Sensitivity) -> Table:
+    """Return one row a fault: its verdict as chosen and under every other choice, and on which choices it depends."""
+    names = list(depends.base.words)
+    on = {each.fault: " ".join(each.on) for each in depends.dependences}
+    columns: Table = {"name": np.array(names, object), "as chosen": np.array(list(depends.base.words.values()), object)}
+    for each in depends.scenarios:
+        columns[each.text] = np.array([each.words.get(name, "") for name in names], object)
+    columns["depends on"] = np.array([on.get(name, "") for name in names], object)
+    return columns

@@ -23,7 +23,8 @@ from structviz.report.field_files import field_outputs
 from structviz.report.html import page_text
 from structviz.report.names import printable
 from structviz.report.results_json import results_text
-from structviz.report.tables import csv_text, fault_table, pair_table
+from structviz.report.tables import csv_text, fault_table, pair_table, sensitivity_table
+from structviz.scenarios import Sensitivity
 from structviz.views import render
 
 RESULTS = "results.json"
@@ -47,17 +48,19 @@ def write_outputs(
     pictures: bool = True,
     page: bool = True,
     field: bool = False,
+    depends: Sensitivity | None = None,
     progress: Progress | None = None,
 ) -> Written:
     """Write results.json, the page, the tables, an annotated mesh a fault and the pictures into a folder; return what was written.
 
     The folder is made, with the folders above it. It may exist if it is empty or holds only an earlier result, which is
-    replaced once the new one is complete. `field` adds field.vti and trajectories.vtp. Raises OutputError, with nothing
-    changed, where it cannot be written or holds other files.
+    replaced once the new one is complete. `field` adds field.vti and trajectories.vtp, `depends` adds sensitivity.csv and
+    what it holds to results.json. Raises OutputError, with nothing changed, where it cannot be written or holds other files.
     """
     target = checked_target(folder)
     with _complete_or_nothing(target) as new:
-        files, skipped = _fill(new, analysis, pictures, page, field, progress or (lambda text, done, total: None))
+        wanted = _Wanted(pictures, page, field, depends)
+        files, skipped = _fill(new, analysis, wanted, progress or (lambda text, done, total: None))
     return Written(target, files, skipped)
 
 
@@ -166,9 +169,15 @@ def _swap(new: Path, target: Path) -> None:
         shutil.rmtree(old, ignore_errors=True)
 
 
-def _fill(
-    new: Path, analysis: Analysis, pictures: bool, page: bool, field: bool, tell: Progress
-) -> tuple[tuple[str, ...], tuple[str, ...]]:
+@dataclass(frozen=True, eq=False)
+class _Wanted:
+    pictures: bool
+    page: bool
+    field: bool
+    depends: Sensitivity | None
+
+
+def _fill(new: Path, analysis: Analysis, wanted: _Wanted, tell: Progress) -> tuple[tuple[str, ...], tuple[str, ...]]:
     """Write every file into a new folder; return their names, relative to it, and why pictures are missing."""
     meshes = mesh_files(analysis)
     (new / "faults").mkdir()
@@ -177,14 +186,16 @@ def _fill(
         write_annotated(result, analysis.regimes[result.phase] if analysis.regimes else None, new / meshes[result.fault.name])
     _write_text(new / "faults.csv", csv_text(fault_table(analysis)))
     _write_text(new / "pairs.csv", csv_text(pair_table(analysis)))
-    drawn, skipped = render(analysis, new, progress=tell) if pictures else ((), ())
-    if field:
+    drawn, skipped = render(analysis, new, progress=tell) if wanted.pictures else ((), ())
+    if wanted.depends:
+        _write_text(new / "sensitivity.csv", csv_text(sensitivity_table(wanted.depends)))
+    if wanted.field:
         skipped = (*skipped, *_write_field(analysis, new, tell))
-    if page:
+    if wanted.page:
         tell("writing the page", 0, 1)
         _write_text(new / PAGE, page_text(analysis, pictures={name: (new / name).read_bytes() for name in drawn}))
     files = (RESULTS, *sorted(_all_files(new), key=lambda name: ("/" in name, name)))
-    _write_text(new / RESULTS, results_text(analysis, meshes=meshes, outputs=files))
+    _write_text(new / RESULTS, results_text(analysis, meshes=meshes, outputs=files, depends=wanted.depends))
     return files, tuple(skipped)
 
 

@@ -23,6 +23,7 @@ LAYERS: tuple[set[str], ...] = (
     {"settings"},
     {"examination"},
     {"analysis"},
+    {"scenarios"},
     {"views"},
     {"report"},
     {"cli"},

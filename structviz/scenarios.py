@@ -1,0 +1,136 @@
+"""What a verdict depends on: the analysis again under other choices, fault by fault compared with the first.
+
+`sensitivity(analysis)` runs the model anew with other friction angles, other scales of local orientation and without the fault that
+carries most, and judges every fault at fixed shape ratios. A verdict that changes says on which choice it depends.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from structviz.analysis import Analysis, FaultResult, Progress, run
+from structviz.settings import Settings
+from structviz.stress.answer import Answer, judge_in_phases
+from structviz.stress.influence import Influence, influence, pair_influence_deg
+from structviz.stress.replicates import Posterior
+from structviz.stress.verdict import VerdictLimits
+from structviz.surfaces.surface import Floats
+
+REPLICATES = 200  # of every run, the first one again among them, so that words differ by the choice and not by the draw
+FRICTION_ANGLES_DEG = (20.0, 25.0, 35.0, 40.0)
+RADIUS_FACTORS = (0.5, 2.0)
+SHAPE_RATIOS = (0.0, 0.25, 0.5, 0.75, 1.0)
+OPEN = "undetermined"
+
+
+@dataclass(frozen=True)
+class Scenario:
+    """One choice changed, and what came of it."""
+
+    key: str  # "friction_angle" | "station_radius" | "without" | "shape_ratio"
+    text: str
+    words: Mapping[str, str]  # verdict of each fault by name
+    kind: str  # class of the heaviest regime, empty where none could be inferred
+    shmax_deg: float  # of the heaviest regime, NaN where none
+
+
+@dataclass(frozen=True)
+class Dependence:
+    """A fault whose verdict changes with a choice."""
+
+    fault: str
+    on: tuple[str, ...]  # keys of scenarios
+    text: str
+
+
+@dataclass(frozen=True, eq=False)
+class Sensitivity:
+    """What the result owes to choices, to single faults and to single pairs."""
+
+    base: Scenario
+    scenarios: tuple[Scenario, ...]
+    dependences: tuple[Dependence, ...]
+    influence: tuple[Influence, ...]  # one a regime, rows in the order of analysis.faults
+    pair_deg: Floats  # (P,) how far each pair draws the mean of the pairs, degrees
+
+
+TITLES = {"friction_angle": "friction angle", "station_radius": "scale of local orientation", "without": "one fault", "shape_ratio": "R"}
+
+
+def sensitivity(analysis: Analysis, progress: Progress | None = None) -> Sensitivity | None:
+    """Return what the verdicts depend on; None where no stress could be inferred. About ten times the work of the analysis."""
+    if analysis.answer is None or not analysis.regimes:
+        return None
+    tell = progress or (lambda text, done, total: None)
+    settings = replace(analysis.settings, replicates=min(analysis.settings.replicates, REPLICATES))
+    carried = tuple(influence(posterior) for posterior in analysis.answer.posteriors)
+    first = run(analysis.model, settings)
+    base = _scenario("base", "as chosen", first)
+    found: list[Scenario] = []
+    cases = list(_cases(analysis, settings, carried))
+    for number, (key, text, left_out, changed) in enumerate(cases):
+        tell("trying other choices", number, len(cases))
+        faults = tuple(fault for fault in analysis.model.faults if fault.name != left_out)
+        found.append(_scenario(key, text, run(replace(analysis.model, faults=faults), changed)))
+    found += _at_fixed_ratios(first, settings)
+    tell("trying other choices", len(cases), len(cases))
+    dependences = tuple(_dependences(base, found))
+    return Sensitivity(base, tuple(found), dependences, carried, pair_influence_deg(analysis.pairs, analysis.regimes[0].axes))
+
+
+def _cases(analysis: Analysis, settings: Settings, carried: Sequence[Influence]) -> Iterator[tuple[str, str, str, Settings]]:
+    """Return key and text of each run, the fault it leaves out, and its settings."""
+    for angle in FRICTION_ANGLES_DEG:
+        if angle != settings.friction_angle_deg:
+            yield "friction_angle", f"friction angle {angle:g} deg", "", replace(settings, friction_angle_deg=angle)
+    for factor in RADIUS_FACTORS:
+        radius = min(max(settings.station_radius * factor, 0.01), 2.0)
+        yield "station_radius", f"station radius {radius:g} fault sizes", "", replace(settings, station_radius=radius)
+    if len(analysis.faults) > 2:
+        name = analysis.faults[carried[0].strongest].fault.name
+        yield "without", f"without {name}", name, settings
+
+
+def _scenario(key: str, text: str, analysis: Analysis) -> Scenario:
+    words = {result.fault.name: result.verdict.word for result in analysis.faults}
+    if not analysis.regimes:
+        return Scenario(key, text, words, "", float("nan"))
+    return Scenario(key, text, words, analysis.regimes[0].kind, analysis.regimes[0].shmax_deg)
+
+
+def _at_fixed_ratios(analysis: Analysis, settings: Settings) -> list[Scenario]:
+    """Return the verdicts with R held at values over its range; the axes stay what they were."""
+    if analysis.answer is None or not analysis.regimes:
+        return []
+    limits = VerdictLimits(conflicting_from=settings.conflict_probability, least_shear=settings.least_shear)
+    regime, made = analysis.regimes[0], []
+    for ratio in SHAPE_RATIOS:
+        held = replace(analysis.answer, posteriors=tuple(_held(posterior, ratio) for posterior in analysis.answer.posteriors))
+        words = {result.fault.name: _word(held, number, result, limits) for number, result in enumerate(analysis.faults)}
+        made.append(Scenario("shape_ratio", f"R = {ratio:g}", words, regime.kind, regime.shmax_deg))
+    return made
+
+
+def _held(posterior: Posterior, ratio: float) -> Posterior:
+    return replace(posterior, ratio_grid=np.array([ratio]), ratios=np.ones((len(posterior.frames), 1)))
+
+
+def _word(held: Answer, number: int, result: FaultResult, limits: VerdictLimits) -> str:
+    normals = result.stations.normals
+    shares = np.full(len(normals), 1 / len(normals))
+    return judge_in_phases(held, number, normals, shares, result.sector, "", limits)[0].word
+
+
+def _dependences(base: Scenario, scenarios: Sequence[Scenario]) -> Iterator[Dependence]:
+    """Return each fault whose verdict turns from consistent to conflicting or back, or is left open, under some choice."""
+    for fault, word in base.words.items():
+        changed = [scenario for scenario in scenarios if scenario.words.get(fault, word) != word]
+        if not changed:
+            continue
+        keys = tuple(dict.fromkeys(scenario.key for scenario in changed))
+        told = "; ".join(f"{scenario.words[fault]} with {scenario.text}" for scenario in changed if scenario.key != "without")
+        left = [f"{scenario.words[fault]} {scenario.text}" for scenario in changed if scenario.key == "without"]
+        yield Dependence(fault, keys, f"{word} as chosen; " + "; ".join(filter(None, [told, *left])))
