@@ -193,7 +193,7 @@ def _fill(new: Path, analysis: Analysis, wanted: _Wanted, tell: Progress) -> tup
         skipped = (*skipped, *_write_field(analysis, new, tell))
     if wanted.page:
         tell("writing the page", 0, 1)
-        _write_text(new / PAGE, page_text(analysis, pictures={name: (new / name).read_bytes() for name in drawn}))
+        _write_text(new / PAGE, page_text(analysis, pictures={name: (new / name).read_bytes() for name in drawn}, depends=wanted.depends))
     files = (RESULTS, *sorted(_all_files(new), key=lambda name: ("/" in name, name)))
     _write_text(new / RESULTS, results_text(analysis, meshes=meshes, outputs=files, depends=wanted.depends))
     return files, tuple(skipped)
