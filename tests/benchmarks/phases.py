@@ -92,6 +92,7 @@ def three(state: int) -> KnownPhases:
 KINDS: dict[str, Callable[[int], KnownPhases]] = {
     "one, 24 faults, 4 labels wrong": one,
     "one, 24 faults, 8 labels wrong": lambda state: one(state, planted=8),
+    "one, 11 faults, 2 labels wrong": lambda state: one(state, 11, 2),
     "one, 30 faults, 20 of them inherited": lambda state: one(state, 30, 4, conjugate=10),
     "one, 30 faults, scatter 12 deg": lambda state: one(state, 30, 4, scatter_deg=12.0),
     "one, 24 faults, 8 of one fabric": lambda state: one(state, fabric_deg=10.0),

@@ -13,7 +13,7 @@ from structviz.kinematics.declared import usable_sector
 from structviz.orientation.vectors import axial_angle_deg, rotation
 from structviz.stress.evidence import EvidenceModel, FaultEvidence, gather, geometry_term
 from structviz.stress.fabric import on_one_plane
-from structviz.stress.phases import find_phases
+from structviz.stress.phases import find_phases, opposed_phases, phase_texts
 from structviz.surfaces.measure import measure
 from structviz.synthetic import phased_model, random_model
 
@@ -54,6 +54,7 @@ def test_two_phases_are_found_with_their_axes_and_members(known):
 
 @pytest.mark.parametrize("regime", ["normal", "strike-slip", "reverse"])
 def test_one_phase_stays_one(regime):
+    assert phases_of(evidence_of(random_model(regime, faults=11, conjugate=7, planted=2, triangles=60, random_state=4).model)).count == 1
     assert phases_of(evidence_of(random_model(regime, planted=6, triangles=60, random_state=3).model)).count == 1
 
 
@@ -89,6 +90,45 @@ def test_a_declared_phase_that_the_data_contradict_is_told(known):
 def test_names_must_be_as_many_as_faults(known):
     with pytest.raises(ArgumentError, match=r"found 1 names for 30 faults.*wanted a name \(or an empty one\) for each"):
         find_phases(evidence_of(known.model), EvidenceModel(), declared_phases=["a"])
+
+
+def test_each_fault_is_told_its_phase(known):
+    evidence = evidence_of(known.model)
+    found = phases_of(evidence)
+    texts = phase_texts(found, evidence, ("the old one", "the young one"))
+    opposed, best = opposed_phases(found, evidence), found.belongs
+    own = np.take_along_axis(opposed, best[:, None], 1)[:, 0]
+    other = np.take_along_axis(opposed, 1 - best[:, None], 1)[:, 0]
+    crossed = other & ~own
+    assert crossed.any(), "some faults must move against one phase only"
+    names = np.array(["the old one", "the young one"])
+    for fault in np.flatnonzero(crossed):
+        share = found.membership[fault, best[fault]]
+        wanted = f"conflicts with {names[1 - best[fault]]} but fits {names[best[fault]]}, probability {share:.2f}"
+        assert texts[fault] == wanted
+    assert all("but fits" not in text for text, is_crossed in zip(texts, crossed) if not is_crossed)
+    order = np.random.default_rng(1).permutation(len(evidence))
+    assert phase_texts(phases_of(evidence.part(order)), evidence.part(order)) == tuple(np.array(phase_texts(found, evidence))[order])
+
+
+def test_opposed_is_the_side_the_resolved_shear_points_away_from(known):
+    """The plain way: resolve the traction of the reduced tensor on the plane and look at where it points."""
+    evidence = evidence_of(known.model)
+    found = phases_of(evidence)
+    opposed = opposed_phases(found, evidence)
+    for (frame, ratio), column in zip(zip(found.frames, found.ratios), opposed.T):
+        tensor = frame.T @ np.diag([1.0, ratio, 0.0]) @ frame
+        for normal, edges, against in zip(evidence.normals[:, 0], evidence.edges[:, 0], column):
+            used = [edge for edge in edges if np.abs(edge).sum() > 0]
+            if len(used) == 1:
+                assert against == (-(tensor @ normal) @ used[0] < 0)
+
+
+def test_one_phase_or_a_fault_that_says_nothing_has_no_text(known):
+    evidence = evidence_of(known.model)
+    assert set(phase_texts(find_phases(evidence, EvidenceModel(), declared_phases=[""] * len(evidence), most=1), evidence)) == {""}
+    with pytest.raises(ArgumentError, match="found 30 faults and 1 names; wanted the 30 faults and 2 names"):
+        phase_texts(phases_of(evidence), evidence, ("only one",))
 
 
 def planes_about(axes, signs):
