@@ -11,6 +11,7 @@ from dataclasses import replace
 from html.parser import HTMLParser
 from importlib.resources import files
 
+import numpy as np
 import pytest
 from PIL import Image
 
@@ -23,6 +24,8 @@ from structviz.report.markup import element, given, joined, table
 from structviz.report.methods import CITED, METHODS, methods_of, short_source, sources_of
 from structviz.report.names import printable
 from structviz.report.page_words import card_text, how_sure, verdict_line
+from structviz.scenarios import Dependence, Scenario, Sensitivity
+from structviz.stress.influence import Influence
 from structviz.views import palette
 
 VOID = {"meta", "link", "input", "img", "br", "hr"}
@@ -229,3 +232,20 @@ def colours(scheme: str) -> dict[str, str]:
 def test_text_stands_out(scheme: str, text: str) -> None:
     known = colours(scheme)
     assert min(contrast(known[text], known[ground]) for ground in ("paper", "raised", "wash")) >= 4.5
+
+
+def test_what_the_answer_depends_on_is_told_where_asked(analysis: Analysis) -> None:
+    names = [result.fault.name for result in analysis.faults]
+    words = {result.fault.name: result.verdict.word for result in analysis.faults}
+    base = Scenario("base", "as chosen", words, "normal", 12.0)
+    other = Scenario("friction_angle", "friction angle 20 deg", {**words, names[0]: "undetermined"}, "", float("nan"))
+    carried = tuple(
+        Influence(np.full((len(names), 3), 2.0), np.zeros(len(names)), np.zeros(len(names))) for _ in (analysis.regimes or [None])
+    )
+    told = (Dependence(names[0], ("friction_angle",), "consistent as chosen; undetermined with friction angle 20 deg"),)
+    tree = Tree(page_text(analysis, pictures={}, depends=Sensitivity(base, (other,), told, carried, np.zeros(0))))
+    part = tree.of("section", class_="sensitivity")[0]["text"]
+    assert "1 other choice tried: 1 verdict depends on one of them." in part
+    assert f"{printable(names[0])}: consistent as chosen; undetermined with friction angle 20°." in part
+    assert "2.0°" in part
+    assert not Tree(page_text(analysis, pictures={})).of("section", class_="sensitivity")
