@@ -105,13 +105,20 @@ def test_search_leaves_what_matches(visit: Visit, analysis: Analysis) -> None:
     assert len(visit.page.evaluate(shown)) == len(analysis.faults)
 
 
-def test_hiding_a_group_is_told_to_the_model(visit: Visit, analysis: Analysis) -> None:
+def test_hiding_is_told_to_the_model(visit: Visit, analysis: Analysis) -> None:
+    visit.page.evaluate("document.documentElement.classList.add('with-scene')")
     visit.page.evaluate("document.addEventListener('structviz:show', event => (window.told = event.detail))")
     visit.page.locator(".group[data-word='conflicting'] .hide").click()
     told = visit.page.evaluate("window.told")
     assert told["shown"] is False
     assert {analysis.faults[k].verdict.word for k in told["faults"]} == {"conflicting"}
     assert visit.page.locator(".group[data-word='conflicting'] .hide").get_attribute("aria-pressed") == "true"
+    fault = worst(analysis)
+    eye = row(visit, fault).locator("xpath=following-sibling::button")
+    eye.click()
+    assert visit.page.evaluate("window.told") == {"faults": [fault], "shown": True}
+    assert eye.get_attribute("aria-pressed") == "false"
+    assert visit.page.locator(".group[data-word='conflicting'] .hide").inner_text() == "hide"
 
 
 def test_hostile_names_stay_text(visit: Visit, analysis: Analysis) -> None:

@@ -70,22 +70,39 @@ const worded = (values) =>
 // --- the list -------------------------------------------------------------------------------
 
 function stop(row) {
-  for (const button of buttons) button.tabIndex = button === row ? 0 : -1;
+  for (const button of buttons) button.tabIndex = button.nextElementSibling.tabIndex = button === row ? 0 : -1;
 }
 
 list.addEventListener("click", (event) => {
   const row = event.target.closest("button.fault");
   if (row) return pick(Number(row.dataset.fault) === picked ? null : Number(row.dataset.fault), "list");
+  const eye = event.target.closest("button.eye");
+  if (eye) return show([eye.parentElement], eye.parentElement.classList.contains("off"));
   const hide = event.target.closest("button.hide");
-  if (hide) showGroup(hide, hide.getAttribute("aria-pressed") === "true");
+  if (hide) show($$("li", hide.closest(".group")), hide.getAttribute("aria-pressed") === "true");
 });
 
-function showGroup(hide, visible) {
-  hide.setAttribute("aria-pressed", String(!visible));
-  hide.textContent = visible ? "hide" : "show";
-  const group = hide.closest(".group");
-  group.classList.toggle("off", !visible);
-  tell("show", { faults: $$("button.fault", group).map((row) => Number(row.dataset.fault)), shown: visible });
+// Shows or hides the faults of some rows in the 3D view.
+function show(rows, visible) {
+  for (const row of rows) {
+    row.classList.toggle("off", !visible);
+    $(".eye", row).setAttribute("aria-pressed", String(!visible));
+  }
+  const group = rows[0].closest(".group");
+  const none = !$("li:not(.off)", group);
+  $(".hide", group).setAttribute("aria-pressed", String(none));
+  $(".hide", group).textContent = none ? "show" : "hide";
+  tell("show", { faults: rows.map((row) => Number($("button.fault", row).dataset.fault)), shown: visible });
+}
+
+for (const button of buttons) {
+  const eye = document.createElement("button");
+  eye.type = "button";
+  eye.className = "eye";
+  eye.tabIndex = -1;
+  eye.setAttribute("aria-pressed", "false");
+  eye.setAttribute("aria-label", `Hide ${$(".name", button).textContent} in 3D`);
+  button.after(eye);
 }
 
 const MOVES = { ArrowDown: 1, ArrowUp: -1, PageDown: 8, PageUp: -8, Home: -Infinity, End: Infinity };
