@@ -51,7 +51,23 @@ def _stress(analysis: Analysis) -> Markup:
     found = analysis.regimes
     told = [element("p", joined(_regime_line(analysis, k))) for k in range(len(found))] if len(found) > 1 else []
     note = element("p", "Trend/plunge in degrees, each with its 95 % cone. R = (σ2 − σ3)/(σ1 − σ3).", class_="note") if found else ""
-    return joined(intro, told, measures(analysis), note, _readings(analysis), _comparisons(analysis))
+    return joined(intro, told, measures(analysis), note, _one_or_several(analysis), _readings(analysis), _comparisons(analysis))
+
+
+def _one_or_several(analysis: Analysis) -> Markup:
+    """Return what decided on the number of stresses, and whether the stress turns with place."""
+    if analysis.answer is None:
+        return Markup("")
+    said = [words.typeset(analysis.answer.phases.why)] if analysis.answer.by == "phase" else []
+    if analysis.by_place and analysis.by_place.turn:
+        turn = analysis.by_place.turn
+        ends = f"{words.azimuth(turn.first_shmax_deg, 180)}° to {words.azimuth(turn.second_shmax_deg, 180)}°"
+        said.append(
+            f"SHmax turns by {turn.turn_deg:.0f}° across the model, from {ends} (better than one stress by {turn.gain_nats:.0f} nats)."
+        )
+    elif analysis.by_place:
+        said.append("No field that turns with place foretells the faults better than one stress.")
+    return joined(element("h3", "One stress or several"), element("p", " ".join(said)))
 
 
 def _regime_line(analysis: Analysis, number: int) -> Iterator[Markup]:

@@ -141,7 +141,7 @@ def _membership(analysis: Analysis, result: FaultResult) -> Markup:
     order = sorted(range(len(shares)), key=lambda k: (k != result.phase, -shares[k]))
     told = [k for k in order if k == result.phase or shares[k] >= LEAST_MEMBERSHIP]
     named = [
-        joined(given(analysis.regimes[k].name or f"phase {k + 1}"), f" {words.percent(shares[k])}")
+        joined(given(analysis.regimes[k].name or f"phase {k + 1}"), f" ({words.percent(shares[k])})")
         for k in told
         if k < len(analysis.regimes)
     ]
