@@ -157,7 +157,7 @@ def test_without_webgl_the_argument_is_whole(page_file: Path, browser_without_we
     with visiting(browser_without_webgl, page_file, viewport=WIDE) as visit:
         visit.page.wait_for_timeout(300)
         assert visit.page.locator(".instead img").first.is_visible()
-        assert visit.page.locator("#why-no-scene").inner_text().endswith("Everything else is complete.")
+        assert visit.page.locator("#why-no-scene").inner_text().endswith("everything else is complete.")
         row(visit, worst(analysis)).click()
         assert "Next:" in visit.page.locator("#record").inner_text()
         assert visit.page.locator("#argument .card").count() >= len(analysis.conflicting)

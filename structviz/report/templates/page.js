@@ -194,10 +194,11 @@ function hasWebGL() {
   }
 }
 
+const INSTEAD = $(".instead img") ? "The prepared picture stands in its place; everything else is complete." : "Everything else is complete.";
 document.documentElement.classList.add("scripted");
-if (!$('script[data-part="viewer"]')) without("This page was made without the 3D view: here is the prepared picture. Everything else is complete.");
-else if (!hasWebGL()) without("The 3D view needs WebGL, which this browser does not offer: here is the prepared picture. Everything else is complete.");
+if (!$('script[data-part="viewer"]')) without(`This page was made without the 3D view. ${INSTEAD}`);
+else if (!hasWebGL()) without(`The 3D view needs WebGL, which this browser does not offer. ${INSTEAD}`);
 else document.documentElement.classList.add("with-scene");
-document.addEventListener("structviz:scene-failed", ({ detail }) => without(`The 3D view could not be started${detail?.why ? ` (${detail.why})` : ""}: here is the prepared picture. Everything else is complete.`));
+document.addEventListener("structviz:scene-failed", ({ detail }) => without(`The 3D view could not be started${detail?.why ? ` (${detail.why})` : ""}. ${INSTEAD}`));
 
 if (buttons.length) stop(buttons[0]);
