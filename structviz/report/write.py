@@ -193,10 +193,20 @@ def _fill(new: Path, analysis: Analysis, wanted: _Wanted, tell: Progress) -> tup
         skipped = (*skipped, *_write_field(analysis, new, tell))
     if wanted.page:
         tell("writing the page", 0, 1)
-        _write_text(new / PAGE, page_text(analysis, pictures={name: (new / name).read_bytes() for name in drawn}, depends=wanted.depends))
+        skipped = (*skipped, *_write_page(analysis, new, drawn, wanted.depends))
     files = (RESULTS, *sorted(_all_files(new), key=lambda name: ("/" in name, name)))
     _write_text(new / RESULTS, results_text(analysis, meshes=meshes, outputs=files, depends=wanted.depends))
     return files, tuple(skipped)
+
+
+def _write_page(analysis: Analysis, new: Path, drawn: Sequence[str], depends: Sensitivity | None) -> tuple[str, ...]:
+    """Write report.html with the pictures drawn; return why not, where it failed: that is a fault of ours, and the numbers stay."""
+    try:
+        text = page_text(analysis, pictures={name: (new / name).read_bytes() for name in drawn}, depends=depends)
+    except (ArithmeticError, AttributeError, LookupError, RuntimeError, TypeError, ValueError) as error:
+        return (f"{PAGE} could not be made ({type(error).__name__}: {error}); please report it",)
+    _write_text(new / PAGE, text)
+    return ()
 
 
 def _write_field(analysis: Analysis, new: Path, tell: Progress) -> tuple[str, ...]:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import base64
 import hashlib
 import io
+import json
 import re
 from collections import Counter
 from dataclasses import replace
@@ -249,3 +250,17 @@ def test_what_the_answer_depends_on_is_told_where_asked(analysis: Analysis) -> N
     assert f"{printable(names[0])}: consistent as chosen; undetermined with friction angle 20°." in part
     assert "2.0°" in part
     assert not Tree(page_text(analysis, pictures={})).of("section", class_="sensitivity")
+
+
+def test_the_3d_view_and_plots_take_their_places(analysis: Analysis, monkeypatch: pytest.MonkeyPatch) -> None:
+    stand_ins = {
+        "page_data": lambda analysis: ({"title": "</script><b>"}, b"\x00\xff"),
+        "viewer_script": lambda: "const end = '</script>';",
+        "net_svg": lambda analysis: '<svg><path data-fault="0"></path></svg>',
+    }
+    monkeypatch.setattr(page, "_optional", lambda module, name: stand_ins.get(name))
+    tree = Tree(page_text(analysis, pictures={}))
+    assert json.loads(tree.of("script", id="structviz-data")[0]["text"]) == {"title": "</script><b>"}
+    assert base64.b64decode(tree.of("script", id="structviz-arrays")[0]["text"]) == b"\x00\xff"
+    assert tree.of("script", data_part="viewer")[0]["text"] == r"const end = '<\/script>';"
+    assert [e["data-plot"] for e in tree.of("figure")] == ["net"]

@@ -199,3 +199,19 @@ def test_progress_counts_the_meshes(no_stress: Analysis, tmp_path: Path) -> None
     told: list[tuple[str, int, int]] = []
     write_outputs(no_stress, tmp_path / "out", pictures=False, progress=lambda *step: told.append(step))
     assert told == [("writing meshes", 0, 2), ("writing meshes", 1, 2), ("writing the page", 0, 1)]
+
+
+def test_a_page_that_fails_loses_no_numbers(no_stress: Analysis, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    def failing(*args: object, **choices: object) -> str:
+        raise ValueError("no room for it")
+
+    monkeypatch.setattr(write, "page_text", failing)
+    written = write_outputs(no_stress, tmp_path / "out", pictures=False)
+    assert "report.html" not in written.files
+    assert written.skipped == ("report.html could not be made (ValueError: no room for it); please report it",)
+    assert json.loads((tmp_path / "out" / "results.json").read_text("utf-8"))["outputs"] == list(written.files)
+
+
+def test_the_page_is_left_out_where_not_wanted(no_stress: Analysis, tmp_path: Path) -> None:
+    assert "report.html" in write_outputs(no_stress, tmp_path / "with", pictures=False).files
+    assert "report.html" not in write_outputs(no_stress, tmp_path / "without", pictures=False, page=False).files
