@@ -20,7 +20,7 @@ from structviz.analysis import Analysis
 from structviz.report import page_words as words
 from structviz.report.markup import Markup, element, joined, plain
 from structviz.report.page_argument import argument
-from structviz.report.page_parts import answer, cards, fault_list, plain_lines, why_whole
+from structviz.report.page_parts import answer, fault_list, other_cards, plain_lines, why_whole
 from structviz.scenarios import Sensitivity
 from structviz.views import palette
 
@@ -48,7 +48,7 @@ def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], depends: Sen
     slots = {
         "policy": _policy(scripts.values(), asks=bool(live)),
         "title": plain(f"{words.headline(analysis)} – {analysis.model.title or 'structviz'}"),
-        "style": _palette_css() + _template("page.css"),
+        "style": _style(),
         "answer": answer(analysis),
         "shared": why_whole(analysis),
         "list": fault_list(analysis),
@@ -56,7 +56,7 @@ def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], depends: Sen
         "net": _plot(analysis, *PLOTS[0], instead=pictures.get("net.png")),
         "plots": joined([_plot(analysis, *each) for each in PLOTS[1:]]),
         "argument": argument(analysis, depends),
-        "records": cards(analysis, "consistent"),
+        "records": joined(other_cards(analysis)),
         "data": _in_script(json.dumps(data, ensure_ascii=False, sort_keys=True, separators=(",", ":"), allow_nan=False)),
         "arrays": arrays,
         "scripts": "".join(_script(name, text) for name, text in scripts.items() if text),
@@ -75,7 +75,7 @@ def notice_page(title: str, text: str, *, live: str) -> str:
     slots = {
         "policy": _policy([live], asks=True),
         "title": plain(f"{title} – structviz"),
-        "style": _palette_css() + _template("page.css"),
+        "style": _style(),
         "body": element("main", element("h1", title), lines, class_="notice"),
         "scripts": _script("live", live),
     }
@@ -138,12 +138,15 @@ def _in_script(text: str) -> str:
     return text.replace("<", "\\u003c").encode("utf-8", "backslashreplace").decode("utf-8")
 
 
-def _palette_css() -> str:
-    """Return the colours of the pictures as CSS variables."""
-    named = {"paper": palette.PAPER, "ink": palette.INK, "faint": palette.FAINT, "hair": palette.HAIR}
-    named |= {word: look.colour for word, look in palette.VERDICTS.items()}
-    named |= {f"sigma{k}": colour for k, colour in enumerate(palette.SIGMA, 1)}
-    return ":root{" + "".join(f"--{name}:{colour};" for name, colour in named.items()) + "}\n"
+def _style() -> str:
+    """Return the style of a page: colours of the pictures as variables, ours, and on paper those of the pictures again."""
+    lines = {"paper": palette.PAPER, "ink": palette.INK, "faint": palette.FAINT, "hair": palette.HAIR}
+    marks = {word: look.colour for word, look in palette.VERDICTS.items()} | {f"sigma{k}": c for k, c in enumerate(palette.SIGMA, 1)}
+    return f"{_variables(lines | marks)}\n{_template('page.css')}@media print {{ {_variables(marks)} }}\n"
+
+
+def _variables(colours: Mapping[str, str]) -> str:
+    return ":root { " + " ".join(f"--{name}: {colour};" for name, colour in colours.items()) + " }"
 
 
 def _picture(png: bytes | None, alt: str) -> Markup:

@@ -13,7 +13,7 @@ from structviz.references import REFERENCES
 from structviz.report import page_words as words
 from structviz.report.markup import Markup, element, given, joined, plain, table
 from structviz.report.methods import methods_of, pieces, short_source, sources_of
-from structviz.report.page_parts import cards, fault_table, measures, why_whole
+from structviz.report.page_parts import fault_table, measures, shown_cards, why_whole
 from structviz.report.page_sensitivity import sensitivity_part
 from structviz.scenarios import Sensitivity
 from structviz.stress.tensor import frame_angle_deg
@@ -21,7 +21,6 @@ from structviz.stress.tensor import frame_angle_deg
 SEVERITIES = ("error", "warning", "note")
 TOLD_ALREADY = {"conflict", "undetermined", "cause-shared", "cause-of-whole-model", "conflicting-set", "many-conflicts"}  # told above
 MOST_NAMES = 8
-MOST_CARDS = 40  # undetermined faults beyond these are told in the table alone
 
 
 def argument(analysis: Analysis, depends: Sensitivity | None = None) -> Markup:
@@ -112,7 +111,7 @@ def _conflicts(analysis: Analysis) -> Markup:
         return joined(element("p", words.verdict_line(analysis)), why_whole(analysis))
     intro = "One card a fault, worst first. Percentages before causes are their probabilities among all causes considered."
     return joined(
-        element("p", words.verdict_line(analysis), " ", intro), why_whole(analysis), element("div", cards(analysis, "conflicting"))
+        element("p", words.verdict_line(analysis), " ", intro), why_whole(analysis), element("div", shown_cards(analysis, "conflicting"))
     )
 
 
@@ -120,7 +119,9 @@ def _open(analysis: Analysis) -> Markup:
     number = sum(result.verdict.word == "undetermined" for result in analysis.faults)
     if not number:
         return Markup("")
-    return element("div", cards(analysis, "undetermined"), class_="brief")
+    told = shown_cards(analysis, "undetermined")
+    more = element("p", f"{number - len(told):,} more are in the table of every fault.") if number > len(told) else ""
+    return joined(element("div", told), more)
 
 
 def _read(analysis: Analysis) -> Markup:

@@ -9,6 +9,7 @@ from structviz.report import page_words as words
 from structviz.report.markup import Markup, element, given, joined, plain, table
 
 GROUPS = {"conflicting": "In conflict with the others", "undetermined": "Cannot be told", "consistent": "Fit the others"}
+MOST_CARDS = 40  # undetermined faults beyond these are told in the table alone
 LEAST_MEMBERSHIP = 0.005  # a phase less likely than this is not told
 ABOUT_WHOLE = ("cause-shared", "cause-of-whole-model", "conflicting-set", "many-conflicts")  # checks that say why faults conflict
 
@@ -98,9 +99,19 @@ def _in_short(result: FaultResult) -> str:
     return f"{said}, predicted {words.predicted(result)}" if verdict.predicted_rake_deg is not None else said
 
 
-def cards(analysis: Analysis, word: str) -> Markup:
+def cards(analysis: Analysis, word: str) -> list[Markup]:
     """Return a card for each fault of a verdict, worst first."""
-    return joined([card(analysis, row, result) for row, result in ordered(analysis) if result.verdict.word == word])
+    return [card(analysis, row, result) for row, result in ordered(analysis) if result.verdict.word == word]
+
+
+def shown_cards(analysis: Analysis, word: str) -> list[Markup]:
+    """Return the cards of a verdict that stand in the argument: all that conflict, the first of those that cannot be told."""
+    return cards(analysis, word)[: {"conflicting": None, "undetermined": MOST_CARDS, "consistent": 0}[word]]
+
+
+def other_cards(analysis: Analysis) -> list[Markup]:
+    """Return the cards that stand nowhere in the argument and wait for a fault to be chosen."""
+    return [*cards(analysis, "undetermined")[MOST_CARDS:], *cards(analysis, "consistent")]
 
 
 def card(analysis: Analysis, row: int, result: FaultResult) -> Markup:

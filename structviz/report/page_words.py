@@ -17,6 +17,8 @@ LOOSE_DEG = 30.0  # a regime with a wider cone is called poorly determined
 NUMBERS = {2: "Two", 3: "Three", 4: "Four"}
 WORDS = ("conflicting", "undetermined", "consistent")
 AXES = ("σ1", "σ2", "σ3")
+FIRST_WORD = re.compile(r"[a-z]+[ ,;:]")  # in lower case and nothing else: no name of a file
+NO_BREAK = "\u00a0"
 DEGREES = re.compile(r"(?<=\d) deg\b")
 MINUS = re.compile(r"(?<![\w.])-(?=\d)")
 
@@ -50,9 +52,14 @@ def signs(text: str) -> str:
 
 
 def typeset(text: str) -> str:
-    """Return words of ours as a sentence: with signs, a capital and a full stop."""
+    """Return words of ours as a sentence: with signs, a capital and a full stop. What may be the name of a file keeps its first letter.
+
+    >>> typeset("dips 75.6 deg"), typeset("faults.csv: a column is not used")
+    ('Dips 75.6°.', 'faults.csv: a column is not used.')
+    """
     shown = signs(text)
-    return f"{shown[:1].upper()}{shown[1:]}{'' if shown.endswith('.') else '.'}" if shown else ""
+    begun = f"{shown[:1].upper()}{shown[1:]}" if FIRST_WORD.match(shown) else shown
+    return f"{begun}{'' if begun.endswith('.') else '.'}" if begun else ""
 
 
 def azimuth(degrees: float, turn: int = 360) -> str:
@@ -127,7 +134,7 @@ def how_sure(analysis: Analysis) -> str:
     if len(analysis.regimes) > 1:
         return " ".join(f"({k}) is {sureness(regime)}: cones of {cones(regime)}." for k, regime in enumerate(analysis.regimes, 1))
     first = analysis.regimes[0]
-    held = f"The axes are {sureness(first)}: 95 % cones of {cones(first)} from {counted(first.faults, 'fault')}."
+    held = f"The axes are {sureness(first)}: 95{NO_BREAK}% cones of {cones(first)} from {counted(first.faults, 'fault')}."
     open_ratio = "" if first.shape_ratio else " The shape ratio R is open, so every prediction covers all of it."
     return held + open_ratio
 
@@ -172,12 +179,13 @@ def predicted_rake(result: FaultResult) -> str:
 def percent(share: float | None) -> str:
     """Return a probability as a whole percentage that never claims certainty; a dash where there is none.
 
-    >>> percent(0.9999), percent(0.0), percent(0.42), percent(None)
-    ('> 99 %', '< 1 %', '42 %', '–')
+    >>> [percent(share).replace(NO_BREAK, " ") for share in (0.9999, 0.0, 0.42, None)]
+    ['> 99 %', '< 1 %', '42 %', '–']
     """
     if share is None:
         return "–"
-    return "> 99 %" if share > 0.99 else "< 1 %" if share < 0.01 else f"{100 * share:.0f} %"
+    shown = "> 99 %" if share > 0.99 else "< 1 %" if share < 0.01 else f"{100 * share:.0f} %"
+    return shown.replace(" ", NO_BREAK)
 
 
 def orientation(result: FaultResult) -> str:

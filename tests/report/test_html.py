@@ -264,3 +264,10 @@ def test_the_3d_view_and_plots_take_their_places(analysis: Analysis, monkeypatch
     assert base64.b64decode(tree.of("script", id="structviz-arrays")[0]["text"]) == b"\x00\xff"
     assert tree.of("script", data_part="viewer")[0]["text"] == r"const end = '<\/script>';"
     assert [e["data-plot"] for e in tree.of("figure")] == ["net"]
+
+
+def test_very_many_undetermined_faults_are_told_in_the_table(no_stress: Analysis) -> None:
+    many = tuple(replace(no_stress.faults[0], fault=replace(no_stress.faults[0].fault, name=f"f{k}")) for k in range(45))
+    tree = Tree(page_text(replace(no_stress, faults=many), pictures={}))
+    assert "5 more are in the table of every fault." in tree.of("section", class_="open")[0]["text"]
+    assert len(tree.of("article", class_="card")) == 45
