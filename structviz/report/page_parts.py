@@ -41,7 +41,7 @@ def _measures(analysis: Analysis, number: int) -> Markup:
     caption = element("caption", name) if several else ""
     body = [element("tr", [element("td", cell) for cell in row]) for row in rows]
     last = element("tr", element("td", element("i", "R")), element("td", words.ratio(regime), colspan=2))
-    return element("table", caption, element("tbody", body, last), class_="axes")
+    return element("table", caption, element("tbody", body, last), class_="axes", aria_label="Principal axes")
 
 
 def why_whole(analysis: Analysis) -> Markup:

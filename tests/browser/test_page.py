@@ -79,6 +79,16 @@ def test_a_pick_elsewhere_marks_list_record_and_plots(visit: Visit, analysis: An
     assert printable(analysis.faults[fault].fault.name) in visit.page.locator("#record").inner_text()
 
 
+def test_the_value_under_the_cursor_is_told(visit: Visit) -> None:
+    hover = "detail => document.dispatchEvent(new CustomEvent('structviz:hover', {detail}))"
+    visit.page.evaluate(hover, {"fault": 0, "triangle": 7, "values": {"dip": 61.234, "of": "<b>"}})
+    assert visit.page.locator("#local").inner_text() == "Under the cursor: dip 61.23, of <b>"
+    assert "hovered" in (row(visit, 0).get_attribute("class") or "")
+    visit.page.evaluate(hover, {"fault": None, "triangle": None, "values": None})
+    assert visit.page.locator("#local").inner_text() == ""
+    assert visit.page.locator(".hovered").count() == 0
+
+
 def test_the_list_is_walked_with_the_keys(visit: Visit) -> None:
     visit.page.locator("#search").focus()
     visit.page.keyboard.press("ArrowDown")

@@ -62,10 +62,12 @@ document.addEventListener("structviz:hover", ({ detail }) => {
   $("#local").textContent = fault === null || !detail.values ? "" : `Under the cursor: ${worded(detail.values)}`;
 });
 
-const worded = (values) =>
-  typeof values === "string"
-    ? values
-    : Object.entries(values).map(([key, value]) => `${key} ${typeof value === "number" ? Math.round(value * 100) / 100 : value}`).join(", ");
+const short = (value) => (typeof value === "number" ? Math.round(value * 100) / 100 : value);
+const worded = (values) => {
+  if (typeof values === "string") return values;
+  if (Array.isArray(values)) return values.map(short).join(", ");
+  return Object.entries(values).map(([key, value]) => `${key} ${short(value)}`).join(", ");
+};
 
 // --- the list -------------------------------------------------------------------------------
 
