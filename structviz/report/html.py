@@ -19,7 +19,7 @@ from typing import Any
 from structviz.analysis import Analysis
 from structviz.report import page_words as words
 from structviz.report.markup import Markup, element, joined, plain
-from structviz.report.page_argument import argument
+from structviz.report.page_argument import argument, contents, parts_of
 from structviz.report.page_parts import answer, fault_list, other_cards, plain_lines, why_whole
 from structviz.scenarios import Sensitivity
 from structviz.views import palette
@@ -41,6 +41,7 @@ def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], depends: Sen
     `depends` is what the verdicts depend on, where that was asked. `live` is a script for pages that are served: it alone may ask,
     and only where the page came from.
     """
+    parts = parts_of(analysis, depends)
     data, arrays = _scene_data(analysis)
     viewer = _optional("structviz.report.page_data", "viewer_script")
     bundle = (viewer() if viewer else None) or ""
@@ -49,13 +50,13 @@ def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], depends: Sen
         "policy": _policy(scripts.values(), asks=bool(live)),
         "title": plain(f"{words.headline(analysis)} – {analysis.model.title or 'structviz'}"),
         "style": _style(),
-        "answer": answer(analysis),
+        "answer": joined(answer(analysis), contents(parts)),
         "shared": why_whole(analysis),
         "list": fault_list(analysis),
         "scene_picture": _picture(pictures.get("scene.png"), "The faults in 3D, coloured by verdict, with the stress as glyphs"),
         "net": _plot(analysis, *PLOTS[0], instead=pictures.get("net.png")),
         "plots": joined([_plot(analysis, *each) for each in PLOTS[1:]]),
-        "argument": argument(analysis, depends),
+        "argument": argument(parts),
         "records": joined(other_cards(analysis)),
         "data": _in_script(json.dumps(data, ensure_ascii=False, sort_keys=True, separators=(",", ":"), allow_nan=False)),
         "arrays": arrays,

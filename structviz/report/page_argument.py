@@ -23,21 +23,34 @@ TOLD_ALREADY = {"conflict", "undetermined", "cause-shared", "cause-of-whole-mode
 MOST_NAMES = 8
 
 
-def argument(analysis: Analysis, depends: Sensitivity | None = None) -> Markup:
-    """Return the sections of the argument in order, numbered."""
-    sections = [
-        ("stress", "The stress, and how sure it is", _stress(analysis)),
-        ("conflicts", "The faults in conflict", _conflicts(analysis)),
-        ("open", "The faults that cannot be told", _open(analysis)),
-        ("sensitivity", "What the answer depends on", sensitivity_part(analysis, depends)),
-        ("read", "What was read, and what was noticed", _read(analysis)),
-        ("every-fault", "Every fault", fault_table(analysis)),
-        ("methods", "Methods and sources", _methods(analysis)),
-        ("cautions", "Cautions", element("ul", [element("li", plain(each)) for each in analysis.cautions])),
-        ("settings", "Settings, limits and inputs", _settings(analysis)),
+Part = tuple[str, str, str, Markup]  # key, title, name in the row of links, content
+
+
+def argument(parts: Sequence[Part]) -> Markup:
+    """Return the sections of the argument, numbered."""
+    return joined([_section(number, key, title, body) for number, (key, title, _, body) in enumerate(parts, 1)])
+
+
+def contents(parts: Sequence[Part]) -> Markup:
+    """Return a row of links to the sections."""
+    return element("nav", [element("a", name, href=f"#{key}") for key, _, name, _ in parts], aria_label="Sections", class_="contents")
+
+
+def parts_of(analysis: Analysis, depends: Sensitivity | None = None) -> list[Part]:
+    """Return the sections of the argument in order; those with nothing to say are left out."""
+    cautions = element("ul", [element("li", plain(each)) for each in analysis.cautions])
+    parts = [
+        ("stress", "The stress, and how sure it is", "Stress", _stress(analysis)),
+        ("conflicts", "The faults in conflict", "Conflicts", _conflicts(analysis)),
+        ("open", "The faults that cannot be told", "Open", _open(analysis)),
+        ("sensitivity", "What the answer depends on", "Sensitivity", sensitivity_part(analysis, depends)),
+        ("read", "What was read, and what was noticed", "Input", _read(analysis)),
+        ("every-fault", "Every fault", "Every fault", fault_table(analysis)),
+        ("methods", "Methods and sources", "Methods", _methods(analysis)),
+        ("cautions", "Cautions", "Cautions", cautions),
+        ("settings", "Settings, limits and inputs", "Settings", _settings(analysis)),
     ]
-    shown = [(key, title, body) for key, title, body in sections if body]
-    return joined([_section(number, key, title, body) for number, (key, title, body) in enumerate(shown, 1)])
+    return [part for part in parts if part[3]]
 
 
 def _section(number: int, key: str, title: str, body: Markup) -> Markup:
