@@ -11,7 +11,7 @@ import sys
 
 from structviz.analysis import Analysis
 from structviz.analysis import run as analyse
-from structviz.cli.choices import add_choices, ending_like_an_interrupt, limits_of, settings_of
+from structviz.cli.choices import add_choices, ending_like_an_interrupt, limits_of, settings_of, where_of
 from structviz.cli.progress import progress_bar
 from structviz.io import read_model
 from structviz.io.independent import with_measurements
@@ -42,7 +42,7 @@ def run(args: argparse.Namespace) -> int:
     if args.out is not None:
         checked_target(args.out)  # better told now than after the work
     with ending_like_an_interrupt(), progress_bar() as progress:
-        model = read_model(args.path, allow_outside=args.allow_outside, progress=progress)
+        model = read_model(args.path, allow_outside=args.allow_outside, where=where_of(args.where), progress=progress)
         model = with_measurements(model, args.mechanisms, args.well_azimuths)
         analysis = analyse(model, settings, limits=limits, progress=progress)
         depends = sensitivity(analysis, progress) if args.sensitivity else None

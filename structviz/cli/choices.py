@@ -18,6 +18,13 @@ from structviz.settings import Settings, bounds
 def add_choices(parser: argparse.ArgumentParser) -> None:
     """Add the options that say how a model is read and judged, one for each setting among them."""
     parser.add_argument("--allow-outside", action="store_true", help="let the model use files outside its own folder")
+    parser.add_argument(
+        "--where",
+        action="append",
+        default=[],
+        metavar="NAME=VALUE",
+        help="of traces, keep those with this property (repeatable; several values parted by commas)",
+    )
     parser.add_argument("--mechanisms", metavar="FILE", default="", help="compare with earthquake mechanisms (CSV, or QuakeML by ObsPy)")
     parser.add_argument("--well-azimuths", metavar="FILE", default="", help="compare with SHmax azimuths measured in wells (CSV)")
     parser.add_argument(
@@ -54,6 +61,17 @@ def settings_of(args: argparse.Namespace) -> Settings:
         if text is not None:
             chosen[item.name] = number(text, option(item.name), whole=isinstance(item.default, int))
     return Settings(**chosen)
+
+
+def where_of(given: Sequence[str]) -> dict[str, str]:
+    """Return properties and their wanted values; ArgumentError for a text without =."""
+    found = {}
+    for text in given:
+        key, equals, value = text.partition("=")
+        if not equals or not key.strip():
+            raise ArgumentError(f"--where: found {text!r}; wanted NAME=VALUE", hint="name a property of the traces and its value")
+        found[key.strip()] = value.strip()
+    return found
 
 
 def limits_of(given: Sequence[str]) -> dict[str, float]:

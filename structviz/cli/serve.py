@@ -11,7 +11,7 @@ from pathlib import Path
 
 from structviz.analysis import Analysis
 from structviz.analysis import run as analyse
-from structviz.cli.choices import add_choices, ending_like_an_interrupt, limits_of, number, settings_of
+from structviz.cli.choices import add_choices, ending_like_an_interrupt, limits_of, number, settings_of, where_of
 from structviz.errors import ArgumentError
 from structviz.io import read_model
 from structviz.io.independent import with_measurements
@@ -38,7 +38,8 @@ def run(args: argparse.Namespace) -> int:
         raise ArgumentError(f"--port: found {port}; wanted 0 to 65535", hint="0 takes any that is free")
 
     def make() -> Analysis:
-        model = with_measurements(read_model(args.path, allow_outside=args.allow_outside), args.mechanisms, args.well_azimuths)
+        model = read_model(args.path, allow_outside=args.allow_outside, where=where_of(args.where))
+        model = with_measurements(model, args.mechanisms, args.well_azimuths)
         return analyse(model, settings, limits=limits)
 
     with ending_like_an_interrupt():

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 from collections import Counter
+from collections.abc import Mapping
 from dataclasses import replace
 from pathlib import Path
 
@@ -16,6 +17,8 @@ from structviz.io.ledger import Ledger, Progress, content_of, mesh_files, missin
 from structviz.io.model_file import ModelFile, parsed_model
 from structviz.io.striae import read_striae
 from structviz.io.tables import FAULT_COLUMNS, Row, declared, down_side, read_table
+from structviz.io.traces import SUFFIXES as TRACE_SUFFIXES
+from structviz.io.traces import read_traces
 from structviz.io.units import Frame, surface_m
 from structviz.model import Fault, FaultModel, Horizon, Stria
 from structviz.surfaces.surface import Surface
@@ -23,14 +26,19 @@ from structviz.surfaces.surface import Surface
 SINGLE = 3  # the same remark about more faults than this is told once, for the model
 
 
-def read_model(path: str | Path, *, allow_outside: bool = False, progress: Progress | None = None) -> FaultModel:
+def read_model(
+    path: str | Path, *, allow_outside: bool = False, where: Mapping[str, str] | None = None, progress: Progress | None = None
+) -> FaultModel:
     """Return the fault model at a path, in metres with up positive.
 
-    `path` is a model file (TOML), a table of faults (CSV), a mesh file, or a folder; a folder with model.toml or faults.csv uses
-    that, any other gives every mesh in it, without senses. Files outside the folder of the model are refused unless `allow_outside`.
-    `progress` is called with what is being done, how many are done, of how many. Raises InputError (FormatError, TableError, SurfaceError).
+    `path` is a model file (TOML), a table of faults (CSV), traces (GeoJSON), a mesh file, or a folder; a folder with model.toml or
+    faults.csv uses that, any other gives every mesh in it, without senses. `where` keeps the traces whose properties have the
+    values given. Files outside the folder of the model are refused unless `allow_outside`. `progress` is called with what is being
+    done, how many are done, of how many. Raises InputError (FormatError, TableError, SurfaceError).
     """
     path = Path(path)
+    if where and path.suffix.lower() not in TRACE_SUFFIXES:
+        raise InputError(path.name, "properties to choose by, for an input without any", "GeoJSON traces", hint="leave --where out")
     if os.path.isdir(path):  # unlike Path.is_dir, False for a path no system could hold
         found = next((path / name for name in ("model.toml", "faults.csv") if (path / name).is_file()), None)
         if found is None:
@@ -44,6 +52,9 @@ def read_model(path: str | Path, *, allow_outside: bool = False, progress: Progr
     if path.suffix.lower() == ".csv":
         striae = "striae.csv" if path.name == "faults.csv" and (path.parent / "striae.csv").is_file() else ""
         return model_of_file(ledger, path, ModelFile(path.resolve().parent.name, faults=path.name, striae=striae), progress)
+    if path.suffix.lower() in TRACE_SUFFIXES:
+        traces = read_traces(content_of(ledger, path), path.name, ledger, where or {})
+        return finished(ledger, path.stem, traces.crs, traces.faults, (), ())
     return model_of_meshes(ledger, [path], path.stem, progress)
 
 

@@ -67,9 +67,10 @@ def main() -> None:
             rows = list(pool.map(outcome, [(state, turn) for state in range(chosen.seed, chosen.seed + chosen.models)]))
             off = np.concatenate([row[2] for row in rows])
             gains = np.array([row[0] for row in rows])
+            high = np.quantile(off, 0.95)
             within = 100 * np.mean(off <= 8.0)
             print(
-                f"{turn:4.0f}  {100 * np.mean([row[1] for row in rows]):14.1f}   {np.median(off):15.1f} {np.quantile(off, 0.95):4.1f}  {within:14.1f}"
+                f"{turn:4.0f}  {100 * np.mean([row[1] for row in rows]):14.1f}   {np.median(off):15.1f} {high:4.1f}  {within:14.1f}"
                 f"   {100 * np.mean([row[3] for row in rows]):11.0f}  {gains.min():17.1f} {np.median(gains):7.1f} {gains.max():5.1f}"
                 f"   {np.median([row[4] for row in rows]):7.2f}",
                 flush=True,
