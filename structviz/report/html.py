@@ -45,7 +45,7 @@ def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], depends: Sen
     data, arrays = _scene_data(analysis)
     viewer = _optional("structviz.report.page_data", "viewer_script")
     bundle = (viewer() if viewer else None) or ""
-    scripts = {"viewer": _whole(bundle), "page": _template("page.js"), "live": live}
+    scripts = {"page": _template("page.js"), "viewer": _whole(bundle), "live": live}  # the page first: it gives the 3D view its room
     slots = {
         "policy": _policy(scripts.values(), asks=bool(live)),
         "title": plain(f"{words.headline(analysis)} – {analysis.model.title or 'structviz'}"),
