@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Callable
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, replace
 from typing import Any
 
@@ -24,7 +26,7 @@ OBTUSE_SHARES = (0.1, 0.85)  # ordinary, and a model of rotated or reactivated b
 OBTUSE_PRIOR = 0.1  # how often a model is of the second kind
 LABEL_TRUST = ((0.08, 0.35), (0.2, 0.5))  # share of wrong labels, softness of the sector's edge
 MODES = 2
-CHUNK_FAULTS = 64  # bounds memory: faults taken at a time over the coarse grid
+CHUNK_FAULTS = 16  # bounds memory: faults taken at a time over the coarse grid
 MODE_APART_RAD = np.radians(35.0)
 WIDEST_RAD = np.radians(18.0)  # a broader posterior is truncated here: beyond, the frames of one mode wrap onto another
 
@@ -52,8 +54,9 @@ def log_likelihood(evidence: FaultEvidence, frames: NDArray[Any], ratios: Floats
 
 def _sums(evidence: FaultEvidence, frames: NDArray[Any], term: Callable[[FaultEvidence, NDArray[Any]], NDArray[Any]]) -> Floats:
     """Return a term of the likelihood summed over the faults, taken in chunks so that memory stays bounded."""
-    chunks = range(0, len(evidence), CHUNK_FAULTS)
-    return sum((term(evidence.part(slice(start, start + CHUNK_FAULTS)), frames).sum(0, dtype=float) for start in chunks), np.zeros(1))
+    chunks = [evidence.part(slice(start, start + CHUNK_FAULTS)) for start in range(0, len(evidence), CHUNK_FAULTS)]
+    with ThreadPoolExecutor(max_workers=min(len(chunks), os.cpu_count() or 1) or 1) as pool:  # arrays let go of the interpreter
+        return sum(pool.map(lambda chunk: term(chunk, frames).sum(0, dtype=float), chunks), np.zeros(1))
 
 
 def survey(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel, terms: Terms) -> tuple[Floats, EvidenceModel]:

@@ -9,6 +9,7 @@ from the best of those with one stress less. How many are called for is chosen i
 from __future__ import annotations
 
 from collections.abc import Iterator
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field, replace
 from typing import Any
 
@@ -19,7 +20,6 @@ from structviz.stress.evidence import EvidenceModel, FaultEvidence, geometry_ter
 from structviz.stress.fabric import on_one_plane
 from structviz.stress.frames import all_frames, ball, turned
 from structviz.stress.joint import (
-    COARSE_FRAMES,
     COARSE_RATIOS,
     FINE_RATIOS,
     LABEL_TRUST,
@@ -36,6 +36,7 @@ Floats = NDArray[np.float64]
 Integers = NDArray[np.int64]
 
 TRUST_IN_DECLARED = 0.9  # probability that a fault belongs where the others of its declared phase do
+SEARCH_FRAMES = 5000  # about 9 degrees apart; what is found is refined off the grid
 FIRST_STARTS, NEXT_STARTS = 3, 3  # of the search: best single stresses, and what best explains the faults they leave
 NEW_SHARES = (0.7, 0.35)  # of faults thought to be new: many inherited planes must not look like a second stress
 SHORT_ROUNDS, LONG_ROUNDS = 4, 40
@@ -58,7 +59,7 @@ class Mixture:
 
 def search(evidence: FaultEvidence, odds: EvidenceModel, belongs: Integers, names: int, most: int) -> list[Mixture]:
     """Return the best mixture of one, two, ... stresses on the grid, each under the odds that suit it best."""
-    frames = all_frames(COARSE_FRAMES)
+    frames = all_frames(SEARCH_FRAMES)
     best: list[Mixture] = []
     for number, (candidate, table) in enumerate(_tables(evidence, frames, odds)):
         fits = _mixtures(table, frames, belongs, names, most)
@@ -82,7 +83,9 @@ def _tables(evidence: FaultEvidence, frames: Floats, odds: EvidenceModel) -> Ite
     lines: NDArray[Any] = np.zeros((1, 1, 1), np.float32)
     if evidence.measured.any():
         lines = slip_term(evidence.slips, single, COARSE_RATIOS, odds.line_scatter_deg, odds.wrong_line_share)
-    others = [lines + sense_term(evidence, single, COARSE_RATIOS, replace(odds, wrong_label_share=w, shear_softness=s)) for w, s in trust]
+    labels = [replace(odds, wrong_label_share=w, shear_softness=s) for w, s in trust]
+    with ThreadPoolExecutor(max_workers=len(labels)) as pool:
+        others = list(pool.map(lambda each: lines + sense_term(evidence, single, COARSE_RATIOS, each), labels))
     tops = [max(float((on_axes.sum(0)[:, None] + other.sum(0)).max()) for other in others) for on_axes in axes.values()]
     alone = shapes[int(np.argmax(tops))]
     tight = replace(alone, plane_scatter_deg=SCATTERS_DEG[0])
