@@ -19,6 +19,7 @@ from structviz.report.results_json import results_text
 from structviz.report.summary import show
 from structviz.report.write import RESULTS, Written, checked_target, write_outputs
 from structviz.scenarios import Sensitivity, sensitivity
+from structviz.views import prepare
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -44,6 +45,8 @@ def run(args: argparse.Namespace) -> int:
     with ending_like_an_interrupt(), progress_bar() as progress:
         model = read_model(args.path, allow_outside=args.allow_outside, where=where_of(args.where), progress=progress)
         model = with_measurements(model, args.mechanisms, args.well_azimuths)
+        if args.out is not None and not args.no_pictures:
+            prepare()
         analysis = analyse(model, settings, limits=limits, progress=progress)
         depends = sensitivity(analysis, progress) if args.sensitivity else None
         written = None

@@ -3,14 +3,34 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from contextlib import suppress
+from importlib import import_module
 from pathlib import Path
+from threading import Thread
 
 from structviz.analysis import Analysis
 from structviz.errors import RenderingUnavailable
-from structviz.views.gl import require_gl
+from structviz.views.gl import require_gl, working_window
 from structviz.views.registry import draw, views
 
-__all__ = ["render", "views"]
+__all__ = ["prepare", "render", "views"]
+
+
+def prepare() -> Thread:
+    """Return a thread that loads what draws and asks for OpenGL, a second's work, while the caller computes.
+
+    Whatever fails in it fails again, and is told, when pictures are drawn.
+    """
+    thread = Thread(target=_prepare, daemon=True)
+    thread.start()
+    return thread
+
+
+def _prepare() -> None:
+    with suppress(Exception):
+        working_window()
+        for entry in views().values():
+            import_module(f"{__name__}.{entry.renderer}")
 
 
 def render(

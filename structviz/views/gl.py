@@ -6,11 +6,13 @@ import os
 import subprocess
 import sys
 from functools import cache
+from threading import Lock
 
 from structviz.errors import RenderingUnavailable
 
 PACKAGES = "apt-get install -y --no-install-recommends libegl1 libgl1-mesa-dri"
 SECONDS = 30.0
+ASKING = Lock()  # one question at a time: two threads would both wait for an answer of their own
 WINDOWS = ("vtkEGLRenderWindow", "")  # off-screen first; then whatever VTK takes by itself
 
 # Renders 16 by 16 pixels of a known colour and reads one back.
@@ -31,9 +33,14 @@ print("works" if pixel.GetValue(0) > 200 and pixel.GetValue(1) < 50 else "blank"
 """
 
 
-@cache
 def working_window() -> str | None:
     """Return the VTK window class that renders here ("" for its default), or None; the answer is kept for the process."""
+    with ASKING:
+        return _asked_window()
+
+
+@cache
+def _asked_window() -> str | None:
     for window in WINDOWS:
         environment = {**os.environ, "VTK_DEFAULT_OPENGL_WINDOW": window} if window else dict(os.environ)
         if not window and not os.environ.get("DISPLAY") and sys.platform.startswith("linux"):

@@ -103,7 +103,7 @@ def test_without_opengl_the_net_is_drawn_and_the_reason_told(analysis, tmp_path,
 
 def test_the_probe_takes_a_crash_for_a_no(monkeypatch):
     monkeypatch.setattr(gl_module, "PROBE", "import os; os.kill(os.getpid(), 11)")
-    assert gl_module.working_window.__wrapped__() is None
+    assert gl_module._asked_window.__wrapped__() is None
 
 
 def test_importing_views_loads_no_graphics():
