@@ -18,11 +18,11 @@ def _turning(by_deg: float) -> Examined:
 @check(
     "regime-not-uniform",
     title="a stress that turns from one part of the model to another",
-    why="faults are judged by one stress, which where it turns is nowhere the right one",
+    why="one stress for the whole model would nowhere be the right one; where it can be, the model is judged part by part",
     unit="deg",
     limit=20.0,
     source="",
-    hint="look at the field of axes, and judge the parts of the model apart",
+    hint="look at the field (structviz check --field), and ask what turns it: a bend of the belt, a large fault, or two ages",
     passes=lambda: _turning(10.0),
     fails=lambda: _turning(45.0),
     low=5.0,
@@ -36,8 +36,8 @@ def regime_not_uniform(examined: Examined, limit: float) -> Iterator[Found]:
         return
     (e1, n1, _), (e2, n2, _) = field.first, field.second
     text = (
-        f"the azimuth of the greatest horizontal compression turns by {field.turn_deg:.0f} deg: {field.first_shmax_deg:03.0f} near "
-        f"{e1:.0f} E, {n1:.0f} N and {field.second_shmax_deg:03.0f} near {e2:.0f} E, {n2:.0f} N"
+        f"the azimuth of the greatest horizontal compression turns by {field.turn_deg:.0f} deg: {round(field.first_shmax_deg) % 180:03d} near "
+        f"{e1:.0f} E, {n1:.0f} N and {round(field.second_shmax_deg) % 180:03d} near {e2:.0f} E, {n2:.0f} N"
     )
     numbers = (("turn_deg", round(field.turn_deg, 1)), ("bandwidth_m", round(field.radius_m)), ("gain_nats", round(field.gain_nats, 1)))
     yield Found("model", "warning", text, numbers)
