@@ -35,9 +35,10 @@ def regime_not_uniform(examined: Examined, limit: float) -> Iterator[Found]:
     if field is None or field.turn_deg <= limit:
         return
     (e1, n1, _), (e2, n2, _) = field.first, field.second
+    one, two = (round(azimuth) % 180 for azimuth in (field.first_shmax_deg, field.second_shmax_deg))
     text = (
-        f"the azimuth of the greatest horizontal compression turns by {field.turn_deg:.0f} deg: {round(field.first_shmax_deg) % 180:03d} near "
-        f"{e1:.0f} E, {n1:.0f} N and {round(field.second_shmax_deg) % 180:03d} near {e2:.0f} E, {n2:.0f} N"
+        f"the azimuth of the greatest horizontal compression turns by {field.turn_deg:.0f} deg: {one:03d} near "
+        f"{e1:.0f} E, {n1:.0f} N and {two:03d} near {e2:.0f} E, {n2:.0f} N"
     )
     numbers = (("turn_deg", round(field.turn_deg, 1)), ("bandwidth_m", round(field.radius_m)), ("gain_nats", round(field.gain_nats, 1)))
     yield Found("model", "warning", text, numbers)
