@@ -31,10 +31,15 @@ if TYPE_CHECKING:
     from structviz.analysis import Analysis, FaultResult, Settings, run
     from structviz.io import read_model, write_surface
     from structviz.kinematics.senses import Sector, sector_of_rake, sector_of_words
-    from structviz.model import Fault, FaultModel, Finding, Horizon, Stria
+    from structviz.model import Fault, FaultModel, Finding, Horizon, Mechanism, Stria, WellAzimuth
+    from structviz.report.html import page_text
     from structviz.report.results_json import results_text
     from structviz.report.tables import data_frame, fault_table, pair_table
     from structviz.report.write import Written, write_outputs
+    from structviz.scenarios import Sensitivity, sensitivity
+    from structviz.stress.by_place import ByPlace
+    from structviz.stress.compare import Comparison
+    from structviz.stress.field import StressField, stress_field
     from structviz.stress.regime import Reading, Regime
     from structviz.stress.verdict import Cause, Verdict
     from structviz.surfaces.surface import Surface
@@ -42,7 +47,9 @@ if TYPE_CHECKING:
 __all__ = [
     "Analysis",
     "ArgumentError",
+    "ByPlace",
     "Cause",
+    "Comparison",
     "Fault",
     "FaultModel",
     "FaultResult",
@@ -50,29 +57,36 @@ __all__ = [
     "FormatError",
     "Horizon",
     "InputError",
+    "Mechanism",
     "OutputError",
     "Reading",
     "Regime",
     "RenderingUnavailable",
     "Sector",
+    "Sensitivity",
     "Settings",
+    "StressField",
     "Stria",
     "StructvizError",
     "Surface",
     "SurfaceError",
     "TableError",
     "Verdict",
+    "WellAzimuth",
     "Written",
     "__version__",
     "check",
     "data_frame",
     "fault_table",
+    "page_text",
     "pair_table",
     "read_model",
     "results_text",
     "run",
     "sector_of_rake",
     "sector_of_words",
+    "sensitivity",
+    "stress_field",
     "write_outputs",
     "write_surface",
 ]
@@ -91,13 +105,22 @@ _HOME = {
     "FaultModel": "model",
     "Finding": "model",
     "Horizon": "model",
+    "Mechanism": "model",
     "Stria": "model",
+    "WellAzimuth": "model",
+    "page_text": "report.html",
     "results_text": "report.results_json",
     "data_frame": "report.tables",
     "fault_table": "report.tables",
     "pair_table": "report.tables",
     "Written": "report.write",
     "write_outputs": "report.write",
+    "Sensitivity": "scenarios",
+    "sensitivity": "scenarios",
+    "ByPlace": "stress.by_place",
+    "Comparison": "stress.compare",
+    "StressField": "stress.field",
+    "stress_field": "stress.field",
     "Reading": "stress.regime",
     "Regime": "stress.regime",
     "Cause": "stress.verdict",

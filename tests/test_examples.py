@@ -70,3 +70,11 @@ def test_the_example_from_arrays_names_the_wrong_label(tmp_path: Path) -> None:
     assert {name for name, line in answers.items() if "conflicts: East 3" not in line} == {"East 3"}
     assert answers["East 3"].endswith("conflicts: none")
     assert not list(tmp_path.iterdir())
+
+
+def test_the_turning_example_follows_the_turn_and_ends_with_the_data(tmp_path: Path) -> None:
+    rows = [line.split() for line in printed("04", tmp_path).splitlines()[-6:]]
+    azimuths = [float(row[1]) for row in rows[:5]]
+    assert azimuths == sorted(azimuths)
+    assert 40.0 < azimuths[-1] - azimuths[0] < 75.0
+    assert "blank" in rows[5]
