@@ -16,7 +16,7 @@ Floats = NDArray[np.float64]
 
 OWN = 0.75  # membership from which a fault is a phase's own
 NEAR_SCATTERS = 2.5  # a plane this many scatters from the ideal one is still on it
-LEAST_ON_EACH = 1.0  # faults
+LEAST_ON_EACH = 2.0  # faults; chosen on models of one seed and checked on another (tests/benchmarks/phases.py)
 
 
 def on_one_plane(evidence: FaultEvidence, membership: Floats, frames: Floats, odds: EvidenceModel) -> NDArray[np.bool_]:
