@@ -42,7 +42,7 @@ def _petal(petal: list[tuple[int, FaultResult]], start_deg: float, scale: float)
         low, high = np.sqrt(inside) * scale, np.sqrt(outside) * scale
         both = [_sector(start_deg + turn, low, high, result.verdict.word) for turn in (0.0, 180.0)]
         parts.append(
-            group(both, title=f"{result.fault.name}, {result.verdict.word}", data_fault=number, class_=f"fault {result.verdict.word}")
+            group(both, title=f"{result.verdict.word}: {result.fault.name}", data_fault=number, class_=f"fault {result.verdict.word}")
         )
         inside = outside
     return parts
@@ -82,5 +82,5 @@ def _block(x: float, y: float, wide: float, tall: float, number: int, result: Fa
     block = path(
         corners, closed=True, fill=colour(word), stroke=colour("ink") if word == "conflicting" else "none", stroke_width=look.width / 3
     )
-    told = f"{result.fault.name}, {result.verdict.misfit_deg:.0f}\u00b0, {word}"
+    told = f"{word}, {result.verdict.misfit_deg:.0f}\u00b0: {result.fault.name}"
     return group([block], title=told, data_fault=number, class_=f"fault {word}")
