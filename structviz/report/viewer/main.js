@@ -1,0 +1,19 @@
+// The 3D view of the page: puts the parts together and speaks with the rest of the page through events.
+
+import { readData } from "./data.js";
+import { startView } from "./view.js";
+
+const tell = (name, detail) => document.dispatchEvent(new CustomEvent(`structviz:${name}`, { detail }));
+const place = document.getElementById("scene");
+
+try {
+  const probe = document.createElement("canvas").getContext("webgl2");
+  if (!probe) throw new Error("no WebGL");
+  probe.getExtension("WEBGL_lose_context")?.loseContext();
+  const { data, arrays } = await readData();
+  startView(place, data, arrays, tell);
+} catch (error) {
+  place.replaceChildren();
+  place.classList.add("no-webgl");
+  tell("scene-failed", { why: String(error?.message ?? error).slice(0, 200) });
+}
