@@ -69,7 +69,7 @@ class _Store:
         self._end += len(data)
 
     def deflated(self) -> bytes:
-        return zlib.compress(b"".join(self._pieces), 9)
+        return zlib.compress(b"".join(self._pieces), 5)  # 9 is ten times as slow and 5 % smaller
 
 
 def page_data(analysis: Analysis, *, triangles: int = MOST_TRIANGLES) -> tuple[dict[str, Any], bytes]:
@@ -169,10 +169,17 @@ def _fault(result: FaultResult, box: dict[str, Any], origin: NDArray) -> dict[st
         "strike": round(result.measured.strike_deg, 1),
         "size": round(float(np.sqrt(result.measured.area_m2)), 1),
         "place": _numbers(middle - origin),
+        "top": _numbers(_top(places) - origin),
         "normal": _numbers(result.measured.normal, 5),
         "declared": _slip(result, result.sector.rake_deg) if result.sector else None,
         "predicted": _slip(result, predicted) if predicted is not None else None,
     }
+
+
+def _top(places: NDArray) -> NDArray:
+    """Return the middle of the upper edge, (3,) m, of a fault with stations at places (S, 3)."""
+    upper = places[places[:, 2] >= np.quantile(places[:, 2], 0.75)]
+    return upper[((upper - upper.mean(0)) ** 2).sum(1).argmin()]
 
 
 def _slip(result: FaultResult, rake_deg: float) -> list[float]:

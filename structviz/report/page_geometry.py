@@ -18,7 +18,6 @@ Floats = NDArray[np.float64]
 Integers = NDArray[np.int64]
 
 STEPS = 65_535  # of a place along each side of the box of its surface
-FINEST, COARSEST = 1.15, 4.0  # cells tried, in lengths of the mean triangle
 
 
 @dataclass(frozen=True, eq=False)
@@ -55,8 +54,7 @@ def _to_share(surface: Surface, share: float) -> Drawn:
 
 def clustered(surface: Surface, cell_m: float) -> Drawn:
     """Return the surface with all vertices of a cubic cell drawn to the one nearest their mean; triangles that collapse are left out."""
-    low = surface.vertices.min(0)
-    cells = np.floor((surface.vertices - low) / cell_m).astype(np.int64)
+    cells = np.floor((surface.vertices - surface.vertices.min(0)) / cell_m).astype(np.int64)
     size = cells.max(0) + 1
     keys = (cells[:, 0] * size[1] + cells[:, 1]) * size[2] + cells[:, 2]
     _, member, counts = np.unique(keys, return_inverse=True, return_counts=True)
@@ -67,7 +65,8 @@ def clustered(surface: Surface, cell_m: float) -> Drawn:
     triangles = member[surface.triangles]
     a, b, c = triangles.T
     kept = np.flatnonzero((a != b) & (b != c) & (c != a))
-    _, first = np.unique(np.sort(triangles[kept], 1), axis=0, return_index=True)
+    low, middle, high = np.sort(triangles[kept], 1).T
+    _, first = np.unique((low * len(counts) + middle) * len(counts) + high, return_index=True)  # below 2**63 up to two million places
     kept = kept[np.sort(first)]
     moved = np.linalg.norm(surface.vertices - surface.vertices[chosen][member], axis=1)
     used, renumbered = np.unique(triangles[kept], return_inverse=True)

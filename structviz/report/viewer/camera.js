@@ -40,7 +40,7 @@ export function makeCamera(element, data, redraw) {
     const extent = (axis) => Math.abs(span.x * axis.x) + Math.abs(span.y * axis.y) + Math.abs(span.z * axis.z);
     const across = Math.max(extent(right), 0.02 * size);
     const tall = Math.max(extent(above), 0.02 * size);
-    return 0.86 * Math.min((camera.right - camera.left) / across, (camera.top - camera.bottom) / tall);
+    return 0.92 * Math.min((camera.right - camera.left) / across, (camera.top - camera.bottom) / tall);
   }
 
   function place(target, towards, zoom) {

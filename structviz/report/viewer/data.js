@@ -19,6 +19,7 @@ export async function readData() {
 export function unpack(boxes, places, corners) {
   const total = boxes.reduce((sum, box) => sum + box.triangles, 0);
   const positions = new Float32Array(total * 9);
+  const cornerOf = new Uint32Array(total * 3); // vertex within its own surface
   let place = 0;
   let corner = 0;
   for (const { low, step, vertices, triangles } of boxes) {
@@ -33,12 +34,13 @@ export function unpack(boxes, places, corners) {
     let vertex = 0;
     for (let end = corner + 3 * triangles; corner < end; corner++) {
       vertex += corners[corner];
+      cornerOf[corner] = vertex;
       positions[3 * corner] = at[3 * vertex];
       positions[3 * corner + 1] = at[3 * vertex + 1];
       positions[3 * corner + 2] = at[3 * vertex + 2];
     }
   }
-  return positions;
+  return { positions, cornerOf };
 }
 
 // First triangle of each surface, with the total at the end.

@@ -49,7 +49,7 @@ export function fillWhere(where, origin, name, point, height, value) {
 
 export function fillLegend(legend, data, field) {
   if (!field) {
-    const rows = ["conflicting", "undetermined", "consistent"].map((word) => {
+    const rows = ["conflicting", "undetermined", "consistent"].filter((word) => data.faults.some(({ verdict }) => verdict === word)).map((word) => {
       const swatch = element("i");
       swatch.style.background = `var(--${word}, ${data.colours[word]})`;
       return element("div", {}, swatch, word);

@@ -7,9 +7,6 @@ const tell = (name, detail) => document.dispatchEvent(new CustomEvent(`structviz
 const place = document.getElementById("scene");
 
 try {
-  const probe = document.createElement("canvas").getContext("webgl2");
-  if (!probe) throw new Error("no WebGL");
-  probe.getExtension("WEBGL_lose_context")?.loseContext();
   const { data, arrays } = await readData();
   startView(place, data, arrays, tell);
 } catch (error) {

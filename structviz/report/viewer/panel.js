@@ -35,17 +35,17 @@ export const STYLE = `
 #scene { overflow: hidden; }
 #scene canvas { display: block; width: 100%; height: 100%; touch-action: none; outline-offset: -2px; }
 .sv-panel { position: absolute; font-size: .8rem; line-height: 1.35; color: var(--ink, #22303c); background: color-mix(in srgb, var(--raised, #fff) 86%, transparent); border-radius: 3px; }
-.sv-top { top: .55rem; left: .7rem; right: .7rem; display: flex; flex-wrap: wrap; gap: .3rem .5rem; align-items: flex-start; background: none; pointer-events: none; }
+.sv-top { top: .55rem; left: .7rem; right: .7rem; display: flex; flex-wrap: wrap; gap: .3rem .5rem; align-items: center; background: none; pointer-events: none; }
 .sv-top > * { pointer-events: auto; background: color-mix(in srgb, var(--raised, #fff) 86%, transparent); border-radius: 3px; }
 .sv-row { display: flex; align-items: center; gap: .45rem; padding: .12rem .35rem; }
 .sv-row > span:first-child { color: var(--quiet, #5b6872); }
 .sv-panel select, .sv-panel button, .sv-panel summary { font: inherit; color: inherit; background: var(--raised, #fff); border: 1px solid var(--hair, #d9d7d0); border-radius: 3px; padding: .14rem .45rem; cursor: pointer; max-width: 13rem; }
 .sv-panel option { background: var(--raised, #fff); color: var(--ink, #22303c); }
 .sv-more { margin-left: auto; }
-.sv-more summary { list-style: none; float: right; }
+.sv-more { text-align: right; align-self: flex-start; background: none !important; } .sv-inside { background: color-mix(in srgb, var(--raised, #fff) 90%, transparent); } .sv-more summary { list-style: none; display: inline-block; }
 .sv-more summary::-webkit-details-marker { display: none; }
 .sv-more[open] summary { border-color: var(--ink, #22303c); }
-.sv-inside { clear: both; padding: .5rem .4rem .4rem; display: grid; gap: .12rem; width: 16.5rem; max-width: calc(100vw - 3rem); }
+.sv-inside { text-align: left; padding: .5rem .4rem .4rem; display: grid; gap: .12rem; width: 16.5rem; max-width: calc(100vw - 3rem); }
 .sv-inside .sv-row > span:first-child { width: 6.4rem; flex: none; }
 .sv-inside input[type="range"] { flex: 1; min-width: 0; accent-color: var(--ink, #22303c); }
 .sv-inside output { width: 3.9rem; text-align: right; white-space: nowrap; }
@@ -61,6 +61,10 @@ export const STYLE = `
 .sv-where { text-align: right; color: var(--quiet, #5b6872); min-height: 1.35em; font-variant-numeric: tabular-nums; }
 .sv-where b { color: var(--ink, #22303c); font-weight: 600; }
 .sv-note { color: var(--quiet, #5b6872); padding: .15rem .35rem; font-size: .75rem; }
+.sv-names { position: absolute; inset: 0; overflow: hidden; pointer-events: none; font-size: .75rem; line-height: 1.25; }
+.sv-names bdi { position: absolute; left: 0; top: 0; white-space: nowrap; padding: 0 .3rem; border-radius: 2px; color: var(--ink, #22303c); background: color-mix(in srgb, var(--raised, #fff) 82%, transparent); }
+.sv-names .conflicting { border-bottom: 2px solid var(--conflicting, #a33a1c); }
+.sv-names .picked { font-weight: 600; box-shadow: 0 0 0 1px var(--ink, #22303c); }
 .sv-compass { width: 46px; height: 46px; flex: none; }
 @media (max-width: 640px) { .sv-top .sv-row > span:first-child { display: none; } .sv-top { gap: .2rem; } .sv-top > .sv-row { padding: 0; } .sv-panel select { max-width: 8.5rem; } .sv-where { font-size: .72rem; } .sv-inside .sv-row > span:first-child { display: inline !important; } }
 `;

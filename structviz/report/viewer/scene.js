@@ -8,36 +8,40 @@ import { starts, unpack } from "./data.js";
 
 export function faultMesh(data, arrays) {
   const geometry = new BufferGeometry();
-  const positions = unpack(data.faults, arrays["faults.places"], arrays["faults.corners"]);
+  const { positions, cornerOf } = unpack(data.faults, arrays["faults.places"], arrays["faults.corners"]);
   geometry.setAttribute("position", new BufferAttribute(positions, 3));
   geometry.setAttribute("color", new BufferAttribute(new Uint8Array((positions.length / 3) * 4), 4, true));
-  const material = new MeshLambertMaterial({ vertexColors: true, side: DoubleSide, flatShading: true, alphaTest: 0.5 });
+  const material = new MeshLambertMaterial({ vertexColors: true, side: DoubleSide, flatShading: true, alphaTest: 0.5, polygonOffset: true, polygonOffsetFactor: 1, polygonOffsetUnits: 1 });
   const mesh = new Mesh(geometry, material);
-  mesh.userData.begin = starts(data.faults);
+  mesh.userData = { begin: starts(data.faults), cornerOf };
   return mesh;
 }
 
-// Edges that belong to one triangle of a fault only.
-export function rimOf(positions, from, to) {
-  const seen = new Map();
-  const key = (at) => `${positions[at]},${positions[at + 1]},${positions[at + 2]}`;
-  for (let triangle = from; triangle < to; triangle++) {
-    const corners = [0, 3, 6].map((k) => 9 * triangle + k);
-    const names = corners.map(key);
-    for (let k = 0; k < 3; k++) {
-      const next = (k + 1) % 3;
-      const edge = names[k] < names[next] ? `${names[k]}|${names[next]}` : `${names[next]}|${names[k]}`;
-      seen.set(edge, seen.has(edge) ? null : [corners[k], corners[next]]);
-    }
-  }
+// Edges that belong to one triangle only, of triangles `from` up to `to`, which are one surface.
+export function rimOf(mesh, from, to) {
+  const { cornerOf } = mesh.userData;
+  const positions = mesh.geometry.getAttribute("position").array;
+  const keys = new Float64Array(3 * (to - from));
+  const key = (at) => {
+    const [a, b] = [cornerOf[at], cornerOf[at % 3 === 2 ? at - 2 : at + 1]];
+    return Math.min(a, b) * 4294967296 + Math.max(a, b);
+  };
+  for (let k = 0; k < keys.length; k++) keys[k] = key(3 * from + k);
+  const once = alone(Float64Array.from(keys).sort());
   const points = [];
-  for (const ends of seen.values()) if (ends) for (const at of ends) points.push(positions[at], positions[at + 1], positions[at + 2]);
-  return new Float32Array(points);
+  keys.forEach((value, k) => {
+    if (!once.has(value)) return;
+    const at = 3 * from + k;
+    for (const end of [at, at % 3 === 2 ? at - 2 : at + 1]) points.push(positions[3 * end], positions[3 * end + 1], positions[3 * end + 2]);
+  });
+  return points;
 }
+
+const alone = (sorted) => new Set(sorted.filter((value, k) => value !== sorted[k - 1] && value !== sorted[k + 1]));
 
 export function lines(points, colour, order = 0) {
   const geometry = new BufferGeometry();
-  geometry.setAttribute("position", new BufferAttribute(points, 3));
+  geometry.setAttribute("position", new BufferAttribute(Float32Array.from(points), 3));
   const made = new LineSegments(geometry, new LineBasicMaterial({ color: colour }));
   made.renderOrder = order;
   return made;
@@ -46,7 +50,7 @@ export function lines(points, colour, order = 0) {
 export function horizonMesh(data, arrays, colour) {
   if (!data.horizons.length) return null;
   const geometry = new BufferGeometry();
-  geometry.setAttribute("position", new BufferAttribute(unpack(data.horizons, arrays["horizons.places"], arrays["horizons.corners"]), 3));
+  geometry.setAttribute("position", new BufferAttribute(unpack(data.horizons, arrays["horizons.places"], arrays["horizons.corners"]).positions, 3));
   const material = new MeshLambertMaterial({ color: colour, side: DoubleSide, flatShading: true, transparent: true, opacity: 0.28, depthWrite: false });
   return new Mesh(geometry, material);
 }
@@ -85,7 +89,7 @@ export function slipLines(data, which) {
     const place = new Vector3(...fault.place).addScaledVector(new Vector3(...fault.normal), 0.02 * fault.size);
     arrow(points, place, new Vector3(...fault[which]), new Vector3(...fault.normal), 0.35 * fault.size);
   }
-  return new Float32Array(points);
+  return points;
 }
 
 function arrow(points, tail, along, normal, length) {
@@ -96,8 +100,7 @@ function arrow(points, tail, along, normal, length) {
 }
 
 export function striaLines(data, length) {
-  const points = data.striae.flatMap(({ place, along }) => [-1, 1].flatMap((side) => place.map((value, k) => value + (side * length * along[k]) / 2)));
-  return new Float32Array(points);
+  return data.striae.flatMap(({ place, along }) => [-1, 1].flatMap((side) => place.map((value, k) => value + (side * length * along[k]) / 2)));
 }
 
 // The floor of the frame and its posts.
@@ -106,7 +109,7 @@ export function frameLines({ low, high }) {
   const [e, n, t] = high;
   const floor = [[w, s, b], [e, s, b], [e, n, b], [w, n, b]];
   const points = floor.flatMap((corner, k) => [...corner, ...floor[(k + 1) % 4], ...corner, corner[0], corner[1], t]);
-  return new Float32Array(points);
+  return points;
 }
 
 export const asColour = (text) => new Color(text.trim());

@@ -5,6 +5,7 @@ import { makeCamera } from "./camera.js";
 import { NOTHING, paint, rgb } from "./colours.js";
 import { fillLegend, fillWhere, makeFoot } from "./furniture.js";
 import { choice, element, number, slider, STYLE, toggle } from "./panel.js";
+import { makeNames } from "./names.js";
 import { makePicker } from "./picking.js";
 import { AXES, makeSection } from "./section.js";
 import { faultMesh, frameLines, glyphGroup, horizonMesh, lines, rimOf, slipLines, striaLines } from "./scene.js";
@@ -40,13 +41,14 @@ export function startView(place, data, arrays, tell) {
   const movable = [mesh, horizons, declared, predicted, striae].filter(Boolean);
   declared.visible = predicted.visible = false;
   model.add(frame, ...movable);
-  const lamp = new DirectionalLight("#ffffff", 1.7);
-  scene.add(model, new AmbientLight("#ffffff", 1.75), lamp, lamp.target);
+  const lamp = new DirectionalLight("#ffffff", 1.5);
+  scene.add(model, new AmbientLight("#ffffff", 1.6), lamp, lamp.target);
   if (glyphs) scene.add(glyphs);
 
   const section = makeSection(data);
   const picker = makePicker(mesh, view.camera);
   const foot = makeFoot();
+  const names = makeNames(data, place);
   const legend = element("div", { class: "sv-panel sv-legend" });
 
   // --- drawing: only when something changed ---
@@ -61,6 +63,7 @@ export function startView(place, data, arrays, tell) {
     lamp.target.position.copy(view.controls.target);
     renderer.render(scene, view.camera);
     foot.update(view.camera, view.controls, place.clientWidth);
+    names.update(view.camera, state, section);
   }
   function fit() {
     const [width, height] = [place.clientWidth, place.clientHeight];
@@ -79,6 +82,24 @@ export function startView(place, data, arrays, tell) {
     paint(held.array, { begin, shownFaults: state.shown, field: state.field, codes, verdictColours });
     held.needsUpdate = true;
     fillLegend(legend, data, state.field);
+    drawRims();
+  }
+  // Rims of what is shown; those of conflicts shine through what stands before them.
+  let rimsOf = null;
+  const rims = new Group();
+  model.add(rims);
+  function drawRims() {
+    for (const old of rims.children) old.geometry.dispose();
+    rims.clear();
+    if (rimsOf) {
+      for (const [word, order] of [["consistent", 0], ["undetermined", 0], ["conflicting", 4]]) {
+        const points = data.faults.flatMap((fault, k) => (fault.verdict === word && state.shown[k] ? rimsOf[k] : []));
+        if (!points.length) continue;
+        const made = lines(points, order ? colour("conflicting", data.colours.conflicting) : ink, order);
+        Object.assign(made.material, { transparent: true, opacity: order ? 0.9 : 0.35, depthTest: !order, clippingPlanes: section.planes(state.height) });
+        rims.add(made);
+      }
+    }
     redraw();
   }
   const boxOf = (fault) => {
@@ -95,7 +116,7 @@ export function startView(place, data, arrays, tell) {
       state.outline = null;
     }
     if (fault !== null && state.shown[fault]) {
-      state.outline = lines(rimOf(mesh.geometry.getAttribute("position").array, begin[fault], begin[fault + 1]), ink, 5);
+      state.outline = lines(rimOf(mesh, begin[fault], begin[fault + 1]), ink, 5);
       state.outline.material.depthTest = false;
       state.outline.material.clippingPlanes = section.planes(state.height);
       model.add(state.outline);
@@ -105,7 +126,7 @@ export function startView(place, data, arrays, tell) {
   function cut(text, share) {
     section.set(text, share);
     const planes = section.planes(state.height);
-    for (const object of [...movable, state.outline].filter(Boolean)) object.material.clippingPlanes = planes;
+    for (const object of [...movable, ...rims.children, state.outline].filter(Boolean)) object.material.clippingPlanes = planes;
     const at = section.at();
     where.output.textContent = at === null ? "" : `${number(data.origin[section.axis()] + at)} m`;
     where.input.disabled = at === null;
@@ -247,6 +268,8 @@ export function startView(place, data, arrays, tell) {
   performance.mark("structviz:first-picture");
   new ResizeObserver(fit).observe(place);
   setTimeout(() => {
+    rimsOf = data.faults.map((_, k) => rimOf(mesh, begin[k], begin[k + 1]));
+    drawRims();
     picker.build();
     performance.mark("structviz:pickable");
   }, 0);
