@@ -47,7 +47,7 @@ def _to_share(surface: Surface, share: float) -> Drawn:
     """Return a surface with about a share of its triangles: a grid of cells whose faces are that much larger."""
     corners = surface.vertices[surface.triangles]
     areas = np.linalg.norm(np.cross(corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0]), axis=1) / 2
-    cell = np.sqrt(2 * areas.sum() / max(share * len(areas), 1))
+    cell = np.sqrt(2.4 * areas.sum() / max(share * len(areas), 1))  # 2 for a level surface; cells are cut aslant by others
     found = clustered(surface, cell)
     return found if len(found.triangles) else _whole(surface)
 

@@ -76,10 +76,10 @@ export function makeCamera(element, data, redraw) {
 
   return {
     camera, controls, resize, see, place, whole, middle, size,
-    // Keeps the direction of view and brings a box to the middle, not closer than twice its size.
+    // Keeps the direction of view and brings a box to the middle, with room around it.
     visit(box) {
       const towards = camera.position.clone().sub(controls.target).normalize();
-      fly(box.getCenter(new Vector3()), towards, Math.min(zoomFor(box, towards) * 0.45, 8 * zoomFor(whole(1), towards)));
+      fly(box.getCenter(new Vector3()), towards, Math.min(zoomFor(box, towards) * 0.32, 6 * zoomFor(whole(1), towards)));
     },
     turn(azimuth, elevation) {
       const towards = camera.position.clone().sub(controls.target).normalize();

@@ -19,7 +19,6 @@ export function makeFoot() {
   const scale = element("div", { class: "sv-scale" }, bar, length);
   const where = element("div", { class: "sv-where" });
   const box = element("div", { class: "sv-panel sv-foot" }, compass, scale, where);
-  where.style.flex = "1";
 
   function update(camera, controls, width) {
     const x = new Vector3().setFromMatrixColumn(camera.matrixWorld, 0);

@@ -34,7 +34,7 @@ export function makeNames(data, place) {
       const x = ((top.x + 1) / 2) * width;
       const y = ((1 - top.y) / 2) * height - tall - 4;
       const mine = [x - wide / 2 - 3, y - 2, x + wide / 2 + 3, y + tall + 2];
-      if (mine[0] < 0 || mine[1] < 36 || mine[2] > width || mine[3] > height || taken.some((other) => mine[0] < other[2] && other[0] < mine[2] && mine[1] < other[3] && other[1] < mine[3])) continue;
+      if (mine[0] < 0 || mine[1] < 36 || mine[2] > width || mine[3] > height - 56 || taken.some((other) => mine[0] < other[2] && other[0] < mine[2] && mine[1] < other[3] && other[1] < mine[3])) continue;
       taken.push(mine);
       made.hidden = false;
       made.classList.toggle("picked", fault === state.picked);

@@ -51,7 +51,7 @@ export function horizonMesh(data, arrays, colour) {
   if (!data.horizons.length) return null;
   const geometry = new BufferGeometry();
   geometry.setAttribute("position", new BufferAttribute(unpack(data.horizons, arrays["horizons.places"], arrays["horizons.corners"]).positions, 3));
-  const material = new MeshLambertMaterial({ color: colour, side: DoubleSide, flatShading: true, transparent: true, opacity: 0.28, depthWrite: false });
+  const material = new MeshLambertMaterial({ color: colour, side: DoubleSide, flatShading: true, transparent: true, opacity: 0.15, depthWrite: false });
   return new Mesh(geometry, material);
 }
 

@@ -70,7 +70,6 @@ export function startView(place, data, arrays, tell) {
     if (!width || !height) return;
     renderer.setSize(width, height, false);
     view.resize(width, height);
-    draw();
   }
 
   // --- what is shown ---
@@ -117,7 +116,7 @@ export function startView(place, data, arrays, tell) {
     }
     if (fault !== null && state.shown[fault]) {
       state.outline = lines(rimOf(mesh, begin[fault], begin[fault + 1]), ink, 5);
-      state.outline.material.depthTest = false;
+      Object.assign(state.outline.material, { depthTest: false, transparent: true });
       state.outline.material.clippingPlanes = section.planes(state.height);
       model.add(state.outline);
     }
@@ -264,9 +263,17 @@ export function startView(place, data, arrays, tell) {
   colourAll();
   fit();
   view.see(data.azimuth, 34, view.whole(1), view.place);
+  cancelAnimationFrame(waiting);
   draw();
   performance.mark("structviz:first-picture");
-  new ResizeObserver(fit).observe(place);
+  let size = [place.clientWidth, place.clientHeight].join();
+  new ResizeObserver(() => {
+    const now = [place.clientWidth, place.clientHeight].join();
+    if (now === size) return;
+    size = now;
+    fit();
+    draw();
+  }).observe(place);
   setTimeout(() => {
     rimsOf = data.faults.map((_, k) => rimOf(mesh, begin[k], begin[k + 1]));
     drawRims();
