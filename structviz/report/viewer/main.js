@@ -7,6 +7,8 @@ const tell = (name, detail) => document.dispatchEvent(new CustomEvent(`structviz
 const place = document.getElementById("scene");
 
 try {
+  // Asked here first, because three writes to the console where there is none.
+  if (!document.createElement("canvas").getContext("webgl2")) throw new Error("the browser gives no WebGL");
   const { data, arrays } = await readData();
   startView(place, data, arrays, tell);
 } catch (error) {
