@@ -66,7 +66,7 @@ def sensitivity(analysis: Analysis, progress: Progress | None = None) -> Sensiti
         return None
     tell = progress or (lambda text, done, total: None)
     settings = replace(analysis.settings, replicates=min(analysis.settings.replicates, REPLICATES))
-    carried = tuple(influence(posterior) for posterior in analysis.answer.posteriors)
+    carried = tuple(_of_faults(influence(posterior), len(analysis.faults)) for posterior in analysis.answer.posteriors)
     first = run(analysis.model, settings)
     base = _scenario("base", "as chosen", first)
     found: list[Scenario] = []
@@ -79,6 +79,11 @@ def sensitivity(analysis: Analysis, progress: Progress | None = None) -> Sensiti
     tell("trying other choices", len(cases), len(cases))
     dependences = tuple(_dependences(base, found))
     return Sensitivity(base, tuple(found), dependences, carried, pair_influence_deg(analysis.pairs, analysis.regimes[0].axes))
+
+
+def _of_faults(found: Influence, faults: int) -> Influence:
+    """Return the influence of the faults alone: rows after them are earthquakes, which are heard but cannot be left out."""
+    return Influence(found.turn_deg[:faults], found.shmax_turn_deg[:faults], found.support_nats[:faults])
 
 
 def _cases(analysis: Analysis, settings: Settings, carried: Sequence[Influence]) -> Iterator[tuple[str, str, str, Settings]]:
