@@ -9,24 +9,25 @@ from __future__ import annotations
 import json
 import math
 import re
+from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from structviz.errors import ArgumentError, FormatError, StructvizError, TableError
-from structviz.io.format import start_of
+from structviz.errors import ArgumentError, FormatError, SurfaceError, TableError
+from structviz.io.geographic import projection
 from structviz.io.ledger import Ledger
-from structviz.kinematics.senses import COMPASS_DEG, Sector, sector_of_rake, sector_of_words
+from structviz.kinematics.senses import COMPASS_DEG, DIP_SLIP, RAKE_OF_WORD, Sector, describe_rake, sector_of_rake, sector_of_words
 from structviz.model import Fault
 from structviz.surfaces.from_traces import mean_dip_direction_deg, surface_from_trace
 from structviz.surfaces.surface import Surface
 
 Floats = NDArray[np.float64]
 
-SUFFIXES = (".geojson",)
+SUFFIXES = (".geojson", ".json")
 # What is needed of a trace, and the names under which it is taken, with the factor to our unit. Nothing else is guessed.
 PROPERTIES: Mapping[str, Mapping[str, float]] = {
     "name": {"name": 1, "Name": 1, "fault_name": 1, "FaultName": 1},
@@ -39,7 +40,8 @@ PROPERTIES: Mapping[str, Mapping[str, float]] = {
     "phase": {"phase": 1},
 }
 LOWER_DEPTH_M = 15_000.0  # where none is given: about the base of brittle faulting in continents (common practice)
-WIDE_DEG = 6.0  # of longitude: a wider model gets a projection of its own instead of a UTM zone
+VAGUE_DEG = 45.0  # a dip direction further than this from across the trace is told
+ALONG_DEG = 75.0  # one further than this does not say to which side
 
 
 @dataclass(frozen=True)
@@ -50,11 +52,6 @@ class Traces:
     crs: str
 
 
-def looks_like_traces(content: bytes) -> bool:
-    """Return whether a content is a GeoJSON collection."""
-    return start_of(content).startswith(b"{") and b'"FeatureCollection"' in content[:100_000]
-
-
 def read_traces(content: bytes, file: str, ledger: Ledger, where: Mapping[str, str]) -> Traces:
     """Return the faults of the lines of a GeoJSON collection; notes go into the ledger.
 
@@ -63,26 +60,65 @@ def read_traces(content: bytes, file: str, ledger: Ledger, where: Mapping[str, s
     """
     tree = _parsed(content, file)
     features = list(_lines(tree, file, where, ledger))
-    if not features:
+    if not any(lines for _, _, lines in features):
         chosen = " with " + ", ".join(f"{k}={v}" for k, v in where.items()) if where else ""
         raise FormatError(file, f"no lines{chosen}", "LineString or MultiLineString features", hint="check the file and --where")
     _tell_properties(features, file, ledger)
-    project, crs, told = _projection(tree, np.concatenate([line for _, _, lines in features for line in lines]), file)
-    ledger.note("model", f"{file}: {told}")
-    faults, names, left_out = [], set[str](), []
+    placed = projection(tree, np.concatenate([line for _, _, lines in features for line in lines])[:, :2], file)
+    ledger.note("model", f"{file}: {placed.told}")
+    faults, names, told = [], set[str](), Remarks()
     for number, properties, lines in features:
-        place = f"{file}, feature {number}"
-        fault = _fault(place, properties, [project(line) for line in lines], f"{file}#{number}", ledger)
-        if isinstance(fault, str):
-            left_out.append((fault, _text(properties, "name") or f"feature {number}"))
+        own = [np.column_stack([placed.metres(line[:, :2]), line[:, 2]]) for line in lines]
+        fault = _fault(f"{file}, feature {number}", properties, own, f"{file}#{number}", told)
+        if fault is None:
             continue
-        name = fault.name if fault.name not in names else f"{fault.name} ({number})"
+        name = _free_name(fault.name, number, names)
         names.add(name)
         faults.append(replace(fault, name=name, surface=replace(fault.surface, name=name)))
-    _tell_left_out(left_out, file, ledger)
+    told.tell(file, ledger)
     if not faults:
-        raise FormatError(file, "no line with a dip and a side to dip to", "a dip and dip direction for each", hint="add these properties")
-    return Traces(tuple(faults), crs)
+        reasons = [f"{len(who)} {reason}" for reason, who in told.left_out.items()]
+        shown = ", ".join(reasons[:3]) + (" and other reasons" if len(reasons) > 3 else "")
+        wanted = "a dip, a dip direction across the trace, and a lower depth below the upper"
+        raise FormatError(file, f"no trace that can be used ({shown})", wanted, hint="add or correct these properties")
+    return Traces(tuple(faults), placed.crs)
+
+
+@dataclass
+class Remarks:
+    """What there is to tell of the traces: each remark with the names it is about, told once for all of them."""
+
+    left_out: dict[str, list[str]] = field(default_factory=dict)
+    used: dict[tuple[str, str, str], list[str]] = field(default_factory=dict)
+
+    def leave_out(self, reason: str, name: str) -> None:
+        """Add a trace that is no fault of the model, and why."""
+        self.left_out.setdefault(reason, []).append(name)
+
+    def remark(self, message: str, hint: str, severity: str, name: str) -> None:
+        """Add a trace that is used, though not quite as it stands."""
+        self.used.setdefault((message, hint, severity), []).append(name)
+
+    def tell(self, file: str, ledger: Ledger) -> None:
+        """Note every remark."""
+        for reason, names in self.left_out.items():
+            ledger.note("model", f"{file}: {_counted(names)} left out, {reason}: {_listed(names)}", "add what is missing", "warning")
+        for (message, hint, severity), names in self.used.items():
+            ledger.note("model", f"{file}: {_counted(names)} {message}: {_listed(names)}", hint, severity)
+
+
+def _counted(names: Sequence[str]) -> str:
+    return f"{len(names)} trace{'s' * (len(names) > 1)}"
+
+
+def _listed(names: Sequence[str]) -> str:
+    return ", ".join(names[:8]) + (f" and {len(names) - 8} more" if len(names) > 8 else "")
+
+
+def _free_name(name: str, number: int, taken: set[str]) -> str:
+    """Return a name that no trace before has: its own, else with the number of the feature."""
+    candidates = (name, f"{name} ({number})", *(f"{name} ({number}, {k})" for k in range(2, len(taken) + 3)))
+    return next(candidate for candidate in candidates if candidate not in taken)
 
 
 def _parsed(content: bytes, file: str) -> dict[str, Any]:
@@ -99,28 +135,42 @@ def _parsed(content: bytes, file: str) -> dict[str, Any]:
 
 
 def _lines(tree: dict[str, Any], file: str, where: Mapping[str, str], ledger: Ledger) -> Iterator[tuple[int, dict[str, Any], list[Floats]]]:
-    """Yield number, properties and lines, (N, 2) each, of every feature asked for; others than lines are counted."""
-    other = 0
+    """Yield number, properties and lines, (N, 3) each, of every feature asked for; others than lines are counted."""
+    other, high = 0, 0
     for number, feature in enumerate(tree["features"], 1):
         properties = feature.get("properties") if isinstance(feature, dict) else None
         geometry = feature.get("geometry") if isinstance(feature, dict) else None
         if not isinstance(properties, dict) or not isinstance(geometry, dict):
             other += 1
             continue
-        if any(str(properties.get(key, "")) not in value.split(",") for key, value in where.items()):
+        if not _chosen(properties, where):
             continue
         kind, places = geometry.get("type"), geometry.get("coordinates")
         if kind not in ("LineString", "MultiLineString") or not isinstance(places, list):
             other += 1
             continue
-        yield number, properties, [_line(line, f"{file}, feature {number}") for line in (places if kind == "MultiLineString" else [places])]
+        lines = [_line(line, f"{file}, feature {number}") for line in (places if kind == "MultiLineString" else [places])]
+        high += any(line[:, 2].any() for line in lines)
+        yield number, properties, lines
     if other:
-        ledger.note("model", f"{file}: {other} features are no lines with properties and were left out")
+        ledger.note("model", f"{file}: {other} features left out, no lines with properties")
+    if high:
+        ledger.note("model", f"{file}: heights, which {high} features have, are taken as metres; depths count from there")
+
+
+def _chosen(properties: Mapping[str, Any], where: Mapping[str, str]) -> bool:
+    """Return whether every property asked for has the value given, or one of several parted by commas."""
+    for key, wanted in where.items():
+        found = properties.get(key)
+        if ("" if found is None else str(found)) not in (wanted, *(value.strip() for value in wanted.split(","))):
+            return False
+    return True
 
 
 def _line(places: Any, where: str) -> Floats:
+    """Return longitude, latitude (or easting, northing) and height, 0 where there is none, of each point of a line."""
     try:
-        line = np.array([[float(p[0]), float(p[1])] for p in places], float)
+        line = np.array([[float(p[0]), float(p[1]), float(p[2]) if len(p) > 2 else 0.0] for p in places], float)
     except (TypeError, ValueError, IndexError, KeyError, OverflowError):
         raise FormatError(where, "coordinates that are not pairs of numbers", "pairs of numbers", hint="export the trace again") from None
     if line.ndim != 2 or not np.isfinite(line).all():
@@ -146,7 +196,7 @@ def _number(properties: Mapping[str, Any], wanted: str, where: str, low: float, 
     if value is None:
         return None
     try:
-        found = float(value) * factor
+        found = float(value if not isinstance(value, bool) else "") * factor
     except (TypeError, ValueError):
         raise TableError(where, f"{wanted} {value!r}", "a number", hint="write a number without unit") from None
     if not (math.isfinite(found) and low <= found <= high):
@@ -154,32 +204,52 @@ def _number(properties: Mapping[str, Any], wanted: str, where: str, low: float, 
     return found
 
 
-def _fault(where: str, properties: Mapping[str, Any], lines: Sequence[Floats], source: str, ledger: Ledger) -> Fault | str:
-    """Return the fault of one feature, or in words why it has to be left out."""
+def _fault(where: str, properties: Mapping[str, Any], lines: Sequence[Floats], source: str, told: Remarks) -> Fault | None:
+    """Return the fault of one feature; None where it has to be left out, and why among the remarks."""
     name = _text(properties, "name") or where.rpartition(", ")[2]
-    dip = _number(properties, "dip_deg", where, 0.0, 90.0)
-    if not dip:
-        return "without a dip"
-    side = _side_deg(properties, where)
-    if side is None and dip < 90.0:
-        return "without a dip direction"
-    upper, lower = (_number(properties, key, where, 0.0, 1e5) for key in ("upper_depth_m", "lower_depth_m"))
-    range_m = (upper or 0.0, lower if lower is not None else (upper or 0.0) + LOWER_DEPTH_M)
+    dip, side = _number(properties, "dip_deg", where, 0.0, 90.0), _side_deg(properties, where)
+    lines = [line for line in lines if len(np.unique(line[:, :2], axis=0)) > 1]
+    if not dip or not lines:
+        told.leave_out("of one point" if dip else "without a dip", name)
+        return None
+    across, off = _across_deg(lines, 90.0 if side is None else side)
+    told_side = side is not None and off <= ALONG_DEG
+    if dip < 90.0 and not told_side:
+        told.leave_out("without a dip direction" if side is None else "with a dip direction along the trace", name)
+        return None
+    if told_side and off > VAGUE_DEG:
+        told.remark(f"with a dip direction over {VAGUE_DEG:g} deg off, drawn across the chord", "check the direction", "note", name)
     try:
-        made = [
-            surface_from_trace(line, dip, mean_dip_direction_deg(line, 90.0 if side is None else side), *range_m, name=name)
-            for line in lines
-            if len(np.unique(line, axis=0)) > 1
-        ]
-    except StructvizError as error:
-        return error.message.partition("found ")[2].partition("; wanted")[0]
-    if not made:
-        return "of one point"
+        surface = _surface(lines, dip, across, _depths_m(properties, where), name, source)
+    except SurfaceError as error:
+        told.leave_out(f"with {error.found}", name)
+        return None
+    declared, down_side = _movement(properties, where, name, told), ""
+    if dip == 90.0:
+        declared, down_side = _on_vertical(declared, across if told_side else None)
+    return Fault(name, surface, declared, _text(properties, "phase"), down_side)
+
+
+def _depths_m(properties: Mapping[str, Any], where: str) -> tuple[float, float]:
+    upper, lower = (_number(properties, key, where, 0.0, 1e5) for key in ("upper_depth_m", "lower_depth_m"))
+    return upper or 0.0, lower if lower is not None else (upper or 0.0) + LOWER_DEPTH_M
+
+
+def _surface(lines: Sequence[Floats], dip: float, side: float, depths_m: tuple[float, float], name: str, source: str) -> Surface:
+    """Return the surface of all lines of a feature, each dipping across itself on the side named."""
+    made = [surface_from_trace(line, dip, mean_dip_direction_deg(line, side), *depths_m, name=name) for line in lines]
     starts = np.cumsum([0] + [len(piece.vertices) for piece in made[:-1]])
-    vertices = np.concatenate([piece.vertices for piece in made])
     triangles = np.concatenate([piece.triangles + start for piece, start in zip(made, starts, strict=True)])
-    surface = Surface(name, vertices, triangles, source)
-    return Fault(name, surface, _movement(properties, where), _text(properties, "phase"))
+    return Surface(name, np.concatenate([piece.vertices for piece in made]), triangles, source)
+
+
+def _across_deg(lines: Sequence[Floats], side_deg: float) -> tuple[float, float]:
+    """Return the azimuth across all lines together, on the side named, and how far off that side is, degrees [0, 90]."""
+    chords = np.array([line[-1, :2] - line[0, :2] for line in lines])
+    longest = chords[np.linalg.norm(chords, axis=1).argmax()]
+    whole = (chords * np.where(chords @ longest < 0, -1.0, 1.0)[:, None]).sum(0)
+    across = mean_dip_direction_deg(np.array([0 * whole, whole]) if whole.any() else lines[0], side_deg)
+    return across, abs((across - side_deg + 180.0) % 360.0 - 180.0)
 
 
 def _side_deg(properties: Mapping[str, Any], where: str) -> float | None:
@@ -199,65 +269,59 @@ def _side_deg(properties: Mapping[str, Any], where: str) -> float | None:
     return azimuth % 360.0
 
 
-def _movement(properties: Mapping[str, Any], where: str) -> Sector | None:
-    """Return the declared movement: a rake, else a word; a word of several slips joined otherwise than ours is not taken."""
+def _movement(properties: Mapping[str, Any], where: str, name: str, told: Remarks) -> Sector | None:
+    """Return the declared movement: a rake, else a word. Where both are given and differ, that is told."""
     rake = _number(properties, "rake_deg", where, -360.0, 360.0)
-    if rake is not None:
-        return sector_of_rake((rake + 180.0) % 360.0 - 180.0 if rake != 180.0 else 180.0)
     word = re.sub(r"\s*[-_/ ]\s*", "-", _text(properties, "sense").lower())
     try:
-        return sector_of_words(word) if word else None
+        said = sector_of_words(word) if word else None
     except ArgumentError as error:
         raise TableError(where, f"sense {word!r}", error.message.partition("; wanted ")[2], hint=error.hint) from None
+    if rake is None:
+        return said
+    exact = sector_of_rake(180.0 - (180.0 - rake) % 360.0)
+    if said and abs((exact.rake_deg - said.rake_deg + 180.0) % 360.0 - 180.0) > said.half_width_deg:
+        told.remark("with a rake that belies the sense, the rake used", "correct one of the two", "warning", name)
+    return exact
+
+
+def _on_vertical(declared: Sector | None, hanging_deg: float | None) -> tuple[Sector | None, str]:
+    """Return a movement that does not hang on which wall of a vertical plane is called the hanging one, and the side that went down.
+
+    A rake with some dip-slip in it becomes the words it is nearest to: they are tested with the side that went down, and without a
+    side only what is strike-slip in them is.
+    """
+    if declared is None:
+        return None, ""
+    words = declared.words or tuple(describe_rake(declared.rake_deg).split("-"))
+    slip = next((word for word in words if word in DIP_SLIP), "")
+    if not slip:
+        return declared if declared.words else sector_of_rake(RAKE_OF_WORD[words[0]]), ""
+    down = "" if hanging_deg is None else _compass(hanging_deg if slip == "normal" else hanging_deg + 180.0)
+    return sector_of_words("-".join(words)), down
+
+
+def _compass(azimuth_deg: float) -> str:
+    return list(COMPASS_DEG)[round(azimuth_deg / 22.5) % 16]
 
 
 def _tell_properties(features: Sequence[tuple[int, dict[str, Any], list[Floats]]], file: str, ledger: Ledger) -> None:
     """Note which properties were taken for what, and what was assumed where there was none."""
-    used = []
+    used: list[str] = []
     for wanted, names in PROPERTIES.items():
-        found = [key for key in names if any(properties.get(key) not in (None, "") for _, properties, _ in features)]
-        if found:
-            unit = " (km)" if names[found[0]] == 1000 else ""
-            used.append(f"{wanted} from {found[0]}{unit}")
-    ledger.note("model", f"{file}: {'; '.join(used)}")
+        given = [[key for key in names if properties.get(key) not in (None, "")] for _, properties, _ in features]
+        taken = Counter(keys[0] for keys in given if keys)
+        words = [f"{key}{' (km)' * (names[key] == 1000)}{f' ({count})' * (len(taken) > 1)}" for key, count in taken.items()]
+        used += [f"{wanted} from {' and '.join(words)}"] if words else []
+        passed_over = [keys for keys in given if len(keys) > 1]
+        if passed_over:
+            first, *others = passed_over[0]
+            ledger.note(
+                "model",
+                f"{file}: {len(passed_over)} of {len(given)} traces give {wanted} as {first} and {', '.join(others)}; {first} is used",
+            )
+    ledger.note("model", f"{file}: {'; '.join(used) or 'no property that is known'}")
     lacking = sum(_value(properties, "lower_depth_m")[0] is None for _, properties, _ in features)
     if lacking:
-        ledger.note("model", f"{file}: {lacking} traces give no lower depth and were drawn down to {LOWER_DEPTH_M / 1000:g} km")
-
-
-def _tell_left_out(left_out: Sequence[tuple[str, str]], file: str, ledger: Ledger) -> None:
-    for reason in dict.fromkeys(reason for reason, _ in left_out):
-        names = [name for why, name in left_out if why == reason]
-        shown = ", ".join(names[:8]) + (f" and {len(names) - 8} more" if len(names) > 8 else "")
-        ledger.note("model", f"{file}: {len(names)} traces {reason} were left out: {shown}", "add what is missing", "warning")
-
-
-def _projection(tree: dict[str, Any], places: Floats, file: str) -> tuple[Any, str, str]:
-    """Return a function from the file's coordinates to metres, the reference system of these, and what to tell of it."""
-    crs = tree.get("crs")
-    named = str(crs.get("properties", {}).get("name", "")) if isinstance(crs, dict) and isinstance(crs.get("properties"), dict) else ""
-    code = re.search(r"EPSG:{1,2}(\d+)$", named)
-    if code and code.group(1) != "4326":
-        return (lambda line: line), f"EPSG:{code.group(1)}", f"coordinates taken as metres in EPSG:{code.group(1)}, as the file says"
-    (west, south), (east, north) = places.min(0), places.max(0)
-    if west < -180.0 or east > 180.0 or south < -90.0 or north > 90.0:
-        found = f"coordinates up to {np.abs(places).max():g} without a reference system"
-        hint = "GeoJSON holds longitude and latitude; name a projected system in a 'crs' member, or export it as it should be"
-        raise FormatError(file, found, "longitude and latitude in degrees", hint=hint)
-    from pyproj import CRS, Transformer
-
-    if east - west <= WIDE_DEG and south > -80.0 and north < 84.0:
-        middle, zone = (south + north) / 2, int(((west + east) / 2 + 180.0) // 6) + 1
-        target = f"EPSG:{(32600 if middle >= 0 else 32700) + min(zone, 60)}"
-        told, meridian = f"longitude and latitude projected to UTM zone {min(zone, 60)} ({target})", min(zone, 60) * 6 - 183.0
-    else:
-        meridian = (west + east) / 2
-        target = f"+proj=tmerc +lat_0={(south + north) / 2:.4f} +lon_0={(west + east) / 2:.4f} +k=0.9996 +datum=WGS84 +units=m"
-        told = f"longitude and latitude projected to a transverse Mercator about the middle of the data ({target})"
-    turn = max(east - meridian, meridian - west) * math.sin(math.radians(max(abs(south), abs(north))))
-    transformer = Transformer.from_crs(CRS("EPSG:4326"), CRS(target), always_xy=True)
-
-    def project(line: Floats) -> Floats:
-        return np.stack(transformer.transform(line[:, 0], line[:, 1]), 1)
-
-    return project, target, f"{told}; azimuths are from grid north, up to {turn:.1f} deg from true north at its edges"
+        told = f"{lacking} of {len(features)} traces give no lower depth and are drawn {LOWER_DEPTH_M / 1000:g} km down"
+        ledger.note("model", f"{file}: {told}")

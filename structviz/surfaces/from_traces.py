@@ -11,6 +11,7 @@ from structviz.surfaces.surface import Surface
 Floats = NDArray[np.float64]
 
 CELLS = 150  # about, on one surface: traces have few bends, so finer cells say nothing more
+MOST_CELLS = 2_000_000
 FEWEST_ROWS = 2
 SHALLOWEST_DEG = 1.0
 
@@ -30,51 +31,67 @@ def surface_from_trace(
 
     Parameters
     ----------
-    trace : (N, 2) easting and northing, m, at zero depth; repeated points are passed over.
+    trace : (N, 2) easting and northing, m, at zero depth, or (N, 3) with up, from which the depths then count; repeated points are
+        passed over.
     dip_deg : 1 to 90. dip_direction_deg : azimuth of the dip, the same for the whole trace, so that bends do not make it cross itself.
-        On a vertical surface it names the side of the hanging wall.
+        On a vertical surface it names the side of the hanging wall, by the winding alone.
     upper_depth_m, lower_depth_m : where the surface begins and ends, m below the trace.
     spacing_m : longest side of its cells; by default about 150 cells a surface.
 
     Raises
     ------
-    SurfaceError : fewer than two distinct points, a number that is not finite, a dip out of range, a depth range that is empty, or a dip
-        direction along the trace.
+    SurfaceError : fewer than two distinct points, a number that is not finite, a dip out of range, a depth range that is empty, a
+        spacing that is not positive or makes too many cells, or a dip direction along the trace.
     """
-    points = _distinct(np.asarray(trace, float), name)
+    points = _distinct(trace, name)
     _check(name, dip_deg, dip_direction_deg, upper_depth_m, lower_depth_m)
     azimuth, dip = np.radians(dip_direction_deg), np.radians(dip_deg)
     towards = np.array([np.sin(azimuth), np.cos(azimuth)])
-    chord = points[-1] - points[0] if np.linalg.norm(points[-1] - points[0]) > 0 else points[1] - points[0]
+    chord = _chord(points)
     if dip_deg < 90.0 and abs(np.cross([*chord, 0.0], [*towards, 0.0])[2]) < 0.17 * np.linalg.norm(chord):
         raise SurfaceError(
             name, f"a dip direction of {dip_direction_deg:.0f} deg along the trace", "one across it", hint="correct the dip direction"
         )
     width = (lower_depth_m - upper_depth_m) / np.sin(dip)
     length = float(np.linalg.norm(np.diff(points, axis=0), axis=1).sum())
-    spacing = spacing_m or max(np.sqrt(length * width / CELLS), 1e-3)
+    spacing = max(np.sqrt(length * width / CELLS), 1e-3) if spacing_m is None else spacing_m
+    _check_spacing(name, spacing, length, width)
     along = _divided(points, spacing)
     rows = max(FEWEST_ROWS, int(np.ceil(width / spacing)) + 1)
     depths = np.linspace(upper_depth_m, lower_depth_m, rows)
     shift = 0.0 if dip_deg == 90.0 else 1 / np.tan(dip)
-    level = along[None] + (depths * shift)[:, None, None] * towards
-    vertices = np.concatenate([level, np.broadcast_to(-depths[:, None, None], (rows, len(along), 1))], 2).reshape(-1, 3) + 0.0
+    down = np.column_stack([(depths * shift)[:, None] * towards, -depths])
+    vertices = (along[None] + down[:, None]).reshape(-1, 3) + 0.0
     return Surface(name, vertices, _cells(rows, len(along), _hanging_wall_left(chord, towards)), source)
 
 
 def mean_dip_direction_deg(trace: ArrayLike, side_deg: float) -> float:
     """Return the azimuth across a trace (N, 2), from end to end, that lies nearer to the side named, degrees [0, 360)."""
-    points = np.asarray(trace, float)
-    east, north = points[-1] - points[0] if np.linalg.norm(points[-1] - points[0]) > 0 else points[1] - points[0]
+    east, north = _chord(np.asarray(trace, float))
     right = (np.degrees(np.arctan2(east, north)) + 90.0) % 360.0
     return float(right if abs((right - side_deg + 180.0) % 360.0 - 180.0) <= 90.0 else (right + 180.0) % 360.0)
 
 
-def _distinct(points: Floats, name: str) -> Floats:
-    if points.ndim != 2 or points.shape[1] < 2 or not np.isfinite(points[:, :2]).all():
-        raise SurfaceError(name, f"a trace of shape {points.shape}", "finite points of easting and northing", hint="correct the trace")
-    points = points[:, :2]
-    kept = np.concatenate([[True], (np.diff(points, axis=0) != 0).any(1)])
+def _chord(points: Floats) -> Floats:
+    """Return the way from the first to the last point on the map, that of the first leg where they are the same."""
+    chord = points[-1, :2] - points[0, :2]
+    legs = np.diff(points[:, :2], axis=0)
+    return chord if chord.any() else legs[legs.any(1).argmax()]
+
+
+def _distinct(trace: ArrayLike, name: str) -> Floats:
+    """Return the points (N, 3) of a trace that differ on the map from the one before."""
+    try:
+        points = np.asarray(trace, float)
+    except (TypeError, ValueError):
+        raise SurfaceError(
+            name, "a trace that is no table of numbers", "points of easting and northing", hint="correct the trace"
+        ) from None
+    if points.ndim != 2 or points.shape[1] not in (2, 3) or not np.isfinite(points).all():
+        found = f"a trace of shape {points.shape}" + ("" if np.isfinite(points).all() else " with numbers that are not finite")
+        raise SurfaceError(name, found, "finite points of easting and northing, and up or not", hint="correct the trace")
+    points = points if points.shape[1] == 3 else np.column_stack([points, np.zeros(len(points))])
+    kept = np.concatenate([[True], (np.diff(points[:, :2], axis=0) != 0).any(1)])[: len(points)]
     if kept.sum() < 2:
         raise SurfaceError(name, "a trace of one point", "two distinct points or more", hint="correct the trace or delete it")
     return points[kept]
@@ -86,6 +103,14 @@ def _check(name: str, dip_deg: float, dip_direction_deg: float, upper_depth_m: f
     if not (np.isfinite([upper_depth_m, lower_depth_m]).all() and lower_depth_m > upper_depth_m):
         found = f"depths {upper_depth_m:g} to {lower_depth_m:g} m"
         raise SurfaceError(name, found, "a lower depth below the upper one", hint="correct the depths; they count down from the trace")
+
+
+def _check_spacing(name: str, spacing: float, length: float, width: float) -> None:
+    if not (np.isfinite(spacing) and spacing > 0):
+        raise SurfaceError(name, f"a spacing of {spacing:g} m", "more than 0 m", hint="leave the spacing out for a sensible one")
+    if length / spacing * (width / spacing) > MOST_CELLS:
+        found = f"a spacing of {spacing:g} m on {length:.0f} by {width:.0f} m"
+        raise SurfaceError(name, found, f"{MOST_CELLS:,} cells at most", hint="choose a wider spacing, or leave it out")
 
 
 def _divided(points: Floats, spacing: float) -> Floats:

@@ -12,6 +12,7 @@ from structviz.analysis import Settings, run
 from structviz.cli.main import entry
 from structviz.errors import FormatError, InputError, TableError
 from structviz.io import read_model
+from structviz.kinematics.declared import usable_sector
 from structviz.kinematics.senses import sector_of_words
 from structviz.orientation.lines import trend_plunge_deg
 from structviz.surfaces.measure import measure
@@ -68,8 +69,8 @@ def test_traces_without_a_dip_or_a_side_are_left_out_and_named(tmp_path):
     model = read_model(written(tmp_path, collection(A, *lame)))
     assert [fault.name for fault in model.faults] == ["A"]
     told = [finding.message for finding in model.findings if finding.severity == "warning"]
-    assert any("without a dip were left out: C" in text for text in told)
-    assert any("without a dip direction were left out: D" in text for text in told)
+    assert any("1 trace left out, without a dip: C" in text for text in told)
+    assert any("1 trace left out, without a dip direction: D" in text for text in told)
 
 
 def test_projected_coordinates_are_taken_where_the_file_names_their_system(tmp_path):
@@ -80,6 +81,156 @@ def test_projected_coordinates_are_taken_where_the_file_names_their_system(tmp_p
     assert model.faults[0].surface.vertices[:, 0].min() == pytest.approx(5e5 + 1000 / np.tan(np.radians(60)))
     with pytest.raises(FormatError, match="without a reference system; wanted longitude and latitude"):
         read_model(written(tmp_path, collection(A, lines=lines)))
+
+
+NORTH = [[15.0, 47.0], [15.0, 47.1]]
+
+
+def told_of(model):
+    return " | ".join(finding.message for finding in model.findings)
+
+
+def in_system(name):
+    return {"type": "name", "properties": {"name": name}}
+
+
+def test_degrees_of_another_datum_are_degrees(tmp_path):
+    model = read_model(written(tmp_path, collection(A, lines=[NORTH], crs=in_system("urn:ogc:def:crs:EPSG::4269"))))
+    plain = read_model(written(tmp_path, collection(A, lines=[NORTH])))
+    assert "longitude and latitude of EPSG:4269 projected to UTM zone 33" in told_of(model)
+    assert np.abs(model.faults[0].surface.vertices - plain.faults[0].surface.vertices).max() < 5.0
+
+
+def test_feet_become_metres_and_it_is_told(tmp_path):
+    model = read_model(written(tmp_path, collection(A, lines=[[[6e6, 2e6], [6e6, 2.1e6]]], crs=in_system("EPSG:2227"))))
+    assert np.ptp(model.faults[0].surface.vertices[:, 1]) == pytest.approx(1e5 * 1200 / 3937, rel=1e-9)
+    assert "from US survey foot into metres" in told_of(model)
+    assert model.crs == "EPSG:2227, in metres"
+
+
+def test_traces_either_side_of_the_antimeridian_lie_together(tmp_path):
+    lines = [[[179.95, -40.0], [179.95, -40.1]], [[-179.95, -40.0], [-179.95, -40.1]], [[179.99, -40.0], [-179.99, -40.1]]]
+    model = read_model(written(tmp_path, collection(A, {**A, "name": "B"}, {**A, "name": "C"}, lines=lines)))
+    first, second, crossing = (fault.surface.vertices[:, 0] for fault in model.faults)
+    assert second.min() - first.min() == pytest.approx(8532.0, abs=15.0)  # 0.1 deg of longitude at 40 deg south, on the ellipsoid
+    assert first.min() < crossing.min() < second.min()
+    assert "across the antimeridian" in told_of(model)
+
+
+@pytest.mark.parametrize(
+    ("extra", "lines", "told"),
+    [
+        ({"crs": in_system("EPSG:999999")}, [NORTH], "EPSG:999999, which is not known"),
+        ({"crs": in_system("my own grid")}, [NORTH], "a reference system named 'my own grid'; wanted EPSG:code"),
+        ({"crs": in_system("EPSG:4978")}, [NORTH], "no map projection"),
+        ({}, [[[-60.0, 10.0], [-60.0, 11.0]], [[60.0, 10.0], [60.0, 11.0]]], "120 deg of longitude; wanted 40 deg at most"),
+    ],
+)
+def test_places_that_no_plane_holds_are_refused(tmp_path, extra, lines, told):
+    with pytest.raises(FormatError, match=told):
+        read_model(written(tmp_path, collection(*[A] * len(lines), lines=lines, **extra)))
+
+
+def test_a_side_along_the_trace_is_no_side(tmp_path):
+    """Which of the two sides would be drawn lots for: a dip to the north of a trace that runs north."""
+    model = read_model(written(tmp_path, collection(A, {**A, "name": "B", "dip_direction": "N"}, lines=[NORTH, NORTH])))
+    assert [fault.name for fault in model.faults] == ["A"]
+    assert "1 trace left out, with a dip direction along the trace: B" in told_of(model)
+    model = read_model(written(tmp_path, collection({**A, "dip_direction": 30}, lines=[NORTH])))
+    assert "1 trace with a dip direction over 45 deg off, drawn across the chord: A" in told_of(model)
+    with pytest.raises(FormatError, match=r"no trace that can be used \(1 with a dip direction along the trace\)"):
+        read_model(written(tmp_path, collection({**A, "dip_direction": 355}, lines=[NORTH])))
+
+
+def test_parts_of_a_trace_dip_to_one_side(tmp_path):
+    """A part that runs the way the whole dips would be drawn to either side, by its own."""
+    tree = collection({**A, "dip_direction": "E"}, lines=[[[[15.0, 47.0], [15.0, 47.2]], [[15.01, 47.21], [15.06, 47.208]]]])
+    tree["features"][0]["geometry"]["type"] = "MultiLineString"
+    vertices = read_model(written(tmp_path, tree)).faults[0].surface.vertices
+    ends = vertices[vertices[:, 2] == -9000.0]
+    starts = vertices[vertices[:, 2] == -1000.0]
+    assert ends[:, 0].max() > starts[:, 0].max()
+    assert ends[:, 1].min() < starts[:, 1].max()
+
+
+@pytest.mark.parametrize(
+    ("side", "rake", "word", "down"),
+    [("E", -90, "normal", "E"), ("W", -90, "normal", "W"), ("W", 90, "reverse", "E"), ("E", -135, "dextral-normal", "E")],
+)
+def test_the_side_named_of_a_vertical_trace_is_kept(tmp_path, side, rake, word, down):
+    own = {"name": "V", "dip": 90, "dip_dir": side, "rake": rake}
+    fault = read_model(written(tmp_path, collection(own, lines=[NORTH]))).faults[0]
+    assert set(fault.declared.words) == set(word.split("-"))
+    assert fault.down_side == down
+    found = measure(fault.surface)
+    # Whichever wall the surface calls the hanging one: the side named went down, or the other one for a reverse fault.
+    usable, _ = usable_sector(fault.declared, fault.down_side, found.normal, found.dip_deg)
+    east_hangs = found.normal[0] > 0
+    assert ("normal" in usable.words) == ((down == "E") == east_hangs)
+
+
+def test_dip_slip_on_a_vertical_trace_without_a_side_is_not_guessed(tmp_path):
+    for rake, left in ((-90, None), (-135, "dextral"), (20, "rake 0"), (180, "rake 180")):
+        own = {"name": "V", "dip": 90, "dip_dir": "Vertical", "rake": rake}
+        fault = read_model(written(tmp_path, collection(own, lines=[NORTH]))).faults[0]
+        found = measure(fault.surface)
+        usable, _ = usable_sector(fault.declared, fault.down_side, found.normal, found.dip_deg)
+        assert (usable.text if usable else None) == left
+
+
+def test_what_was_taken_is_told_for_every_name_and_doubt(tmp_path):
+    both = {**A, "name": "C", "dip": 30, "upper_depth_m": 500, "rake": 90}
+    told = told_of(read_model(written(tmp_path, collection(A, B, both))))
+    assert "dip_deg from dip_deg (2) and DipDeg (1)" in told
+    assert "upper_depth_m from upper_depth_km (km) (1) and UpDepth (km) (1) and upper_depth_m (1)" in told
+    assert "1 of 3 traces give dip_deg as dip_deg and dip; dip_deg is used" in told
+    assert "1 trace with a rake that belies the sense, the rake used: C" in told
+
+
+def test_names_stay_apart(tmp_path):
+    names = ["A", "A (3)", "A", "A"]
+    model = read_model(written(tmp_path, collection(*[{**A, "name": name} for name in names])))
+    assert len({fault.name for fault in model.faults}) == 4
+    assert all(fault.name == fault.surface.name for fault in model.faults)
+
+
+def test_heights_lift_the_surface(tmp_path):
+    model = read_model(written(tmp_path, collection(A, lines=[[[15.0, 47.0, 800.0], [15.0, 47.1, 800.0]]])))
+    assert model.faults[0].surface.vertices[:, 2].max() == pytest.approx(-200.0)
+    assert "heights, which 1 features have, are taken as metres" in told_of(model)
+
+
+def test_a_value_with_a_comma_can_be_chosen(tmp_path):
+    path = written(tmp_path, collection({**A, "name": "Low (south, old)"}, B))
+    assert [fault.name for fault in read_model(path, where={"name": "Low (south, old)"}).faults] == ["Low (south, old)"]
+
+
+def test_a_plain_json_suffix_will_do(tmp_path):
+    path = tmp_path / "traces.json"
+    path.write_text(json.dumps(collection(A)))
+    assert len(read_model(path).faults) == 1
+
+
+PIECES = [None, True, "", "x", -1, 0, 1e308, 90, [], {}, "NaN", [[]], "Vertical", [[1e308, 1], [1, 2]], [[5, 5], [5, 5]]]
+
+
+@pytest.mark.parametrize("seed", range(6))
+def test_damaged_features_are_refused_or_left_out_never_a_traceback(tmp_path, seed):
+    draw = np.random.default_rng(seed)
+    outcomes = set()
+    for _ in range(60):
+        tree = json.loads(json.dumps(collection(A, B, {**A, "name": "C"})))
+        feature = tree["features"][draw.integers(3)]
+        part = [feature, feature["properties"], feature["geometry"]][draw.integers(3)]
+        part[list(part)[draw.integers(len(part))]] = PIECES[draw.integers(len(PIECES))]
+        try:
+            model = read_model(written(tmp_path, tree))
+        except InputError as error:
+            outcomes.add("refused" if error.hint else "refused without a hint")
+        else:
+            finite = all(np.isfinite(fault.surface.vertices).all() for fault in model.faults)
+            outcomes.add("read" if finite else "read, not finite")
+    assert outcomes == {"read", "refused"}
 
 
 @pytest.mark.parametrize(
