@@ -29,6 +29,7 @@ PIXELS = (2000, 1400)
 ELEVATION_DEG = 38.0
 FONT = "DejaVu Sans"
 GLYPH_COLOURS = {"lens": "#efe3c4", "thumb": SIGMA[0]}
+TITLE_FROM, TICKS_APART = 1240, 26  # pixels
 PEELS = 4  # translucent surfaces told apart behind each other; each costs a rendering, and a fifth one is not seen
 CONTEXT_OPACITY = 0.55  # faults that nobody doubts step back, so that the others and the glyphs are seen
 
@@ -165,6 +166,9 @@ def _frame(axes: Axes, scene: Scene, project: Any) -> None:
     start = np.array([other, n, b])
     length = 0.09 * float(np.linalg.norm((scene.high - scene.low)[:2]))
     tail, tip = project(np.stack([start + [0, 0.02 * length, 0], start + [0, length, 0]]))
+    if tip[1] > TITLE_FROM:  # a long model reaches up to the words: the arrow stands in the near corner instead
+        shift = np.array([PIXELS[0] - 200.0, 150.0]) - tail
+        tail, tip = tail + shift, tip + shift
     axes.annotate("", tip, tail, arrowprops={"arrowstyle": "-|>", "color": INK, "linewidth": 1.6, "shrinkA": 0, "shrinkB": 0})
     axes.text(tip[0], tip[1] + 20, "N", fontsize=10, color=INK, ha="center", weight="bold", family=FONT)
 
@@ -175,6 +179,9 @@ def _ticks(axes: Axes, project: Any, origin: Floats, axis: int, start: Floats, e
     values = np.arange(np.ceil(low / step), np.floor(high / step) + 1) * step
     if axis != 2 and np.ptp(project(np.stack([start, end])), axis=0).max() < 200:
         values = values[:1]
+    if axis == 2 and len(values) > 1:  # a flat model seen from above: heights that would cover each other are left out
+        apart = abs(float(np.diff(project(np.stack([start, end])), axis=0)[0, 1])) * step / max(abs(high - low), 1e-9)
+        values = values[:: max(1, int(np.ceil(TICKS_APART / max(apart, 1e-9))))]
     places = np.repeat(start[None], len(values), 0)
     places[:, axis] = values - origin[axis]
     align = "center" if off[0] == 0 else ("left" if off[0] > 0 else "right")
