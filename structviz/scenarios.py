@@ -23,6 +23,7 @@ REPLICATES = 200  # of every run, the first one again among them, so that words 
 FRICTION_ANGLES_DEG = (20.0, 25.0, 35.0, 40.0)
 RADIUS_FACTORS = (0.5, 2.0)
 SHAPE_RATIOS = (0.0, 0.25, 0.5, 0.75, 1.0)
+FINE_RATIOS = tuple(k / 20 for k in range(21))  # where between those a word turns; holds all of them
 OPEN = "undetermined"
 
 
@@ -75,9 +76,10 @@ def sensitivity(analysis: Analysis, progress: Progress | None = None) -> Sensiti
         tell("trying other choices", number, len(cases))
         faults = tuple(fault for fault in analysis.model.faults if fault.name != left_out)
         found.append(_scenario(key, text, run(replace(analysis.model, faults=faults), changed)))
-    found += _at_fixed_ratios(first, settings)
+    fine = _at_fixed_ratios(first, settings)
+    found += [each for each, ratio in zip(fine, FINE_RATIOS) if ratio in SHAPE_RATIOS] if fine else []
     tell("trying other choices", len(cases), len(cases))
-    dependences = tuple(_dependences(base, found))
+    dependences = tuple(_dependences(base, found, fine))
     return Sensitivity(base, tuple(found), dependences, carried, pair_influence_deg(analysis.pairs, analysis.regimes[0].axes))
 
 
@@ -107,12 +109,12 @@ def _scenario(key: str, text: str, analysis: Analysis) -> Scenario:
 
 
 def _at_fixed_ratios(analysis: Analysis, settings: Settings) -> list[Scenario]:
-    """Return the verdicts with R held at values over its range; the axes stay what they were."""
+    """Return the verdicts with R held at each of FINE_RATIOS; the axes stay what they were."""
     if analysis.answer is None or not analysis.regimes:
         return []
     limits = VerdictLimits(conflicting_from=settings.conflict_probability, least_shear=settings.least_shear)
     regime, made = analysis.regimes[0], []
-    for ratio in SHAPE_RATIOS:
+    for ratio in FINE_RATIOS:
         held = replace(analysis.answer, posteriors=tuple(_held(posterior, ratio) for posterior in analysis.answer.posteriors))
         words = {result.fault.name: _word(held, number, result, limits) for number, result in enumerate(analysis.faults)}
         made.append(Scenario("shape_ratio", f"R = {ratio:g}", words, regime.kind, regime.shmax_deg))
@@ -129,13 +131,29 @@ def _word(held: Answer, number: int, result: FaultResult, limits: VerdictLimits)
     return judge_in_phases(held, number, normals, shares, result.sector, "", limits)[0].word
 
 
-def _dependences(base: Scenario, scenarios: Sequence[Scenario]) -> Iterator[Dependence]:
+def _dependences(base: Scenario, scenarios: Sequence[Scenario], fine: Sequence[Scenario]) -> Iterator[Dependence]:
     """Return each fault whose verdict turns from consistent to conflicting or back, or is left open, under some choice."""
     for fault, word in base.words.items():
         changed = [scenario for scenario in scenarios if scenario.words.get(fault, word) != word]
         if not changed:
             continue
         keys = tuple(dict.fromkeys(scenario.key for scenario in changed))
-        told = "; ".join(f"{scenario.words[fault]} with {scenario.text}" for scenario in changed if scenario.key != "without")
-        left = [f"{scenario.words[fault]} {scenario.text}" for scenario in changed if scenario.key == "without"]
-        yield Dependence(fault, keys, f"{word} as chosen; " + "; ".join(filter(None, [told, *left])))
+        told = [_told(scenario, fault) for scenario in changed if scenario.key != "shape_ratio"]
+        if "shape_ratio" in keys:
+            told.append(_by_ratio([scenario.words[fault] for scenario in fine]))
+        yield Dependence(fault, keys, "; ".join([f"{word} as chosen", *told]))
+
+
+def _told(scenario: Scenario, fault: str) -> str:
+    return f"{scenario.words[fault]} {'' if scenario.key == 'without' else 'with '}{scenario.text}"
+
+
+def _by_ratio(words: Sequence[str]) -> str:
+    """Return the word over each stretch of R, such as "consistent at R 0 to 0.05, conflicting at R 0.1 to 1"."""
+    starts = [0, *(k for k in range(1, len(words)) if words[k] != words[k - 1])]
+    ends = [*(k - 1 for k in starts[1:]), len(words) - 1]
+    return ", ".join(f"{words[a]} at R {_span(FINE_RATIOS[a], FINE_RATIOS[b])}" for a, b in zip(starts, ends))
+
+
+def _span(low: float, high: float) -> str:
+    return f"{low:g}" if low == high else f"{low:g} to {high:g}"

@@ -214,10 +214,12 @@ def _depends(analysis: Analysis, depends: Sensitivity | None) -> Iterator[Render
     if depends is None:
         return
     yield from heading("What carries the stress")
-    turns = depends.influence[0].turn_deg.max(1)
-    heavy = [int(k) for k in (-turns).argsort(kind="stable")[:3] if turns[k] > 0]
-    told = ", ".join(f"{middle_cut(analysis.faults[k].fault.name, 28)} ({turns[k]:.1f}°)" for k in heavy)
-    yield line((f"the axes turn most without {told}" if told else "no single fault turns it", ""), indent=2)
+    for regime, carried in zip(analysis.regimes, depends.influence):
+        turns = carried.turn_deg.max(1)
+        heavy = [int(k) for k in (-turns).argsort(kind="stable")[:3] if turns[k] > 0]
+        told = ", ".join(f"{middle_cut(analysis.faults[k].fault.name, 28)} ({turns[k]:.1f}°)" for k in heavy)
+        of = f"{printable(regime.name, 28)}: " if len(analysis.regimes) > 1 else ""
+        yield line((f"{of}the axes turn most without {told}" if told else f"{of}no single fault turns it", ""), indent=2)
     yield from heading("What the verdicts depend on")
     if not depends.dependences:
         yield line(("no verdict changes with friction angle, R, scale or the fault that carries most", ""), indent=2)
