@@ -67,7 +67,8 @@ def _made(folder: Path, bundle: Path) -> str:
             bundle.write_text(_notices(place) + text, encoding="utf-8", newline="\n")
     except subprocess.CalledProcessError as error:
         said = (error.stderr or error.stdout or "").strip().splitlines()
-        return f"{Path(error.cmd[0]).name} ended with {error.returncode}: {said[-1] if said else 'without a word'}"
+        told = next((line for line in reversed(said) if "log of this run" not in line and line != "npm error"), "without a word")
+        return f"{Path(error.cmd[0]).name} ended with {error.returncode}: {told}"
     except (OSError, StopIteration, ImportError, subprocess.TimeoutExpired) as error:
         return f"{type(error).__name__}: {error}"
     return ""

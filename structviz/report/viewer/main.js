@@ -6,13 +6,17 @@ import { startView } from "./view.js";
 const tell = (name, detail) => document.dispatchEvent(new CustomEvent(`structviz:${name}`, { detail }));
 const place = document.getElementById("scene");
 
-try {
-  // Asked here first, because three writes to the console where there is none.
-  if (!document.createElement("canvas").getContext("webgl2")) throw new Error("the browser gives no WebGL");
-  const { data, arrays } = await readData();
-  startView(place, data, arrays, tell);
-} catch (error) {
-  place.replaceChildren();
-  place.classList.add("no-webgl");
-  tell("scene-failed", { why: String(error?.message ?? error).slice(0, 200) });
+// The page has asked for WebGL before: asking again would make one more context, and three writes to the console where there is none.
+if (document.documentElement.classList.contains("with-scene")) await start();
+else place.classList.add("no-webgl");
+
+async function start() {
+  try {
+    const { data, arrays } = await readData();
+    startView(place, data, arrays, tell);
+  } catch (error) {
+    place.replaceChildren();
+    place.classList.add("no-webgl");
+    tell("scene-failed", { why: String(error?.message ?? error).slice(0, 200) });
+  }
 }
