@@ -42,20 +42,20 @@ export const STYLE = `
 .sv-panel select, .sv-panel button, .sv-panel summary { font: inherit; color: inherit; background: var(--raised, #fff); border: 1px solid var(--hair, #d9d7d0); border-radius: 3px; padding: .14rem .45rem; cursor: pointer; max-width: 13rem; }
 .sv-panel option { background: var(--raised, #fff); color: var(--ink, #22303c); }
 .sv-more { margin-left: auto; }
-.sv-more { text-align: right; align-self: flex-start; background: none !important; } .sv-inside { background: color-mix(in srgb, var(--raised, #fff) 94%, transparent); } .sv-more summary { list-style: none; display: inline-block; }
+.sv-inside { background: color-mix(in srgb, var(--raised, #fff) 94%, transparent); } .sv-more summary { list-style: none; display: inline-block; }
 .sv-more summary::-webkit-details-marker { display: none; }
 .sv-more[open] summary { border-color: var(--ink, #22303c); }
-.sv-more { position: relative; } .sv-inside { position: absolute; right: 0; top: calc(100% + .25rem); z-index: 2; border: 1px solid var(--hair, #d9d7d0); border-radius: 3px; text-align: left; padding: .5rem .4rem .4rem; display: grid; grid-template-columns: minmax(0, 1fr); gap: .12rem; width: 16.5rem; max-width: calc(100vw - 3rem); }
-.sv-inside .sv-row > span:first-child { width: 6.4rem; flex: none; }
+.sv-more { position: relative; } .sv-inside { position: absolute; right: 0; top: calc(100% + .25rem); z-index: 2; border: 1px solid var(--hair, #d9d7d0); border-radius: 3px; text-align: left; padding: .5rem .4rem .4rem; display: grid; grid-template-columns: minmax(0, 1fr); gap: .12rem; width: 18rem; max-width: calc(100vw - 3rem); }
+.sv-inside .sv-row > span:first-child { width: 5.4rem; flex: none; }
 .sv-inside input[type="range"] { flex: 1; min-width: 0; accent-color: var(--ink, #22303c); }
-.sv-inside output { width: 3.9rem; text-align: right; white-space: nowrap; }
+.sv-inside output { min-width: 5.4rem; text-align: right; white-space: nowrap; }
 .sv-check { display: flex; gap: .45rem; align-items: center; padding: .08rem .35rem; }
 .sv-check input { accent-color: var(--ink, #22303c); margin: 0; }
 .sv-legend { left: .7rem; top: 2.9rem; padding: .25rem .4rem; pointer-events: none; max-width: 15rem; }
 .sv-legend i { display: inline-block; width: .8em; height: .8em; margin-right: .4em; border-radius: 1px; vertical-align: -.05em; }
 .sv-legend .sv-bar { width: 11rem; height: .6rem; margin: .2rem 0; border-radius: 1px; }
 .sv-legend .sv-ends { display: flex; justify-content: space-between; width: 11rem; }
-.sv-foot { left: .7rem; right: .7rem; bottom: .45rem; display: flex; align-items: flex-end; gap: 1rem; justify-content: space-between; pointer-events: none; background: none; }
+.sv-foot { left: .7rem; right: .7rem; bottom: .45rem; display: flex; align-items: flex-end; gap: .6rem; pointer-events: none; background: none; }
 .sv-foot > * { background: color-mix(in srgb, var(--raised, #fff) 80%, transparent); border-radius: 3px; } .sv-scale { text-align: center; padding: 0 .3rem; }
 .sv-scale div { height: 5px; border: 1px solid var(--ink, #22303c); border-top: 0; margin-bottom: .1rem; }
 .sv-where { margin-left: auto; padding: 0 .3rem; text-align: right; color: var(--quiet, #5b6872); min-height: 1.35em; font-variant-numeric: tabular-nums; }
