@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
-from dataclasses import dataclass
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from structviz.surfaces.surface import Floats, Integers, Surface
 
 CellData = Mapping[str, NDArray]
+Beside = Callable[[str], bytes]  # the content of a file named relative to the one being read; InputError where it may not be read
 
 # What a format may be unable to store; the round-trip test and the table of formats read the same words.
 NAMES, SEVERAL, CELL_ARRAYS, FLOAT64, SHARED_VERTICES = "names", "several surfaces", "cell arrays", "float64", "shared vertices"
@@ -19,13 +20,17 @@ OWN_LENGTH = "its own length"  # so a file cut short between two rows cannot be 
 
 @dataclass(frozen=True, eq=False)
 class Piece:
-    """One surface as a file holds it, in the file's own units; `aside` says why it is used only when it is named."""
+    """One surface as a file holds it, in the file's own units unless `framed`; `aside` says why it is used only when it is named."""
 
     name: str  # "" where the file gives none
     vertices: Floats  # (V, 3)
     triangles: Integers  # (T, 3) rows of vertices
     history: tuple[str, ...] = ()  # what reading did to it, in words
     aside: str = ""
+    kind: str = ""  # "fault" | "horizon", "" where the file does not say
+    declared: Mapping[str, str] = field(default_factory=dict)  # what the file says of its movement, by our columns of a table of faults
+    framed: bool = False  # True where the file states its units and datum: the vertices are then metres with up positive
+    crs: str = ""  # the reference system the file names
 
 
 @dataclass(frozen=True)
@@ -40,6 +45,8 @@ class Format:
     write: Callable[[Surface, CellData], bytes] | None
     cannot_store: tuple[str, ...] = ()
     explain: Callable[[bytes], str] = lambda content: ""  # what is wrong with a content of this suffix that no sniff knows
+    read_beside: Callable[[bytes, str, Beside], tuple[Piece, ...]] | None = None  # used instead of `read` where other files belong to it
+    write_all: Callable[[Sequence[tuple[Surface, CellData]]], bytes] | None = None  # several named surfaces in one file
 
 
 def start_of(content: bytes, length: int = 512) -> bytes:

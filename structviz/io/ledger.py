@@ -6,13 +6,13 @@ import difflib
 import hashlib
 import os
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 
 import numpy as np
 
-from structviz.errors import FormatError, InputError, SurfaceError
-from structviz.io.format import Piece
+from structviz.errors import FormatError, InputError, SurfaceError, TableError
+from structviz.io.format import Beside, Piece
 from structviz.io.registry import format_of, suffixes, table_text
 from structviz.model import Finding, InputFile
 
@@ -68,22 +68,55 @@ def missing(path: Path, shown: str) -> InputError:
 def pieces_of(ledger: Ledger, path: Path) -> tuple[Piece, ...]:
     """Return the surfaces of a file, read once and checked; what reading noticed is kept for the findings."""
     if path not in ledger.pieces:
-        ledger.pieces[path] = read_pieces(content_of(ledger, path), ledger.shown(path))
+        ledger.pieces[path] = read_pieces(content_of(ledger, path), ledger.shown(path), files_beside(ledger, path))
     return ledger.pieces[path]
 
 
-def read_pieces(content: bytes, file: str) -> tuple[Piece, ...]:
+def files_beside(ledger: Ledger, path: Path) -> Beside:
+    """Return a function that gives the content of a file named in another one; InputError where it leaves the folder of the model."""
+
+    def content(name: str) -> bytes:
+        other = inside(ledger, name, ledger.shown(path), path.parent)
+        return content_of(ledger, other)
+
+    return content
+
+
+def inside(ledger: Ledger, text: str, named_in: str, base: Path | None = None) -> Path:
+    """Return a path relative to `base`, the folder of the model by default.
+
+    InputError where it leaves the folder of the model, links followed, and may not.
+    """
+    if "\0" in text:
+        raise TableError(named_in, f"path {text!r}", "a path", hint="correct the path")
+    path = (ledger.folder if base is None else base) / text
+    try:
+        leaves = not path.resolve().is_relative_to(ledger.folder.resolve())
+    except (OSError, RuntimeError):
+        raise InputError(named_in, f"path {text!r}, a link that leads round in a circle", "a path", hint="mend the link") from None
+    if leaves and not ledger.allow_outside:
+        hint = "move the file into that folder, or allow it with --allow-outside"
+        raise InputError(named_in, f"path {text!r}, which leaves the folder of the model", "a path inside it", hint=hint)
+    return path
+
+
+def nothing_beside(name: str) -> bytes:
+    """Raise InputError: a content without a place has no files beside it."""
+    raise InputError(name, "a file that belongs to another one", "the two in one folder", hint="read it from its folder")
+
+
+def read_pieces(content: bytes, file: str, beside: Beside = nothing_beside) -> tuple[Piece, ...]:
     """Return the checked surfaces of a content; FormatError or SurfaceError where it cannot be used."""
     known, note = format_of(content, file)
     try:
         with np.errstate(all="ignore"):  # numbers of a damaged file; what is not finite or out of range is refused below
-            found = known.read(content, file)
+            found = known.read_beside(content, file, beside) if known.read_beside else known.read(content, file)
     except MemoryError:
         hint = "the counts in the file may be damaged: export it again"
         raise FormatError(file, "more data than there is memory for", "a file that fits into memory", hint=hint) from None
     for piece in found:
         check_piece(piece, file)
-    return tuple(Piece(p.name, p.vertices, p.triangles, (*p.history, note), p.aside) for p in found) if note else found
+    return tuple(replace(piece, history=(*piece.history, note)) for piece in found) if note else found
 
 
 def check_piece(piece: Piece, file: str) -> None:

@@ -10,10 +10,10 @@ from pathlib import Path
 
 import numpy as np
 
-from structviz.errors import InputError, TableError
+from structviz.errors import InputError
 from structviz.io.format import Piece
 from structviz.io.independent import with_file
-from structviz.io.ledger import Ledger, Progress, content_of, mesh_files, missing, pieces_of
+from structviz.io.ledger import Ledger, Progress, content_of, inside, mesh_files, missing, pieces_of
 from structviz.io.model_file import ModelFile, parsed_model
 from structviz.io.striae import read_striae
 from structviz.io.tables import FAULT_COLUMNS, Row, declared, down_side, read_table
@@ -71,7 +71,7 @@ def source_of(file: str, piece: Piece, count: int) -> str:
 
 
 def model_of_meshes(ledger: Ledger, paths: list[Path], title: str, progress: Progress | None) -> FaultModel:
-    """Return a model without senses: one fault for each surface of each file."""
+    """Return a model of every surface of each file: a horizon where the file says so, else a fault, with a sense where the file has one."""
     found: list[tuple[str, str, Piece, str]] = []
     for done, path in enumerate(paths):
         tell(progress, "reading surfaces", done, len(paths))
@@ -80,9 +80,33 @@ def model_of_meshes(ledger: Ledger, paths: list[Path], title: str, progress: Pro
         found += [(piece.name or path.stem, path.name, piece, source_of(path.name, piece, len(pieces))) for piece in chosen]
     tell(progress, "reading surfaces", len(paths), len(paths))
     names = distinct([(name, file) for name, file, _, _ in found])
-    faults = tuple(Fault(name, surface_m(Frame(), piece, name, source)) for name, (_, _, piece, source) in zip(names, found))
-    ledger.note("model", "no senses are declared: there is no table of faults", "list the faults in a faults.csv with their senses")
-    return finished(ledger, title, "", faults, (), ())
+    faults, horizons = [], []
+    for name, (_, file, piece, source) in zip(names, found):
+        surface = surface_m(Frame(), piece, name, source)
+        if piece.kind == "horizon":
+            horizons.append(Horizon(name, surface))
+        else:
+            faults.append(declared_in_file(ledger, name, file, piece, surface))
+    if not faults:
+        hint = "list them in a faults.csv if they are faults after all"
+        raise InputError(title, f"{len(horizons)} horizons and no fault", "a fault surface", hint=hint)
+    if not any(fault.declared for fault in faults):
+        ledger.note("model", "no senses are declared: there is no table of faults", "list the faults in a faults.csv with their senses")
+    systems = sorted({piece.crs for _, _, piece, _ in found if piece.crs})
+    if len(systems) > 1:
+        hint = "bring all surfaces into one system: places in different systems do not compare"
+        ledger.note("model", f"the files name different reference systems: {', '.join(systems)}", hint, "warning")
+    return finished(ledger, title, systems[0] if len(systems) == 1 else "", tuple(faults), tuple(horizons), ())
+
+
+def declared_in_file(ledger: Ledger, name: str, file: str, piece: Piece, surface: Surface) -> Fault:
+    """Return a fault with the movement its own file declares, which is noted, if any."""
+    row = Row(file, name, dict(piece.declared))
+    sector, side, phase = declared(row), down_side(row), row.text("phase")
+    if piece.declared:
+        taken = ", ".join(f"{column} {value}" for column, value in piece.declared.items())
+        ledger.note(name, f"taken from {file}: {taken}", "give a faults.csv to say otherwise")
+    return Fault(name, surface, sector, phase, side)
 
 
 def distinct(named: list[tuple[str, str]]) -> list[str]:
@@ -162,24 +186,6 @@ def checked_names(rows: list[Row] | tuple[Row, ...]) -> list[str]:
     return list(seen)
 
 
-def inside(ledger: Ledger, text: str, named_in: str, base: Path | None = None) -> Path:
-    """Return a path relative to `base`, the folder of the model by default.
-
-    InputError where it leaves the folder of the model, links followed, and may not.
-    """
-    if "\0" in text:
-        raise TableError(named_in, f"path {text!r}", "a path", hint="correct the path")
-    path = (ledger.folder if base is None else base) / text
-    try:
-        leaves = not path.resolve().is_relative_to(ledger.folder.resolve())
-    except (OSError, RuntimeError):
-        raise InputError(named_in, f"path {text!r}, a link that leads round in a circle", "a path", hint="mend the link") from None
-    if leaves and not ledger.allow_outside:
-        hint = "move the file into that folder, or allow it with --allow-outside"
-        raise InputError(named_in, f"path {text!r}, which leaves the folder of the model", "a path inside it", hint=hint)
-    return path
-
-
 def located(ledger: Ledger, row: Row) -> tuple[Path, str]:
     """Return the file of a row's surface and the part after #, "" for the whole file."""
     text = row.text("surface")
@@ -203,6 +209,9 @@ def named_surface(ledger: Ledger, row: Row, name: str, frame: Frame) -> Surface:
     if not os.path.exists(path):
         raise missing(path, f"{shown} (named in {row.file}, {row.where})")
     pieces = pieces_of(ledger, path)
+    if any(piece.framed for piece in pieces) and frame.history:
+        hint = "leave length_unit and vertical out of the model file, or export in a format without them"
+        ledger.note(name, f"{shown} states its own units and datum, which are used; those of the model file are not", hint, "warning")
     if part:
         chosen = next((piece for piece in pieces if piece.name == part), None)
         if chosen is None:
@@ -237,7 +246,8 @@ def merged(pieces: tuple[Piece, ...]) -> Piece:
     starts = np.cumsum([0] + [len(piece.vertices) for piece in pieces[:-1]])
     triangles = np.concatenate([piece.triangles + start for piece, start in zip(pieces, starts)])
     history = tuple(dict.fromkeys(words for piece in pieces for words in piece.history))
-    return Piece("", np.concatenate([piece.vertices for piece in pieces]), triangles, history)
+    vertices = np.concatenate([piece.vertices for piece in pieces])
+    return Piece("", vertices, triangles, history, framed=pieces[0].framed, crs=pieces[0].crs)
 
 
 def tell(progress: Progress | None, text: str, done: int, total: int) -> None:

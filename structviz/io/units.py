@@ -39,8 +39,13 @@ def places_m(frame: Frame, places: ArrayLike) -> NDArray[np.float64]:
 
 
 def surface_m(frame: Frame, piece: Piece, name: str, source: str) -> Surface:
-    """Return a surface in metres, up positive. Negating depth mirrors it, so its triangles are turned to keep their side."""
+    """Return a surface in metres, up positive. Negating depth mirrors it, so its triangles are turned to keep their side.
+
+    A piece whose file states its own units and datum is already so and is left alone.
+    """
     vertices, triangles = piece.vertices, piece.triangles
+    if piece.framed:
+        return Surface(name, vertices, triangles, source, piece.history)
     if frame.history:
         vertices = places_m(frame, vertices)
     if frame.vertical == "depth":
