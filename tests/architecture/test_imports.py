@@ -22,7 +22,7 @@ LAYERS: tuple[set[str], ...] = (
     {"checks", "io"},
     {"settings"},
     {"examination"},
-    {"analysis"},
+    {"analysis", "inspection"},
     {"scenarios"},
     {"views"},
     {"report"},

