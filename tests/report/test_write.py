@@ -12,7 +12,7 @@ import pytest
 
 from structviz.analysis import Analysis
 from structviz.errors import OutputError
-from structviz.report import write
+from structviz.report import whole, write
 from structviz.report.write import checked_target, write_outputs
 
 
@@ -103,6 +103,7 @@ def test_a_failure_while_swapping_puts_the_old_result_back(no_stress: Analysis, 
             raise KeyboardInterrupt
         return rename(self, target)
 
+    monkeypatch.setattr(whole, "_exchanged", lambda one, other: False)
     monkeypatch.setattr(Path, "rename", stopped)
     with pytest.raises(KeyboardInterrupt):
         write_outputs(no_stress, tmp_path / "out", pictures=False)
@@ -166,6 +167,7 @@ def test_a_folder_that_cannot_be_replaced_is_told_so(no_stress: Analysis, tmp_pa
         raise OSError(errno.EBUSY, "Device or resource busy")
 
     (tmp_path / "out").mkdir()
+    monkeypatch.setattr(whole, "_exchanged", lambda one, other: False)
     monkeypatch.setattr(Path, "rename", busy)
     with pytest.raises(OutputError, match=r"Device or resource busy\); nothing was changed\n  next: .*name a folder in it"):
         write_outputs(no_stress, tmp_path / "out", pictures=False)
