@@ -5,7 +5,6 @@ Words are set by matplotlib because VTK's fonts lack the Greek letters and its l
 
 from __future__ import annotations
 
-from itertools import product
 from pathlib import Path
 from typing import Any
 
@@ -18,20 +17,15 @@ from matplotlib.patches import Rectangle
 from numpy.typing import NDArray
 from PIL import Image
 
-from structviz.views.captions import WORDS
-from structviz.views.glyphs import placed, stress_glyph
-from structviz.views.palette import FAINT, HAIR, INK, PAPER, SIGMA, VERDICTS
+from structviz.views.palette import FAINT, HAIR, INK, PAPER, VERDICTS
+from structviz.views.render_actors import PEELS, add_actors, aim
 from structviz.views.scene import Label, Scene
 
 Floats = NDArray[np.float64]
 
 PIXELS = (2000, 1400)
-ELEVATION_DEG = 38.0
 FONT = "DejaVu Sans"
-GLYPH_COLOURS = {"lens": "#efe3c4", "thumb": SIGMA[0]}
 TITLE_FROM, TICKS_APART = 1240, 26  # pixels
-PEELS = 4  # translucent surfaces told apart behind each other; each costs a rendering, and a fifth one is not seen
-CONTEXT_OPACITY = 0.55  # faults that nobody doubts step back, so that the others and the glyphs are seen
 
 
 def draw(scene: Scene, path: Path) -> None:
@@ -63,26 +57,8 @@ def _over(picture: NDArray[np.uint8], words: NDArray[np.uint8]) -> NDArray[np.ui
 
 
 def _photograph(plotter: Any, scene: Scene) -> tuple[NDArray[np.uint8], Any]:
-    plotter.set_background(PAPER)
-    for word in reversed(WORDS):
-        mesh = _merged([(s.vertices, s.triangles) for s in scene.surfaces if s.kind == word])
-        if mesh is None:
-            continue
-        look = VERDICTS[word]
-        opacity = CONTEXT_OPACITY if word == "consistent" else 0.95
-        plotter.add_mesh(mesh, color=look.colour, opacity=opacity, smooth_shading=False, specular=0.0, ambient=0.35, diffuse=0.7)
-        rims = mesh.extract_feature_edges(boundary_edges=True, feature_edges=False, manifold_edges=False, non_manifold_edges=False)
-        if rims.n_cells:
-            plotter.add_mesh(rims, color=INK if word == "conflicting" else look.colour, line_width=3.5 if word == "conflicting" else 1.5)
-    parts = stress_glyph()
-    for role, colour in GLYPH_COLOURS.items():
-        pieces = [(placed(p, g.axes, g.place, g.size_m), p.triangles) for g in scene.glyphs for p in parts if p.role == role]
-        mesh = _merged(pieces)
-        if mesh is not None:
-            plotter.add_mesh(mesh, color=colour, smooth_shading=True, split_sharp_edges=True, specular=0.1, ambient=0.3)
-    for line in _box(scene):
-        plotter.add_mesh(pv.Line(*line), color=FAINT, line_width=1.5)
-    _aim(plotter, scene)
+    add_actors(plotter, scene)
+    aim(plotter, scene, PIXELS[0] / PIXELS[1])
     plotter.enable_depth_peeling(PEELS)
     plotter.enable_anti_aliasing("ssaa")
     return _picture(plotter), _projector(plotter)
@@ -101,46 +77,6 @@ def _picture(plotter: Any) -> NDArray[np.uint8]:
     reader.Update()
     pixels = vtk_to_numpy(reader.GetOutput().GetPointData().GetScalars())
     return np.asarray(pixels.reshape(PIXELS[1], PIXELS[0], -1)[::-1, :, :3]).copy()
-
-
-def _merged(pieces: list[tuple[Floats, NDArray[np.int64]]]) -> Any:
-    """Return many triangle meshes as one, or None: two hundred actors are slow to draw, three are not."""
-    if not pieces:
-        return None
-    starts = np.cumsum([0] + [len(vertices) for vertices, _ in pieces[:-1]])
-    vertices = np.concatenate([vertices for vertices, _ in pieces]).astype(np.float32)
-    triangles = np.concatenate([triangles + start for (_, triangles), start in zip(pieces, starts, strict=True)])
-    faces = np.concatenate([np.full((len(triangles), 1), 3), triangles], 1)
-    return pv.PolyData(vertices, faces.ravel())
-
-
-def _box(scene: Scene) -> list[tuple[Floats, Floats]]:
-    """Return the edges of the floor of the frame and its four posts, as pairs of corners."""
-    (w, s, b), (e, n, t) = scene.low, scene.high
-    floor = [np.array(corner) for corner in ((w, s, b), (e, s, b), (e, n, b), (w, n, b))]
-    posts = [(corner, np.array([corner[0], corner[1], t])) for corner in floor]
-    return [(floor[k], floor[(k + 1) % 4]) for k in range(4)] + posts
-
-
-def _aim(plotter: Any, scene: Scene) -> None:
-    """Look at the middle of the scene from its azimuth, in parallel projection so that lengths compare."""
-    centre = (scene.low + scene.high) / 2
-    a, up = np.radians(scene.view_from_deg), np.radians(ELEVATION_DEG)
-    towards = np.array([np.cos(up) * np.sin(a), np.cos(up) * np.cos(a), np.sin(up)])
-    size = float(np.linalg.norm(scene.high - scene.low))
-    camera = plotter.camera
-    camera.focal_point, camera.position, camera.up = centre, centre + 3 * size * towards, (0.0, 0.0, 1.0)
-    camera.enable_parallel_projection()
-    right = np.array([-np.cos(a), np.sin(a), 0.0])
-    above = np.cross(towards, -right)
-    seen = np.array(list(product(*zip(scene.low, scene.high, strict=True))))
-    seen = np.concatenate([seen, *[g.place + g.size_m * np.concatenate([g.axes, -g.axes]) for g in scene.glyphs]]) - centre
-    across, high = seen @ right, seen @ above
-    camera.parallel_scale = max(np.ptp(high) / 0.78, np.ptp(across) / 0.84 / (PIXELS[0] / PIXELS[1])) / 2
-    # The title stands above the model: its middle sits a little under that of the picture.
-    shift = above * ((high.max() + high.min()) / 2 + 0.09 * camera.parallel_scale) + right * (across.max() + across.min()) / 2
-    camera.focal_point, camera.position = centre + shift, centre + shift + 3 * size * towards
-    plotter.reset_camera_clipping_range()
 
 
 def _projector(plotter: Any) -> Any:

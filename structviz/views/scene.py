@@ -19,6 +19,7 @@ Floats = NDArray[np.float64]
 
 MOST_GLYPHS = 9
 MOST_NAMES = 24
+ELEVATION_DEG = 38.0
 VIEW_AZIMUTHS_DEG = (150.0, 165.0, 180.0, 195.0, 210.0)  # from the south, so that north is at the back
 
 
@@ -64,15 +65,17 @@ class Scene:
     high: Floats
     view_from_deg: float  # azimuth from which the scene is seen
     counts: tuple[tuple[str, int], ...]
+    elevation_deg: float = ELEVATION_DEG  # of the eye over the horizon; 90 is a map
 
 
 @view("scene", title="Faults by verdict, with the stress they speak for", file_name="scene.png", needs_gl=True, renderer="render_scene")
-def build_scene(analysis: Analysis) -> Scene:
-    """Return the scene of an analysis."""
+def build_scene(analysis: Analysis, *, azimuth_deg: float | None = None, elevation_deg: float = ELEVATION_DEG) -> Scene:
+    """Return the scene of an analysis, seen from an azimuth; without one, from where the faults show most of their area."""
     everything = np.concatenate([result.fault.surface.vertices for result in analysis.faults])
     origin = np.round((everything.min(0) + everything.max(0)) / 2)
     low, high = everything.min(0) - origin, everything.max(0) - origin
-    size, azimuth = float(np.linalg.norm((high - low)[:2])), _best_azimuth(analysis.faults)
+    size = float(np.linalg.norm((high - low)[:2]))
+    azimuth = best_azimuth_deg(analysis.faults) if azimuth_deg is None else azimuth_deg
     beside = _beside(azimuth, size, low, high)
     return Scene(
         title=regime_line(analysis),
@@ -85,6 +88,7 @@ def build_scene(analysis: Analysis) -> Scene:
         high=high,
         view_from_deg=azimuth,
         counts=count_line(analysis),
+        elevation_deg=elevation_deg,
     )
 
 
@@ -139,7 +143,7 @@ def _top(result: FaultResult) -> Floats:
     return upper[((upper - middle) ** 2).sum(1).argmin()]
 
 
-def _best_azimuth(results: Sequence[FaultResult]) -> float:
+def best_azimuth_deg(results: Sequence[FaultResult]) -> float:
     """Return the azimuth, degrees, from which the faults show most of their area."""
     normals = np.array([r.measured.normal for r in results])
     areas = np.array([r.measured.area_m2 for r in results])
