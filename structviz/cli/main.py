@@ -23,6 +23,7 @@ COMMANDS = {
     "check": "judge the declared movement of every fault of a model by all the others",
     "checks": "list what is checked, why, and from which limit on",
     "inspect": "list the surfaces in files with size, orientation and condition; propose a table of faults",
+    "convert": "write the surfaces of a model in another format, and say what it cannot keep",
     "formats": "list the file formats that can be read and written",
     "serve": "show the page of a model in the browser, and keep it up to date",
 }

@@ -7,6 +7,7 @@ it is read, but used only when it is named.
 from __future__ import annotations
 
 import re
+from collections.abc import Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -84,14 +85,24 @@ def piece_of(mesh: Mesh, number: int, corners: Integers, hull: NDArray[np.bool_]
 
 def write(surface: Surface, cell_data: CellData) -> bytes:
     """Return MSH 2.2 text: one physical group of triangles under the surface's name, coordinates at full precision."""
-    name = " ".join(surface.name.replace('"', "'").split())
+    return write_all([(surface, cell_data)])
+
+
+def write_all(surfaces: Sequence[tuple[Surface, CellData]]) -> bytes:
+    """Return MSH 2.2 text with one physical group of triangles a surface."""
+    names = [" ".join(surface.name.replace('"', "'").split()) for surface, _ in surfaces]
+    named = "".join(f'2 {group} "{name}"\n' for group, name in enumerate(names, 1) if name)
     head = "$MeshFormat\n2.2 0 8\n$EndMeshFormat\n"
-    named = f'$PhysicalNames\n1\n2 1 "{name}"\n$EndPhysicalNames\n' if name else ""
-    group = 1 if name else 0
-    nodes = "".join(f"{row} {e!r} {n!r} {u!r}\n" for row, (e, n, u) in enumerate(np.asarray(surface.vertices, float).tolist(), 1))
-    cells = "".join(f"{row} 2 2 {group} 1 {a} {b} {c}\n" for row, (a, b, c) in enumerate((surface.triangles + 1).tolist(), 1))
-    body = f"$Nodes\n{len(surface.vertices)}\n{nodes}$EndNodes\n$Elements\n{len(surface.triangles)}\n{cells}$EndElements\n"
-    return (head + named + body).encode(errors="replace")
+    head += f"$PhysicalNames\n{named.count(chr(10))}\n{named}$EndPhysicalNames\n" if named else ""
+    nodes, cells, node, cell = [], [], 1, 1
+    for group, ((surface, _), name) in enumerate(zip(surfaces, names, strict=True), 1):
+        places, corners = np.asarray(surface.vertices, float).tolist(), (surface.triangles + node).tolist()
+        nodes += [f"{row} {e!r} {n!r} {u!r}\n" for row, (e, n, u) in enumerate(places, node)]
+        tags = f"2 2 {group if name else 0} {group}"
+        cells += [f"{row} {tags} {a} {b} {c}\n" for row, (a, b, c) in enumerate(corners, cell)]
+        node, cell = node + len(places), cell + len(corners)
+    body = f"$Nodes\n{node - 1}\n{''.join(nodes)}$EndNodes\n$Elements\n{cell - 1}\n{''.join(cells)}$EndElements\n"
+    return (head + body).encode(errors="replace")
 
 
-FORMATS = (Format("msh", "Gmsh MSH", (".msh",), sniff, read, write, (CELL_ARRAYS,)),)
+FORMATS = (Format("msh", "Gmsh MSH", (".msh",), sniff, read, write, (CELL_ARRAYS,), write_all=write_all),)

@@ -7,6 +7,7 @@ or back from the last vertex read (-1, -2, ...); texture and normal numbers afte
 from __future__ import annotations
 
 import re
+from collections.abc import Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -87,11 +88,19 @@ def piece_of(name: str, vertices: NDArray, ids: Integers, ends: Integers, mine: 
 
 def write(surface: Surface, cell_data: CellData) -> bytes:
     """Return OBJ text with every coordinate at full float64 precision."""
-    name = " ".join(surface.name.split())
-    head = f"o {name}\n" if name else ""
-    vertices = "".join(f"v {east!r} {north!r} {up!r}\n" for east, north, up in np.asarray(surface.vertices, float).tolist())
-    faces = "".join(f"f {a} {b} {c}\n" for a, b, c in (surface.triangles + 1).tolist())
-    return (head + vertices + faces).encode(errors="replace")
+    return write_all([(surface, cell_data)])
 
 
-FORMATS = (Format("obj", "Wavefront OBJ", (".obj",), sniff, read, write, (CELL_ARRAYS, OWN_LENGTH)),)
+def write_all(surfaces: Sequence[tuple[Surface, CellData]]) -> bytes:
+    """Return OBJ text with one named object a surface."""
+    text, first = [], 1
+    for surface, _ in surfaces:
+        name = " ".join(surface.name.split())
+        text.append(f"o {name}\n" if name else "")
+        text += [f"v {east!r} {north!r} {up!r}\n" for east, north, up in np.asarray(surface.vertices, float).tolist()]
+        text += [f"f {a} {b} {c}\n" for a, b, c in (surface.triangles + first).tolist()]
+        first += len(surface.vertices)
+    return "".join(text).encode(errors="replace")
+
+
+FORMATS = (Format("obj", "Wavefront OBJ", (".obj",), sniff, read, write, (CELL_ARRAYS, OWN_LENGTH), write_all=write_all),)

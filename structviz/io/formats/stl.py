@@ -7,6 +7,7 @@ Corners are kept as read: triangles of a soup share no vertices, and measuring j
 from __future__ import annotations
 
 import re
+from collections.abc import Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -123,4 +124,9 @@ def write(surface: Surface, cell_data: CellData) -> bytes:
     return (f"solid {name}\n" + "".join(facet % tuple(row) for row in rows) + f"endsolid {name}\n").encode(errors="replace")
 
 
-FORMATS = (Format("stl", "STL", (".stl",), sniff, read, write, (CELL_ARRAYS, SHARED_VERTICES), explain),)
+def write_all(surfaces: Sequence[tuple[Surface, CellData]]) -> bytes:
+    """Return STL text with one named solid a surface."""
+    return b"".join(write(surface, cell_data) for surface, cell_data in surfaces)
+
+
+FORMATS = (Format("stl", "STL", (".stl",), sniff, read, write, (CELL_ARRAYS, SHARED_VERTICES), explain, write_all=write_all),)
