@@ -121,6 +121,21 @@ def used_only(vertices: NDArray, triangles: Integers) -> tuple[NDArray, Integers
     return vertices[used], (np.cumsum(used) - 1)[triangles]
 
 
+def parted(vertices: NDArray, triangles: Integers, owner: Integers, parts: int) -> list[tuple[NDArray, Integers]]:
+    """Return for each part 0, 1, ... the vertices (V, 3) its triangles use, in their order, and its triangles (T, 3) renumbered to them.
+
+    `owner` (T,) is the part of each triangle. All parts are cut out in one go: a million triangles may belong to many parts.
+    """
+    order = np.argsort(owner, kind="stable")
+    corners, own = triangles[order], owner[order].astype(np.int64)
+    used, renumbered = np.unique(own[:, None] * len(vertices) + corners, return_inverse=True)
+    renumbered = renumbered.reshape(corners.shape)
+    first = np.searchsorted(used, np.arange(parts + 1, dtype=np.int64) * len(vertices))
+    rows = np.searchsorted(own, np.arange(parts + 1))
+    places = vertices[used % max(len(vertices), 1)]
+    return [(places[first[k] : first[k + 1]], np.ascontiguousarray(renumbered[rows[k] : rows[k + 1]] - first[k])) for k in range(parts)]
+
+
 def check_indices(triangles: Integers, count: int, file: str, *, base: int = 0) -> None:
     """Raise FormatError where a corner number is outside the vertices; numbers are told as the file counts them."""
     if not len(triangles):

@@ -16,6 +16,7 @@ from structviz.io.format import Beside, Piece
 from structviz.io.registry import format_of, suffixes, table_text
 from structviz.model import Finding, InputFile
 
+MOST_SURFACES = 20_000  # in one file: more are the cells of something else, and would be judged for hours
 Progress = Callable[[str, int, int], None]  # what is being done, how many are done, of how many
 
 
@@ -45,12 +46,18 @@ class Ledger:
 def content_of(ledger: Ledger, path: Path) -> bytes:
     """Return the bytes of a file and enter its hash; InputError where it cannot be read."""
     try:
-        content = path.read_bytes()
+        with path.open("rb") as file:
+            before = os.fstat(file.fileno())
+            content = file.read()
+            after = os.fstat(file.fileno())
     except FileNotFoundError:
         raise missing(path, ledger.shown(path)) from None
     except (OSError, ValueError) as error:
         found = f"a path that cannot be read ({getattr(error, 'strerror', None) or error})"
         raise InputError(ledger.shown(path), found, "a readable file", hint="check the path and its permissions") from None
+    if (before.st_size, before.st_mtime_ns) != (after.st_size, after.st_mtime_ns) or len(content) != after.st_size:
+        found = f"a file that changed while it was read (from {before.st_size:,} to {after.st_size:,} bytes)"
+        raise InputError(ledger.shown(path), found, "a file that is finished", hint="wait until it is written, then try again")
     ledger.inputs[path] = hashlib.sha256(content).hexdigest()
     return content
 
@@ -114,6 +121,9 @@ def read_pieces(content: bytes, file: str, beside: Beside = nothing_beside) -> t
     except MemoryError:
         hint = "the counts in the file may be damaged: export it again"
         raise FormatError(file, "more data than there is memory for", "a file that fits into memory", hint=hint) from None
+    if len(found) > MOST_SURFACES:
+        hint = "a surface for each fault is wanted: merge the pieces of each before export"
+        raise FormatError(file, f"{len(found):,} surfaces", f"{MOST_SURFACES:,} or fewer", hint=hint)
     for piece in found:
         check_piece(piece, file)
     return tuple(replace(piece, history=(*piece.history, note)) for piece in found) if note else found

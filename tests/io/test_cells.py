@@ -8,7 +8,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from structviz.errors import FormatError, SurfaceError
-from structviz.io.cells import check_runs, fan, strips, triangles_of_cells, used_only
+from structviz.io.cells import check_runs, fan, parted, strips, triangles_of_cells, used_only
 
 cells = st.lists(st.lists(st.integers(0, 50), max_size=7), max_size=12)
 
@@ -78,3 +78,14 @@ def test_used_only_keeps_places_and_order():
     kept, triangles = used_only(vertices, np.array([[5, 1, 3]]))
     assert kept[triangles].tolist() == vertices[[[5, 1, 3]]].tolist()
     assert len(kept) == 3
+
+
+def test_parts_cut_out_in_one_go_are_those_cut_out_one_by_one():
+    chance = np.random.default_rng(5)
+    vertices, triangles = chance.normal(size=(60, 3)), chance.integers(0, 60, (200, 3))
+    owner = chance.integers(0, 7, 200)
+    owner[owner == 4] = 5  # a part without triangles
+    for part, (places, corners) in enumerate(parted(vertices, triangles, owner, 7)):
+        wanted_places, wanted_corners = used_only(vertices, triangles[owner == part])
+        assert np.array_equal(places, wanted_places)
+        assert np.array_equal(corners, wanted_corners)

@@ -12,7 +12,7 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from structviz.io.cells import no_triangles, used_only
+from structviz.io.cells import no_triangles, parted, used_only
 from structviz.io.format import CELL_ARRAYS, CellData, Format, Piece, start_of
 from structviz.io.gmsh import Mesh, parsed
 from structviz.surfaces.surface import Integers, Surface
@@ -38,7 +38,11 @@ def read(content: bytes, file: str) -> tuple[Piece, ...]:
     if not len(numbers):
         return (Piece("", *used_only(mesh.points, corners), history),)
     hull = on_hull(mesh, corners)
-    return tuple(piece_of(mesh, int(number), corners[groups == number], hull[groups == number], history) for number in numbers)
+    grouped = groups > 0
+    owner = np.searchsorted(numbers, groups[grouped])
+    inside = np.bincount(owner, ~hull[grouped], minlength=len(numbers)) > 0
+    parts = parted(mesh.points, corners[grouped], owner, len(numbers))
+    return tuple(piece_of(mesh, int(number), part, bool(keep), history) for number, part, keep in zip(numbers, parts, inside))
 
 
 def faces_of(mesh: Mesh) -> tuple[Integers, Integers, tuple[str, ...]]:
@@ -76,11 +80,10 @@ def on_hull(mesh: Mesh, corners: Integers) -> NDArray[np.bool_]:
     return (times - own)[inverse[: len(corners)]] == 1
 
 
-def piece_of(mesh: Mesh, number: int, corners: Integers, hull: NDArray[np.bool_], history: tuple[str, ...]) -> Piece:
+def piece_of(mesh: Mesh, number: int, part: tuple[NDArray, Integers], inside: bool, history: tuple[str, ...]) -> Piece:
     """Return the surface of one physical group, set aside where it lies wholly on the outside of the volume."""
     name = mesh.names.get((2, number), f"group {number}")
-    aside = "it lies on the outside of the volume mesh, so it bounds the model" if len(hull) and hull.all() else ""
-    return Piece(name, *used_only(mesh.points, corners), history, aside)
+    return Piece(name, *part, history, "" if inside else "it lies on the outside of the volume mesh, so it bounds the model")
 
 
 def write(surface: Surface, cell_data: CellData) -> bytes:

@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from structviz.errors import FormatError
-from structviz.io.cells import check_indices, counted, fan, no_triangles, used_only
+from structviz.io.cells import check_indices, counted, fan, no_triangles, parted
 from structviz.io.format import CELL_ARRAYS, OWN_LENGTH, CellData, Format, Piece, start_of
 from structviz.io.text import EXPORT_AGAIN, integers, points, text_of
 from structviz.surfaces.surface import Integers, Surface
@@ -40,7 +40,7 @@ def read(content: bytes, file: str) -> tuple[Piece, ...]:
     ids, ends, history = corners([lines[row] for row in faces], np.cumsum(kind == "v")[faces], file)
     check_indices(ids.reshape(-1, 1), len(vertices), file, base=1)
     names, owner = sections(lines, kind, faces)
-    return tuple(piece_of(names[key], vertices, ids, ends, owner == key, history, len(names)) for key in first_seen(owner))
+    return pieces_of(names, vertices, ids, ends, owner, history)
 
 
 def corners(lines: list[str], read_before: Integers, file: str) -> tuple[Integers, Integers, tuple[str, ...]]:
@@ -76,14 +76,19 @@ def first_seen(owner: Integers) -> list[int]:
     return [int(key) for key in found[np.argsort(first)]]
 
 
-def piece_of(name: str, vertices: NDArray, ids: Integers, ends: Integers, mine: NDArray, history: tuple[str, ...], count: int) -> Piece:
-    """Return the surface of one section, with only its own vertices where the file holds several sections."""
-    if mine.all():
-        return Piece(name, vertices, fan(ids, ends), history)
+def pieces_of(
+    names: list[str], vertices: NDArray, ids: Integers, ends: Integers, owner: Integers, history: tuple[str, ...]
+) -> tuple[Piece, ...]:
+    """Return the surface of each section, with only its own vertices where the file holds several sections."""
+    if len(names) == 1 or (owner == owner[0]).all():
+        return (Piece(names[owner[0]], vertices, fan(ids, ends), history),)
     sizes = np.diff(ends, prepend=0)
-    triangles = fan(ids[np.repeat(mine, sizes)], np.cumsum(sizes[mine]))
-    split = int((sizes[mine] > 3).sum())
-    return Piece(name, *used_only(vertices, triangles), (f"{counted(split, 'polygon')} split into triangles",) if split else ())
+    split = np.bincount(owner[sizes > 3], minlength=len(names))
+    parts = parted(vertices, fan(ids, ends), np.repeat(owner, np.maximum(sizes - 2, 0)), len(names))
+    return tuple(
+        Piece(names[key], *parts[key], (f"{counted(int(split[key]), 'polygon')} split into triangles",) if split[key] else ())
+        for key in first_seen(owner)
+    )
 
 
 def write(surface: Surface, cell_data: CellData) -> bytes:
