@@ -11,10 +11,11 @@ PROJECT = Path(__file__).resolve().parents[1]
 SHARED = PROJECT.parent / "shared"
 
 
-def skip_or_fail(reason: str) -> None:
-    """Skip with the reason; under STRUCTVIZ_TESTS=all fail instead, so that the project's own check misses nothing."""
-    if os.environ.get("STRUCTVIZ_TESTS") == "all":
-        pytest.fail(f"STRUCTVIZ_TESTS=all, but {reason}")
+def skip_or_fail(reason: str, wanted_under: tuple[str, ...] = ("all", "all-but-data")) -> None:
+    """Skip with the reason; under a STRUCTVIZ_TESTS that wants it fail instead, so that the project's own check misses nothing."""
+    chosen = os.environ.get("STRUCTVIZ_TESTS")
+    if chosen in wanted_under:
+        pytest.fail(f"STRUCTVIZ_TESTS={chosen}, but {reason}")
     pytest.skip(reason)
 
 
@@ -32,5 +33,5 @@ def shared_data() -> Path:
     """
     folder = SHARED / "data"
     if not folder.is_dir():
-        skip_or_fail("the open data folder shared/data is not beside the project")
+        skip_or_fail("the open data folder shared/data is not beside the project", wanted_under=("all",))
     return folder

@@ -42,9 +42,9 @@ def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], depends: Sen
     and only where the page came from.
     """
     parts = parts_of(analysis, depends)
-    data, arrays = _scene_data(analysis)
     viewer = _optional("structviz.report.page_data", "viewer_script")
     bundle = (viewer() if viewer else None) or ""
+    data, arrays = _scene_data(analysis) if bundle else ({}, "")  # without the 3D view nothing reads them
     scripts = {"page": _template("page.js"), "viewer": _whole(bundle), "live": live}  # the page first: it gives the 3D view its room
     slots = {
         "policy": _policy(scripts.values(), asks=bool(live)),

@@ -7,7 +7,6 @@ size. The arrays stand one after another, little-endian, in one zlib stream.
 from __future__ import annotations
 
 import zlib
-from dataclasses import dataclass
 from importlib.resources import files
 from typing import Any
 
@@ -16,41 +15,19 @@ from numpy.typing import NDArray
 
 from structviz.analysis import Analysis, FaultResult
 from structviz.orientation.planes import slip_vectors
-from structviz.report.annotated import OPEN_RATIO, triangle_values
 from structviz.report.names import printable
+from structviz.report.page_fields import coded_fields
 from structviz.report.page_geometry import Drawn, drawn_surfaces, quantised
-from structviz.stress.regime import Regime
-from structviz.stress.tensor import dilation_tendency, reduced_tensor
+from structviz.report.page_words import headline, regime_name
 from structviz.views import palette
 from structviz.views.captions import shortened
+from structviz.views.glyph_layers import GlyphLayer, glyph_layers, middle_station
 from structviz.views.glyphs import stress_glyph
 from structviz.views.scene import StressGlyph, build_scene
 
 MOST_TRIANGLES = 300_000  # drawn by the page; beyond, surfaces are simplified
 MOST_OF_HORIZONS = 40_000
-NOTHING = 65_535  # step that stands for no value
-
-
-@dataclass(frozen=True)
-class Shown:
-    """One field of the triangles as the page shows it: code k stands for low + k * step."""
-
-    key: str
-    title: str
-    unit: str
-    low: float
-    high: float
-    step: float
-    cyclic: bool = False
-
-
-FIELDS = (
-    Shown("dip_deg", "Dip", "°", 0.0, 90.0, 0.5),
-    Shown("predicted_rake_deg", "Predicted rake", "°", -180.0, 180.0, 1.0, cyclic=True),
-    Shown("misfit_deg", "Misfit of declared slip", "°", 0.0, 180.0, 1.0),
-    Shown("slip_tendency", "Slip tendency", "of the greatest", 0.0, 1.0, 0.005),
-    Shown("dilation_tendency", "Dilation tendency", "", 0.0, 1.0, 0.005),
-)
+CAUTION = "structviz: a screening aid. It tests geometry against declared movement, not stress magnitude, stability or hazard."
 
 
 class _Store:
@@ -82,6 +59,8 @@ def page_data(analysis: Analysis, *, triangles: int = MOST_TRIANGLES) -> tuple[d
     tolerance = max((each.tolerance_m for each in drawn), default=0.0)
     data: dict[str, Any] = {
         "title": printable(analysis.model.title or "model", 200),
+        "headline": headline(analysis),
+        "caution": CAUTION,
         "origin": _numbers(scene.origin),
         "low": _numbers(scene.low),
         "high": _numbers(scene.high),
@@ -89,7 +68,7 @@ def page_data(analysis: Analysis, *, triangles: int = MOST_TRIANGLES) -> tuple[d
         "faults": [_fault(result, box, scene.origin) for result, box in zip(analysis.faults, boxes)],
         "fields": fields,
         "horizons": horizons,
-        "glyphs": [_glyph(glyph, number < len(analysis.regimes)) for number, glyph in enumerate(scene.glyphs)],
+        "glyphs": [_layer(layer, analysis) for layer in glyph_layers(analysis, scene)],
         "glyphParts": _glyph_parts(store),
         "striae": _striae(analysis, scene.origin),
         "tolerance": round(tolerance, 2),
@@ -126,40 +105,17 @@ def _differences(triangles: NDArray[np.int64]) -> NDArray[np.int32]:
 
 def _add_fields(store: _Store, analysis: Analysis, drawn: tuple[Drawn, ...]) -> list[dict[str, Any]]:
     """Put the values of drawn triangles into the store; return those fields that have any."""
-    pieces: dict[str, list[NDArray]] = {shown.key: [] for shown in FIELDS}
-    for result, each in zip(analysis.faults, drawn):
-        regime = analysis.regimes[result.phase] if analysis.regimes else None
-        values = {**triangle_values(result, regime), "dilation_tendency": _dilation(result, regime)}
-        for shown in FIELDS:
-            pieces[shown.key].append(_coded(values[shown.key][each.source], shown))
     kept = []
-    for shown in FIELDS:
-        codes = np.concatenate(pieces[shown.key])
-        if (codes != NOTHING).any():
-            store.add(f"field.{shown.key}", codes)
-            about = {"key": shown.key, "title": shown.title, "unit": shown.unit, "cyclic": shown.cyclic}
-            kept.append(about | {"low": shown.low, "high": shown.high, "step": shown.step})
+    for shown, codes in coded_fields(analysis, drawn):
+        store.add(f"field.{shown.key}", codes)
+        about = {"key": shown.key, "title": shown.title, "unit": shown.unit, "cyclic": shown.cyclic}
+        kept.append(about | {"low": shown.low, "high": shown.high, "step": shown.step})
     return kept
-
-
-def _coded(values: NDArray, shown: Shown) -> NDArray[np.uint16]:
-    known = np.isfinite(values)
-    codes = np.rint((np.where(known, values, shown.low) - shown.low) / shown.step)
-    return np.where(known, codes, NOTHING).astype(np.uint16)
-
-
-def _dilation(result: FaultResult, regime: Regime | None) -> NDArray:
-    normals = result.measured.normals
-    if regime is None:
-        return np.full(len(normals), np.nan)
-    values = dilation_tendency(reduced_tensor(regime.axes, regime.shape_ratio.value if regime.shape_ratio else OPEN_RATIO), normals)
-    return np.where(result.measured.areas_m2 > 0, values, np.nan)
 
 
 def _fault(result: FaultResult, box: dict[str, Any], origin: NDArray) -> dict[str, Any]:
     """Return one fault: its words, its box, and an arrow of slip declared and predicted at its middle station."""
     places = result.stations.places
-    middle = places[((places - places.mean(0)) ** 2).sum(1).argmin()]
     predicted = result.verdict.predicted_rake_deg
     return {
         **box,
@@ -168,7 +124,7 @@ def _fault(result: FaultResult, box: dict[str, Any], origin: NDArray) -> dict[st
         "verdict": result.verdict.word,
         "strike": round(result.measured.strike_deg, 1),
         "size": round(float(np.sqrt(result.measured.area_m2)), 1),
-        "place": _numbers(middle - origin),
+        "place": _numbers(middle_station(result) - origin),
         "top": _numbers(_top(places) - origin),
         "normal": _numbers(result.measured.normal, 5),
         "declared": _slip(result, result.sector.rake_deg) if result.sector else None,
@@ -192,13 +148,16 @@ def _add_horizons(store: _Store, analysis: Analysis, origin: NDArray) -> list[di
     return [{**box, "name": printable(horizon.name, 200)} for horizon, box in zip(analysis.model.horizons, boxes)]
 
 
-def _glyph(glyph: StressGlyph, whole: bool) -> dict[str, Any]:
-    return {
-        "place": _numbers(glyph.place),
-        "axes": [_numbers(axis, 5) for axis in glyph.axes],
-        "size": round(glyph.size_m, 1),
-        "whole": whole,
-    }
+def _layer(layer: GlyphLayer, analysis: Analysis) -> dict[str, Any]:
+    """Return a layer of glyphs; where there are several stresses, the large ones say which each is."""
+    glyphs = [_glyph(glyph) for glyph in layer.glyphs]
+    if layer.key == "whole" and len(glyphs) > 1:
+        glyphs = [{**glyph, "label": shortened(printable(regime_name(analysis, k)), 18)} for k, glyph in enumerate(glyphs)]
+    return {"key": layer.key, "title": layer.title, "shown": layer.shown, "glyphs": glyphs}
+
+
+def _glyph(glyph: StressGlyph) -> dict[str, Any]:
+    return {"place": _numbers(glyph.place), "axes": [_numbers(axis, 5) for axis in glyph.axes], "size": round(glyph.size_m, 1)}
 
 
 def _glyph_parts(store: _Store) -> list[dict[str, str]]:

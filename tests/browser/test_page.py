@@ -38,8 +38,20 @@ def worst(analysis: Analysis) -> int:
     return next(k for k, result in enumerate(analysis.faults) if result.verdict.word == "conflicting")
 
 
+def still(visit: Visit, what: str) -> dict[str, float]:
+    """Return the box of an element once it has stopped moving."""
+    before = None
+    for _ in range(200):
+        box = visit.page.locator(what).bounding_box()
+        if box and box == before:
+            return dict(box)
+        before = box
+        visit.page.wait_for_timeout(60)
+    raise AssertionError(f"{what} does not come to rest")
+
+
 def test_it_opens_without_a_request_or_a_complaint(visit: Visit) -> None:
-    visit.page.wait_for_timeout(500)
+    visit.page.wait_for_load_state("networkidle")
     assert visit.requests == []
     assert visit.complaints == []
 
@@ -156,16 +168,14 @@ def test_on_a_phone_nothing_is_wider_than_the_screen(browser: Any, page_file: Pa
     with visiting(browser, page_file, viewport=PHONE, has_touch=True, is_mobile=True) as visit:
         assert visit.page.evaluate("document.documentElement.scrollWidth") <= PHONE["width"]
         row(visit, worst(analysis)).tap()
-        visit.page.wait_for_timeout(800)
-        box = visit.page.locator("#record").bounding_box()
-        assert box is not None
+        box = still(visit, "#record")
         assert 0 <= box["y"] < PHONE["height"] / 2
         assert visit.complaints == []
 
 
 def test_without_webgl_the_argument_is_whole(page_file: Path, browser_without_webgl: Any, analysis: Analysis) -> None:
     with visiting(browser_without_webgl, page_file, viewport=WIDE) as visit:
-        visit.page.wait_for_timeout(300)
+        visit.page.locator("#why-no-scene:not(:empty)").wait_for()
         assert visit.page.locator(".instead img").first.is_visible()
         assert visit.page.locator("#why-no-scene").inner_text().endswith("everything else is complete.")
         row(visit, worst(analysis)).click()

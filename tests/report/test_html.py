@@ -266,6 +266,15 @@ def test_the_3d_view_and_plots_take_their_places(analysis: Analysis, monkeypatch
     assert [e["data-plot"] for e in tree.of("figure")] == ["net"]
 
 
+def test_without_the_3d_view_its_data_are_left_out(analysis: Analysis, monkeypatch: pytest.MonkeyPatch) -> None:
+    stand_ins = {"page_data": lambda analysis: ({"title": "t"}, b"\x00" * 3000), "viewer_script": lambda: None}
+    monkeypatch.setattr(page, "_optional", lambda module, name: stand_ins.get(name))
+    tree = Tree(page_text(analysis, pictures={}))
+    assert tree.of("script", id="structviz-data")[0]["text"] == "{}"
+    assert tree.of("script", id="structviz-arrays")[0]["text"] == ""
+    assert not tree.of("script", data_part="viewer")
+
+
 def test_very_many_undetermined_faults_are_told_in_the_table(no_stress: Analysis) -> None:
     many = tuple(replace(no_stress.faults[0], fault=replace(no_stress.faults[0].fault, name=f"f{k}")) for k in range(45))
     tree = Tree(page_text(replace(no_stress, faults=many), pictures={}))

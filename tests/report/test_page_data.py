@@ -16,7 +16,8 @@ from numpy.typing import NDArray
 
 from structviz.analysis import Analysis, Settings, run
 from structviz.report.annotated import triangle_values
-from structviz.report.page_data import FIELDS, NOTHING, page_data, viewer_script
+from structviz.report.page_data import page_data, viewer_script
+from structviz.report.page_fields import FIELDS, NOTHING, round_above
 from structviz.report.page_geometry import STEPS, clustered, drawn_surfaces, quantised
 from structviz.surfaces.surface import Surface
 from structviz.synthetic import random_model
@@ -81,6 +82,28 @@ def test_values_are_those_of_the_meshes_written_beside(analysis: Analysis) -> No
         known = np.isfinite(told[shown.key])
         assert ((codes != NOTHING) == known).all()
         np.testing.assert_allclose((shown.low + shown.step * codes)[known], told[shown.key][known], atol=0.501 * shown.step)
+
+
+def test_distance_to_the_nearest_pair_is_that_of_the_nearest(analysis: Analysis) -> None:
+    data, packed = page_data(analysis)
+    told = next(field for field in data["fields"] if field["key"] == "pair_distance_m")
+    codes, at = arrays_of(data, packed)["field.pair_distance_m"], 0
+    assert told["unit"] == "m"
+    for result in analysis.faults:
+        surface = result.fault.surface
+        middles = surface.vertices[surface.triangles].mean(1)
+        plain = np.array([min(math.dist(middle, place) for place in analysis.pairs.places) for middle in middles])
+        here = codes[at : at + len(middles)]
+        np.testing.assert_allclose(told["low"] + told["step"] * here, plain, atol=0.51 * told["step"])
+        at += len(middles)
+    assert plain.max() <= told["high"] == round_above(told["high"])
+
+
+def test_every_field_that_is_asked_for_is_there_with_a_unit(analysis: Analysis) -> None:
+    units = {field["key"]: field["unit"] for field in page_data(analysis)[0]["fields"]}
+    wanted = ("dip_deg", "predicted_rake_deg", "slip_tendency", "misfit_deg", "dilation_tendency", "pair_distance_m")
+    assert set(wanted) == set(units)
+    assert all(units.values())
 
 
 def test_a_field_without_any_value_is_left_out() -> None:

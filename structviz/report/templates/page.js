@@ -181,6 +181,34 @@ function byHand(text) {
 
 addEventListener("beforeprint", () => $$("details").forEach((each) => (each.open = true)));
 
+// --- light and dark --------------------------------------------------------------------------------
+
+const night = matchMedia("(prefers-color-scheme: dark)");
+const dark = [...document.styleSheets].flatMap((sheet) => [...sheet.cssRules]).find((rule) => rule.media?.mediaText.includes("prefers-color-scheme"));
+
+// The button names what it leads to. What is chosen holds for this visit: a page from disk keeps nothing.
+function offerThemes() {
+  const button = document.createElement("button");
+  button.type = "button";
+  button.className = "theme";
+  let now = night.matches;
+  const name = () => (button.textContent = now ? "Light" : "Dark");
+  button.addEventListener("click", () => {
+    now = !now;
+    dark.media.mediaText = now ? "screen" : "not all";
+    document.documentElement.style.colorScheme = now ? "dark" : "light";
+    name();
+    tell("theme", { dark: now });
+  });
+  night.addEventListener("change", () => {
+    if (dark.media.mediaText.includes("prefers")) now = night.matches;
+    name();
+  });
+  name();
+  $(".contents")?.append(button);
+}
+if (dark) offerThemes();
+
 // --- where the 3D view is missing ---------------------------------------------------------------
 
 function without(why) {

@@ -1,7 +1,8 @@
-// Names over the picture: of faults in conflict and of the one that is picked. One that would cover an earlier one is left out.
+// Words over the picture: names of faults in conflict and of the one that is picked, of stresses, and coordinates of the frame.
+// What would cover something earlier is left out.
 
 import { Vector3 } from "three";
-import { element } from "./panel.js";
+import { element, number } from "./panel.js";
 
 const MOST = 14;
 
@@ -10,37 +11,73 @@ export function makeNames(data, place) {
   place.append(box);
   const labels = new Map();
   const wanted = data.faults.flatMap(({ verdict }, fault) => (verdict === "conflicting" ? [fault] : [])).slice(0, MOST);
+  const stresses = data.glyphs.flatMap(({ key, glyphs }) => glyphs.filter(({ label }) => label).map((glyph) => ({ layer: key, ...glyph })));
 
-  const labelOf = (fault) => {
-    if (!labels.has(fault)) {
-      const made = element("bdi", { text: data.faults[fault].short, class: data.faults[fault].verdict });
+  const labelOf = (text, kind) => {
+    const key = `${kind} ${text}`;
+    if (!labels.has(key)) {
+      const made = element("bdi", { text, class: kind });
       box.append(made);
-      labels.set(fault, { made, width: made.offsetWidth, height: made.offsetHeight });
+      labels.set(key, { made, text, kind, width: made.offsetWidth, height: made.offsetHeight });
     }
-    return labels.get(fault);
+    return labels.get(key);
   };
 
-  function update(camera, state, section) {
-    const taken = [];
-    const [width, height] = [place.clientWidth, place.clientHeight];
+  function candidates(camera, state, section, visible) {
     const order = state.picked === null ? wanted : [state.picked, ...wanted.filter((fault) => fault !== state.picked)];
+    const faults = order.map((fault) => {
+      const at = raised(data.faults[fault].top, state.height);
+      return state.shown[fault] && section.keeps(at, state.height) ? { text: data.faults[fault].short, kind: data.faults[fault].verdict, at, picked: fault === state.picked } : null;
+    });
+    const glyphs = stresses.filter(({ layer }) => visible(layer)).map(({ label, place: at, size }) => ({ text: label, kind: "stress", at: raised(at, state.height).add(new Vector3(0, 0, 1.2 * size)) }));
+    return [...faults.filter(Boolean), ...glyphs, ...(visible("frame") ? corners(data, camera, state.height) : [])];
+  }
+
+  // Shows what fits; `kept` are the words as they stand, for a saved picture.
+  const kept = [];
+  function update(camera, state, section, visible) {
+    kept.length = 0;
+    const [width, height] = [place.clientWidth, place.clientHeight];
     for (const { made } of labels.values()) made.hidden = true;
-    for (const fault of order) {
-      const top = new Vector3(...data.faults[fault].top);
-      top.z *= state.height;
-      if (!state.shown[fault] || !section.keeps(top, state.height)) continue;
-      const { made, width: wide, height: tall } = labelOf(fault);
-      top.project(camera);
-      const x = ((top.x + 1) / 2) * width;
-      const y = ((1 - top.y) / 2) * height - tall - 4;
+    for (const { text, kind, at, picked, under } of candidates(camera, state, section, visible)) {
+      const { made, width: wide, height: tall } = labelOf(text, kind);
+      const seen = at.project(camera);
+      const centre = ((seen.x + 1) / 2) * width;
+      const x = under === undefined ? centre : Math.min(Math.max(centre, wide / 2 + 5), width - wide / 2 - 5);
+      const y = ((1 - seen.y) / 2) * height + (under ? 3 : -tall - 4);
       const mine = [x - wide / 2 - 3, y - 2, x + wide / 2 + 3, y + tall + 2];
-      if (mine[0] < 0 || mine[1] < 36 || mine[2] > width || mine[3] > height - 56 || taken.some((other) => mine[0] < other[2] && other[0] < mine[2] && mine[1] < other[3] && other[1] < mine[3])) continue;
-      taken.push(mine);
+      if (mine[0] < 0 || mine[1] < 36 || mine[2] > width || mine[3] > height - 56 || kept.some(({ room }) => mine[0] < room[2] && room[0] < mine[2] && mine[1] < room[3] && room[1] < mine[3])) continue;
       made.hidden = false;
-      made.classList.toggle("picked", fault === state.picked);
+      made.classList.toggle("picked", Boolean(picked));
       made.style.transform = `translate(${(x - wide / 2).toFixed(1)}px, ${y.toFixed(1)}px)`;
+      kept.push({ text, kind, x, y, wide, tall, room: mine });
     }
   }
 
-  return { update };
+  // Letters may be of another size than when a word was measured.
+  function measure() {
+    for (const label of labels.values()) {
+      label.made.hidden = false;
+      Object.assign(label, { width: label.made.offsetWidth, height: label.made.offsetHeight });
+    }
+  }
+
+  return { update, measure, kept };
+}
+
+const raised = ([x, y, z], height) => new Vector3(x, y, z * height);
+
+// Real coordinates at the ends of the two near edges of the floor, and of the post between them.
+function corners({ low, high, origin }, camera, height) {
+  const towards = new Vector3(0, 0, 1).applyQuaternion(camera.quaternion);
+  const [near, far] = [0, 1].map((k) => (towards.getComponent(k) > 0 ? [high[k], low[k]] : [low[k], high[k]])).reduce(([a, b], [one, other]) => [[...a, one], [...b, other]], [[], []]);
+  const word = (letter, axis, value) => `${letter} ${number(origin[axis] + value)}`;
+  const floor = low[2] * height;
+  const made = (text, x, y, z) => ({ text, kind: "coordinate", at: new Vector3(x, y, z), under: z === floor });
+  const found = [
+    made(word("E", 0, far[0]), far[0], near[1], floor), made(word("N", 1, far[1]), near[0], far[1], floor),
+    made(`${word("E", 0, near[0])}  ${word("N", 1, near[1])}`, near[0], near[1], floor),
+  ];
+  if (towards.z < 0.98) found.push(made(`${word("up", 2, high[2])} m`, far[0], near[1], high[2] * height));
+  return found;
 }

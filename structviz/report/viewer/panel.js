@@ -23,13 +23,13 @@ export function slider(label, settings, oninput) {
   return { row: element("label", { class: "sv-row" }, element("span", { text: label }), input, output), input, output };
 }
 
-export function toggle(label, on, onchange) {
-  const input = element("input", { type: "checkbox", onchange: () => onchange(input.checked) });
+export function toggle(label, on, onchange, key) {
+  const input = element("input", { type: "checkbox", "data-layer": key, onchange: () => onchange(input.checked) });
   input.checked = on;
   return element("label", { class: "sv-check" }, input, element("span", { text: label }));
 }
 
-export const number = (value, digits = 0) => value.toLocaleString("en", { minimumFractionDigits: digits, maximumFractionDigits: digits }).replaceAll(",", "\u2009");
+export const number = (value, digits = 0) => value.toLocaleString("en", { minimumFractionDigits: digits, maximumFractionDigits: digits }).replaceAll(",", "\u2009").replace("-", "\u2212");
 
 export const STYLE = `
 #scene { overflow: hidden; }
@@ -42,7 +42,7 @@ export const STYLE = `
 .sv-panel select, .sv-panel button, .sv-panel summary { font: inherit; color: inherit; background: var(--raised, #fff); border: 1px solid var(--hair, #d9d7d0); border-radius: 3px; padding: .14rem .45rem; cursor: pointer; max-width: 13rem; }
 .sv-panel option { background: var(--raised, #fff); color: var(--ink, #22303c); }
 .sv-more { margin-left: auto; }
-.sv-inside { background: color-mix(in srgb, var(--raised, #fff) 94%, transparent); } .sv-more summary { list-style: none; display: inline-block; }
+.sv-inside { background: color-mix(in srgb, var(--raised, #fff) 94%, transparent); } .sv-more summary { list-style: none; display: block; margin: 0; }
 .sv-more summary::-webkit-details-marker { display: none; }
 .sv-more[open] summary { border-color: var(--ink, #22303c); }
 .sv-more { position: relative; } .sv-inside { position: absolute; right: 0; top: calc(100% + .25rem); z-index: 2; border: 1px solid var(--hair, #d9d7d0); border-radius: 3px; text-align: left; padding: .5rem .4rem .4rem; display: grid; grid-template-columns: minmax(0, 1fr); gap: .12rem; width: 18rem; max-width: calc(100vw - 3rem); }
@@ -51,7 +51,7 @@ export const STYLE = `
 .sv-inside output { min-width: 5.4rem; text-align: right; white-space: nowrap; }
 .sv-check { display: flex; gap: .45rem; align-items: center; padding: .08rem .35rem; }
 .sv-check input { accent-color: var(--ink, #22303c); margin: 0; }
-.sv-legend { left: .7rem; top: 2.9rem; padding: .25rem .4rem; pointer-events: none; max-width: 15rem; }
+.sv-legend { left: .7rem; top: 2.9rem; padding: .25rem .4rem; pointer-events: none; max-width: calc(100% - 1.4rem); }
 .sv-legend i { display: inline-block; width: .8em; height: .8em; margin-right: .4em; border-radius: 1px; vertical-align: -.05em; }
 .sv-legend .sv-bar { width: 11rem; height: .6rem; margin: .2rem 0; border-radius: 1px; }
 .sv-legend .sv-ends { display: flex; justify-content: space-between; width: 11rem; }
@@ -66,6 +66,10 @@ export const STYLE = `
 .sv-names bdi { position: absolute; left: 0; top: 0; white-space: nowrap; padding: 0 .3rem; border-radius: 2px; color: var(--ink, #22303c); background: color-mix(in srgb, var(--raised, #fff) 82%, transparent); }
 .sv-names .conflicting { border-bottom: 2px solid var(--conflicting, #a33a1c); }
 .sv-names .picked { font-weight: 600; box-shadow: 0 0 0 1px var(--ink, #22303c); }
+.sv-names .stress { font-weight: 600; }
+.sv-names .coordinate { background: color-mix(in srgb, var(--raised, #fff) 60%, transparent); color: var(--quiet, #5b6872); font-size: .68rem; font-variant-numeric: tabular-nums; padding: 0; }
+.sv-glyph-note { color: var(--quiet, #5b6872); font-size: .75rem; margin-top: .15rem; }
+.sv-heading { font-weight: 600; padding: .3rem .35rem .1rem; }
 .sv-compass { width: 46px; height: 46px; flex: none; }
 @media (max-width: 640px) { .sv-top .sv-row > span:first-child { display: none; } .sv-top { gap: .2rem; } .sv-top > .sv-row { padding: 0; } .sv-panel select { max-width: 8.5rem; } .sv-where { font-size: .72rem; } .sv-inside .sv-row > span:first-child { display: inline !important; } }
 `;

@@ -1,45 +1,38 @@
-// Which triangle lies under a point of the picture. The tree is built once, after the first picture.
+// Which triangle lies under a point of the picture. Each fault has a tree of its own, made when it is first wanted.
 
-import { Raycaster, Vector2, Vector3 } from "three";
-import { MeshBVH, SAH, CENTER, acceleratedRaycast } from "three-mesh-bvh";
+import { Box3, DoubleSide, Matrix4, Raycaster, Vector2, Vector3 } from "three";
+import { MeshBVH, SAH, CENTER } from "three-mesh-bvh";
 
-const LARGE = 100_000; // triangles; beyond, the quicker way to build pays
+const LARGE = 20_000; // triangles of a fault; beyond, the quicker way to build pays
 
-export function makePicker(mesh, camera) {
-  const ray = new Raycaster();
-  const begin = mesh.userData.begin;
-  mesh.raycast = acceleratedRaycast;
+export function makePicker(data, mesh, camera) {
+  const { begin } = mesh.userData;
+  const caster = new Raycaster();
+  const trees = data.faults.map(() => null);
+  const boxes = data.faults.map(({ low, step }) => new Box3(new Vector3(...low), new Vector3(...low.map((value, k) => value + 65535 * step[k]))).expandByScalar(1e-3));
 
-  function build() {
-    if (!mesh.geometry.boundsTree) mesh.geometry.boundsTree = new MeshBVH(mesh.geometry, { strategy: begin.at(-1) > LARGE ? CENTER : SAH, indirect: true });
+  function tree(fault) {
+    const count = begin[fault + 1] - begin[fault];
+    return (trees[fault] ??= new MeshBVH(mesh.geometry, { strategy: count > LARGE ? CENTER : SAH, indirect: true, setBoundingBox: false, range: { start: 3 * begin[fault], count: 3 * count } }));
   }
 
-  // x and y run from -1 to 1; returns { fault, triangle, point } or null. `seen` says whether a hit is drawn.
-  function at(x, y, seen) {
-    build();
+  // x and y run from -1 to 1; returns { fault, triangle, point } or null. `shown` says which faults are drawn, `kept` whether a point is.
+  function at(x, y, shown, kept) {
     camera.updateMatrixWorld();
-    ray.setFromCamera(new Vector2(x, y), camera);
-    const hits = ray.intersectObject(mesh, false);
-    for (const { faceIndex, point } of hits) {
-      const fault = faultOf(begin, faceIndex);
-      if (seen(fault, point)) return { fault, triangle: faceIndex, point };
+    mesh.updateWorldMatrix(true, false);
+    caster.setFromCamera(new Vector2(x, y), camera);
+    const ray = caster.ray.clone().applyMatrix4(new Matrix4().copy(mesh.matrixWorld).invert());
+    let best = null;
+    for (let fault = 0; fault < trees.length; fault++) {
+      if (!shown[fault] || begin[fault] === begin[fault + 1] || !ray.intersectsBox(boxes[fault])) continue;
+      for (const { faceIndex, point } of tree(fault).raycast(ray, DoubleSide)) {
+        const place = point.clone().applyMatrix4(mesh.matrixWorld);
+        const far = place.distanceTo(caster.ray.origin);
+        if ((best === null || far < best.far) && kept(place)) best = { fault, triangle: faceIndex, point: place, far };
+      }
     }
-    return null;
+    return best;
   }
 
-  return { build, at };
+  return { at, work: (fault) => void tree(fault), count: trees.length };
 }
-
-// Row of the fault that a triangle belongs to, by halving.
-export function faultOf(begin, triangle) {
-  let low = 0;
-  let high = begin.length - 1;
-  while (high - low > 1) {
-    const middle = (low + high) >> 1;
-    if (begin[middle] <= triangle) low = middle;
-    else high = middle;
-  }
-  return low;
-}
-
-export const project = (point, camera) => new Vector3().copy(point).project(camera);

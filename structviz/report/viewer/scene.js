@@ -1,7 +1,7 @@
-// The model as objects to draw: all faults as one mesh, their rims, horizons, glyphs, slip lines and arrows.
+// The model as objects to draw: all faults as one mesh, horizons, glyphs, slip lines, arrows and the frame.
 
 import {
-  BufferAttribute, BufferGeometry, Color, DoubleSide, Group, InstancedMesh, LineBasicMaterial, LineSegments, Matrix4, Mesh,
+  BufferAttribute, BufferGeometry, DoubleSide, Group, InstancedMesh, LineBasicMaterial, LineSegments, Matrix4, Mesh,
   MeshLambertMaterial, Vector3,
 } from "three";
 import { starts, unpack } from "./data.js";
@@ -13,60 +13,44 @@ export function faultMesh(data, arrays) {
   geometry.setAttribute("color", new BufferAttribute(new Uint8Array((positions.length / 3) * 4), 4, true));
   const material = new MeshLambertMaterial({ vertexColors: true, side: DoubleSide, flatShading: true, alphaTest: 0.5, polygonOffset: true, polygonOffsetFactor: 1, polygonOffsetUnits: 1 });
   const mesh = new Mesh(geometry, material);
+  mesh.frustumCulled = false; // one mesh is the whole model: its bounds are not worth their time
   mesh.userData = { begin: starts(data.faults), cornerOf };
   return mesh;
 }
 
-// Edges that belong to one triangle only, of triangles `from` up to `to`, which are one surface.
-export function rimOf(mesh, from, to) {
-  const { cornerOf } = mesh.userData;
-  const positions = mesh.geometry.getAttribute("position").array;
-  const keys = new Float64Array(3 * (to - from));
-  const key = (at) => {
-    const [a, b] = [cornerOf[at], cornerOf[at % 3 === 2 ? at - 2 : at + 1]];
-    return Math.min(a, b) * 4294967296 + Math.max(a, b);
-  };
-  for (let k = 0; k < keys.length; k++) keys[k] = key(3 * from + k);
-  const once = alone(Float64Array.from(keys).sort());
-  const points = [];
-  keys.forEach((value, k) => {
-    if (!once.has(value)) return;
-    const at = 3 * from + k;
-    for (const end of [at, at % 3 === 2 ? at - 2 : at + 1]) points.push(positions[3 * end], positions[3 * end + 1], positions[3 * end + 2]);
-  });
-  return points;
-}
-
-const alone = (sorted) => new Set(sorted.filter((value, k) => value !== sorted[k - 1] && value !== sorted[k + 1]));
-
-export function lines(points, colour, order = 0) {
+export function lines(points, material, order = 0) {
   const geometry = new BufferGeometry();
   geometry.setAttribute("position", new BufferAttribute(Float32Array.from(points), 3));
-  const made = new LineSegments(geometry, new LineBasicMaterial({ color: colour }));
+  const made = new LineSegments(geometry, material);
   made.renderOrder = order;
   return made;
 }
 
-export function horizonMesh(data, arrays, colour) {
+export function horizonMesh(data, arrays, theme) {
   if (!data.horizons.length) return null;
   const geometry = new BufferGeometry();
   geometry.setAttribute("position", new BufferAttribute(unpack(data.horizons, arrays["horizons.places"], arrays["horizons.corners"]).positions, 3));
-  const material = new MeshLambertMaterial({ color: colour, side: DoubleSide, flatShading: true, transparent: true, opacity: 0.15, depthWrite: false });
-  return new Mesh(geometry, material);
+  const material = new MeshLambertMaterial({ side: DoubleSide, flatShading: true, transparent: true, opacity: 0.15, depthWrite: false });
+  return new Mesh(geometry, theme.paints(material, "horizon"));
 }
 
-// Every glyph as an instance of one shape a part; `raise` puts each at its place once heights are exaggerated.
-export function glyphGroup(data, arrays, colours) {
-  const group = new Group();
-  data.glyphParts.forEach(({ role }, number) => {
+// The shapes and colours that all glyphs share.
+export function glyphParts(data, arrays, theme) {
+  return data.glyphParts.map(({ role }, number) => {
     const geometry = new BufferGeometry();
     geometry.setAttribute("position", new BufferAttribute(arrays[`glyph.${number}.vertices`], 3));
     geometry.setIndex(new BufferAttribute(arrays[`glyph.${number}.triangles`], 1));
     geometry.computeVertexNormals();
-    group.add(new InstancedMesh(geometry, new MeshLambertMaterial({ color: colours[role] }), data.glyphs.length));
+    return { geometry, material: theme.paints(new MeshLambertMaterial(), role) };
   });
+}
+
+// A layer of glyphs, each an instance of the shared shapes; `raise` puts them at their places once heights are exaggerated.
+export function glyphGroup(glyphs, parts) {
+  const group = new Group();
+  for (const { geometry, material } of parts) group.add(new InstancedMesh(geometry, material, glyphs.length));
   group.userData.raise = (height) => {
-    data.glyphs.forEach(({ place, axes, size }, k) => {
+    glyphs.forEach(({ place, axes, size }, k) => {
       const matrix = new Matrix4().makeBasis(...axes.map((axis) => new Vector3(...axis).multiplyScalar(size)));
       if (matrix.determinant() < 0) matrix.makeBasis(...axes.map((axis, n) => new Vector3(...axis).multiplyScalar(n === 1 ? -size : size)));
       matrix.setPosition(place[0], place[1], place[2] * height);
@@ -103,13 +87,23 @@ export function striaLines(data, length) {
   return data.striae.flatMap(({ place, along }) => [-1, 1].flatMap((side) => place.map((value, k) => value + (side * length * along[k]) / 2)));
 }
 
+// Lines where faults meet: polylines one after another, each as many points as its count says.
+export function meetingLines({ counts }, places) {
+  const points = [];
+  let at = 0;
+  for (const count of counts) {
+    for (let k = 0; k + 1 < count; k++) points.push(...places.subarray(3 * (at + k), 3 * (at + k + 2)));
+    at += count;
+  }
+  return points;
+}
+
 // The floor of the frame and its posts.
 export function frameLines({ low, high }) {
   const [w, s, b] = low;
   const [e, n, t] = high;
   const floor = [[w, s, b], [e, s, b], [e, n, b], [w, n, b]];
-  const points = floor.flatMap((corner, k) => [...corner, ...floor[(k + 1) % 4], ...corner, corner[0], corner[1], t]);
-  return points;
+  return floor.flatMap((corner, k) => [...corner, ...floor[(k + 1) % 4], ...corner, corner[0], corner[1], t]);
 }
 
-export const asColour = (text) => new Color(text.trim());
+export const lineMaterial = (theme, name, settings = {}) => theme.paints(new LineBasicMaterial(settings), name);

@@ -1,55 +1,54 @@
-// One view: what is shown, how it is coloured, and what the mouse, the fingers and the keys do.
+// One view: what is shown, how it is coloured, and how it answers to its controls and to the rest of the page.
 
-import { AmbientLight, Box3, BufferAttribute, DirectionalLight, Group, Scene, Vector3, WebGLRenderer } from "three";
+import { AmbientLight, Box3, ColorManagement, DirectionalLight, Group, LinearSRGBColorSpace, Scene, Vector3, WebGLRenderer } from "three";
 import { makeCamera } from "./camera.js";
-import { NOTHING, paint, rgb } from "./colours.js";
-import { fillLegend, fillWhere, makeFoot } from "./furniture.js";
-import { choice, element, number, slider, STYLE, toggle } from "./panel.js";
+import { paint, rgb } from "./colours.js";
+import { fillLegend, fillWhere, legendOf, makeFoot, worded } from "./furniture.js";
+import { inPieces } from "./idle.js";
+import { grouped, makeLayers } from "./layers.js";
 import { makeNames } from "./names.js";
+import { choice, element, number, slider, STYLE, toggle } from "./panel.js";
 import { makePicker } from "./picking.js";
+import { listen, listenToKeys } from "./pointer.js";
+import { makeRims } from "./rims.js";
+import { composed } from "./save.js";
+import { faultMesh } from "./scene.js";
 import { AXES, makeSection } from "./section.js";
-import { faultMesh, frameLines, glyphGroup, horizonMesh, lines, rimOf, slipLines, striaLines } from "./scene.js";
+import { makeTheme } from "./theme.js";
 
-const STILL = 5; // pixels that a click may wander
+const SHARP = 2; // pixels of a saved picture to one of the page, at least
 const POINTS = [["oblique", "Oblique"], ["map", "Map"], ["south", "From the south"], ["west", "From the west"], ["strike", "Along strike"]];
 
 export function startView(place, data, arrays, tell) {
-  const style = getComputedStyle(document.documentElement);
-  const colour = (name, other) => style.getPropertyValue(`--${name}`).trim() || other;
+  ColorManagement.enabled = false;
+  const theme = makeTheme();
   const renderer = new WebGLRenderer({ antialias: true, alpha: true, preserveDrawingBuffer: true });
-  renderer.setPixelRatio(Math.min(devicePixelRatio, 2));
+  const pixels = Math.min(devicePixelRatio, 2);
+  renderer.setPixelRatio(pixels);
   renderer.localClippingEnabled = true;
+  renderer.outputColorSpace = LinearSRGBColorSpace; // with the line below: colours reach the screen as they stand in the legend
   const canvas = renderer.domElement;
   canvas.tabIndex = 0;
   canvas.setAttribute("role", "application");
   canvas.setAttribute("aria-label", "The model in 3D: arrows turn it, plus and minus zoom, Escape lets go of a fault");
   place.replaceChildren(element("style", { text: STYLE }), canvas);
 
-  const scene = new Scene();
-  const model = new Group();
+  const state = { picked: null, height: 1, field: null, shown: data.faults.map(() => true) };
   const mesh = faultMesh(data, arrays);
-  const begin = mesh.userData.begin;
-  const state = { picked: null, height: 1, field: null, shown: data.faults.map(() => true), outline: null };
-  const ink = colour("ink", "#22303c");
-  const frame = lines(frameLines(data), colour("faint", "#9aa5ad"));
-  const horizons = horizonMesh(data, arrays, colour("faint", "#9aa5ad"));
-  const glyphs = data.glyphs.length ? glyphGroup(data, arrays, { lens: "#efe3c4", thumb: "#22303c" }) : null;
-  const declared = lines(slipLines(data, "declared"), ink, 2);
-  const predicted = lines(slipLines(data, "predicted"), colour("sigma3", "#d9a12b"), 3);
+  const { begin } = mesh.userData;
   const view = makeCamera(canvas, data, () => redraw());
-  const striae = data.striae.length ? lines(striaLines(data, 0.03 * view.size), colour("sigma2", "#7a6a8e"), 2) : null;
-  const movable = [mesh, horizons, declared, predicted, striae].filter(Boolean);
-  declared.visible = predicted.visible = false;
-  model.add(frame, ...movable);
-  const lamp = new DirectionalLight("#ffffff", 1.5);
-  scene.add(model, new AmbientLight("#ffffff", 1.6), lamp, lamp.target);
-  if (glyphs) scene.add(glyphs);
-
+  const layers = makeLayers(data, arrays, theme, view.size);
+  const { stretched, upright } = grouped(layers);
+  const rims = makeRims(data, mesh, theme, () => redraw());
   const section = makeSection(data);
-  const picker = makePicker(mesh, view.camera);
+  const picker = makePicker(data, mesh, view.camera);
   const foot = makeFoot();
   const names = makeNames(data, place);
   const legend = element("div", { class: "sv-panel sv-legend" });
+  const model = new Group().add(mesh, stretched, rims.group);
+  const lamp = new DirectionalLight("#ffffff", 0.42 * Math.PI);
+  const scene = new Scene().add(model, upright, new AmbientLight("#ffffff", 0.62 * Math.PI), lamp, lamp.target);
+  const visible = (key) => layers.some((layer) => layer.key === key && layer.object.visible);
 
   // --- drawing: only when something changed ---
 
@@ -62,8 +61,8 @@ export function startView(place, data, arrays, tell) {
     lamp.position.copy(view.camera.position).add(new Vector3(0, 0, view.size));
     lamp.target.position.copy(view.controls.target);
     renderer.render(scene, view.camera);
-    foot.update(view.camera, view.controls, place.clientWidth);
-    names.update(view.camera, state, section);
+    foot.update(view.camera, place.clientWidth);
+    names.update(view.camera, state, section, visible);
   }
   function fit() {
     const [width, height] = [place.clientWidth, place.clientHeight];
@@ -74,31 +73,17 @@ export function startView(place, data, arrays, tell) {
 
   // --- what is shown ---
 
+  const glyphsShown = () => layers.some(({ glyphs, object }) => glyphs && object.visible);
   function colourAll() {
-    const verdictColours = data.faults.map(({ verdict }) => rgb(colour(verdict, data.colours[verdict])));
+    const verdictColours = data.faults.map(({ verdict }) => rgb(theme.colour(verdict)));
     const codes = state.field ? arrays[`field.${state.field.key}`] : null;
     const held = mesh.geometry.getAttribute("color");
     paint(held.array, { begin, shownFaults: state.shown, field: state.field, codes, verdictColours });
     held.needsUpdate = true;
-    fillLegend(legend, data, state.field);
-    drawRims();
+    explain();
   }
-  // Rims of what is shown; those of conflicts shine through what stands before them.
-  let rimsOf = null;
-  const rims = new Group();
-  model.add(rims);
-  function drawRims() {
-    for (const old of rims.children) old.geometry.dispose();
-    rims.clear();
-    if (rimsOf) {
-      for (const [word, order] of [["consistent", 0], ["undetermined", 0], ["conflicting", 4]]) {
-        const points = data.faults.flatMap((fault, k) => (fault.verdict === word && state.shown[k] ? rimsOf[k] : []));
-        if (!points.length) continue;
-        const made = lines(points, order ? colour("conflicting", data.colours.conflicting) : ink, order);
-        Object.assign(made.material, { transparent: true, opacity: order ? 0.9 : 0.35, depthTest: !order, clippingPlanes: section.planes(state.height) });
-        rims.add(made);
-      }
-    }
+  function explain() {
+    fillLegend(legend, legendOf(data, state.field, glyphsShown()), data);
     redraw();
   }
   const boxOf = (fault) => {
@@ -108,24 +93,12 @@ export function startView(place, data, arrays, tell) {
     box.max.z *= state.height;
     return box;
   };
-  function outline(fault) {
-    if (state.outline) {
-      model.remove(state.outline);
-      state.outline.geometry.dispose();
-      state.outline = null;
-    }
-    if (fault !== null && state.shown[fault]) {
-      state.outline = lines(rimOf(mesh, begin[fault], begin[fault + 1]), ink, 5);
-      Object.assign(state.outline.material, { depthTest: false, transparent: true });
-      state.outline.material.clippingPlanes = section.planes(state.height);
-      model.add(state.outline);
-    }
-    redraw();
-  }
+  const outline = () => rims.outline(state.picked !== null && state.shown[state.picked] ? state.picked : null);
+  const cutMaterials = [mesh.material, ...rims.materials, ...layers.filter(({ glyphs, key }) => !glyphs && key !== "frame").map(({ object }) => object.material)];
   function cut(text, share) {
     section.set(text, share);
     const planes = section.planes(state.height);
-    for (const object of [...movable, ...rims.children, state.outline].filter(Boolean)) object.material.clippingPlanes = planes;
+    for (const material of cutMaterials) material.clippingPlanes = planes;
     const at = section.at();
     where.output.textContent = at === null ? "" : `${number(data.origin[section.axis()] + at)} m`;
     where.input.disabled = at === null;
@@ -135,7 +108,7 @@ export function startView(place, data, arrays, tell) {
     state.height = height;
     model.scale.z = height;
     model.updateMatrixWorld(true);
-    glyphs?.userData.raise(height);
+    for (const { object, glyphs } of layers) if (glyphs) object.userData.raise(height);
     tall.output.textContent = `× ${number(height, 1)}`;
     cut(across.select.value, Number(where.input.value));
   }
@@ -150,12 +123,15 @@ export function startView(place, data, arrays, tell) {
   const across = choice("Section", AXES, () => cut(across.select.value, Number(where.input.value)));
   const where = slider("at", { min: 0, max: 1, step: 0.002, value: 0.5, "aria-label": "Place of the section" }, (value) => cut(across.select.value, value));
   const tall = slider("Exaggeration", { min: 1, max: 10, step: 0.5, value: 1 }, exaggerate);
-  const layer = (label, object, on) => (object ? [toggle(label, on, (value) => { object.visible = value; redraw(); })] : []);
+  const switches = (of) => layers.filter(of).map((layer) => toggle(layer.label, layer.on, (value) => {
+    layer.object.visible = value;
+    explain();
+  }, layer.key));
+  const group = (title, rows) => (rows.length ? [element("div", { class: "sv-group", role: "group", "aria-label": title }, element("div", { class: "sv-heading", text: title }), ...rows)] : []);
   const simplified = data.tolerance > 0 ? `Drawn with ${number(data.triangles[1])} of ${number(data.triangles[0])} triangles; no point is moved by more than ${number(data.tolerance, 1)} m. The numbers rest on all of them.` : "";
   const inside = element("div", { class: "sv-inside" }, across.row, where.row, tall.row,
-    ...layer("Stress glyphs", glyphs, true), ...layer("Horizons", horizons, true), ...layer("Measured slip lines", striae, true),
-    ...layer("Declared slip (dark)", declared, false), ...layer("Predicted slip (ochre)", predicted, false), ...layer("Frame", frame, true),
     element("div", { class: "sv-note", text: "Exaggeration stretches heights alone: angles are then not true." }),
+    ...group("Stress glyphs", switches(({ glyphs }) => glyphs)), ...group("Also shown", switches(({ glyphs }) => !glyphs)),
     ...(simplified ? [element("div", { class: "sv-note", text: simplified })] : []));
   const more = element("details", { class: "sv-more" }, element("summary", { text: "Section, layers" }), inside);
   const save = element("button", { type: "button", text: "Save picture", onclick: savePicture });
@@ -168,14 +144,15 @@ export function startView(place, data, arrays, tell) {
     view.see(...places[name], box);
   }
   function savePicture() {
+    renderer.setPixelRatio(Math.max(pixels, SHARP));
+    fit();
     draw();
-    const whole = document.createElement("canvas");
-    whole.width = canvas.width;
-    whole.height = canvas.height;
-    const pen = whole.getContext("2d");
-    pen.fillStyle = colour("raised", "#ffffff");
-    pen.fillRect(0, 0, whole.width, whole.height);
-    pen.drawImage(canvas, 0, 0);
+    const raised = state.height > 1 ? `Heights × ${number(state.height, 1)}.` : "";
+    const drawn = { canvas, width: place.clientWidth, height: place.clientHeight, names: names.kept, legend: legendOf(data, state.field, glyphsShown()), foot: foot.shown, looking: raised };
+    const whole = composed(drawn, data, theme);
+    renderer.setPixelRatio(pixels);
+    fit();
+    draw();
     whole.toBlob((blob) => {
       const link = element("a", { href: URL.createObjectURL(blob), download: "structviz-3d.png" });
       link.click();
@@ -185,56 +162,26 @@ export function startView(place, data, arrays, tell) {
 
   // --- the mouse, fingers and keys ---
 
-  const under = (event) => {
-    const box = canvas.getBoundingClientRect();
-    const [x, y] = [((event.clientX - box.left) / box.width) * 2 - 1, 1 - ((event.clientY - box.top) / box.height) * 2];
-    return picker.at(x, y, (fault, point) => state.shown[fault] && section.keeps(point, state.height));
-  };
-  let pressed = null;
-  canvas.addEventListener("pointerdown", (event) => {
-    view.stop();
-    pressed = [event.clientX, event.clientY];
-  });
-  canvas.addEventListener("click", (event) => {
-    if (pressed && Math.hypot(event.clientX - pressed[0], event.clientY - pressed[1]) > STILL) return;
-    tell("pick", { fault: under(event)?.fault ?? null, from: "scene" });
-  });
-  let hovering = 0;
   let last = null;
-  canvas.addEventListener("pointermove", (event) => {
-    if (event.pointerType !== "mouse" || event.buttons || hovering) return;
-    hovering = requestAnimationFrame(() => {
-      hovering = 0;
-      hover(under(event));
-    });
+  const letGo = () => tell("pick", { fault: null, from: "scene" });
+  listen(canvas, {
+    stop: view.stop,
+    under: (x, y) => picker.at(x, y, state.shown, (point) => section.keeps(point, state.height)),
+    picked: (hit) => tell("pick", { fault: hit?.fault ?? null, from: "scene" }),
+    hovered(hit) {
+      if (!hit && !last) return;
+      last = hit;
+      const values = hit ? valuesAt(hit.triangle) : null;
+      const shown = hit && state.field ? `${state.field.title} ${values[state.field.title] ?? "not known"}` : "";
+      fillWhere(foot.where, data.origin, hit ? data.faults[hit.fault].short : "", hit?.point, state.height, shown);
+      canvas.style.cursor = hit ? "pointer" : "";
+      tell("hover", { fault: hit?.fault ?? null, triangle: hit?.triangle ?? null, values });
+    },
   });
-  canvas.addEventListener("pointerleave", () => hover(null));
-  function hover(hit) {
-    if (!hit && !last) return;
-    last = hit;
-    const values = hit ? valuesAt(hit.triangle) : null;
-    const shown = hit && state.field ? `${state.field.title} ${values[state.field.title] ?? "not known"}` : "";
-    fillWhere(foot.where, data.origin, hit ? data.faults[hit.fault].short : "", hit?.point, state.height, shown);
-    canvas.style.cursor = hit ? "pointer" : "";
-    tell("hover", { fault: hit?.fault ?? null, triangle: hit?.triangle ?? null, values });
-  }
-  function valuesAt(triangle) {
-    const found = {};
-    for (const { key, title, low, step, unit } of data.fields) {
-      const code = arrays[`field.${key}`][triangle];
-      if (code !== NOTHING) found[title] = unit === "°" ? `${number(low + step * code, step < 1 ? 1 : 0).replace("-", "−")}°` : number(low + step * code, 2);
-    }
-    return found;
-  }
-  const KEYS = {
+  const valuesAt = (triangle) => Object.fromEntries(data.fields.map((field) => [field.title, worded(field, arrays[`field.${field.key}`][triangle])]).filter(([, value]) => value));
+  listenToKeys(place, canvas, {
     ArrowLeft: () => view.turn(-7.5, 0), ArrowRight: () => view.turn(7.5, 0), ArrowUp: () => view.turn(0, 7.5), ArrowDown: () => view.turn(0, -7.5),
-    "+": () => view.zoom(1.2), "=": () => view.zoom(1.2), "-": () => view.zoom(1 / 1.2), Escape: () => tell("pick", { fault: null, from: "scene" }),
-  };
-  place.addEventListener("keydown", (event) => {
-    const act = event.target === canvas || event.key === "Escape" ? KEYS[event.key] : null;
-    if (!act || event.ctrlKey || event.metaKey || event.altKey) return;
-    event.preventDefault();
-    act();
+    "+": () => view.zoom(1.2), "=": () => view.zoom(1.2), "-": () => view.zoom(1 / 1.2), Escape: letGo,
   });
 
   // --- the rest of the page ---
@@ -243,20 +190,21 @@ export function startView(place, data, arrays, tell) {
     const fault = Number.isInteger(detail?.fault) && detail.fault >= 0 && detail.fault < data.faults.length ? detail.fault : null;
     if (fault !== null && fault !== state.picked) view.visit(boxOf(fault));
     state.picked = fault;
-    outline(fault);
+    outline();
   });
   document.addEventListener("structviz:show", ({ detail }) => {
     for (const fault of detail?.faults ?? []) state.shown[fault] = Boolean(detail.shown);
     colourAll();
-    outline(state.picked);
+    rims.draw(state.shown);
+    outline();
   });
-  matchMedia("(prefers-color-scheme: dark)").addEventListener("change", colourAll);
+  theme.listen(colourAll);
   canvas.addEventListener("webglcontextlost", (event) => {
     event.preventDefault();
     tell("scene-failed", { why: "the graphics were lost" });
   });
 
-  // --- the first picture, then the tree for picking ---
+  // --- the first picture; rims and the trees for picking when there is time ---
 
   where.input.disabled = true;
   exaggerate(1);
@@ -266,18 +214,18 @@ export function startView(place, data, arrays, tell) {
   cancelAnimationFrame(waiting);
   draw();
   performance.mark("structviz:first-picture");
+  performance.mark("structviz:pickable"); // a tree that is not made yet is made when its fault is pointed at
   let size = [place.clientWidth, place.clientHeight].join();
   new ResizeObserver(() => {
     const now = [place.clientWidth, place.clientHeight].join();
     if (now === size) return;
     size = now;
+    names.measure();
     fit();
     draw();
   }).observe(place);
-  setTimeout(() => {
-    rimsOf = data.faults.map((_, k) => rimOf(mesh, begin[k], begin[k + 1]));
-    drawRims();
-    picker.build();
-    performance.mark("structviz:pickable");
-  }, 0);
+  inPieces(rims.count, rims.work, () => {
+    rims.finish(state.shown);
+    inPieces(picker.count, picker.work, () => performance.mark("structviz:settled"));
+  });
 }
