@@ -31,6 +31,7 @@ class Piece:
     declared: Mapping[str, str] = field(default_factory=dict)  # what the file says of its movement, by our columns of a table of faults
     framed: bool = False  # True where the file states its units and datum: the vertices are then metres with up positive
     crs: str = ""  # the reference system the file names
+    told: tuple[str, ...] = ()  # what the file holds besides and was not read, the same on every piece of it
 
 
 @dataclass(frozen=True)

@@ -76,6 +76,8 @@ def pieces_of(ledger: Ledger, path: Path) -> tuple[Piece, ...]:
     """Return the surfaces of a file, read once and checked; what reading noticed is kept for the findings."""
     if path not in ledger.pieces:
         ledger.pieces[path] = read_pieces(content_of(ledger, path), ledger.shown(path), files_beside(ledger, path))
+        for words in dict.fromkeys(words for piece in ledger.pieces[path] for words in piece.told):
+            ledger.note("model", f"{ledger.shown(path)}: {words}")
     return ledger.pieces[path]
 
 

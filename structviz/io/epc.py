@@ -1,0 +1,139 @@
+"""Packages of Energistics data objects (EPC): XML parts in a zip archive by the open packaging conventions, arrays in HDF5 files beside.
+
+Objects are known by their UUID, and their class by the list of content types; names of parts carry no meaning.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from pathlib import PurePosixPath
+from typing import Any
+from urllib.parse import unquote
+from xml.etree.ElementTree import Element
+
+from structviz.errors import FormatError, InputError
+from structviz.io.format import Beside
+from structviz.io.hdf5 import opened
+from structviz.io.xml_tree import text_at, tree_of
+from structviz.io.zip_parts import Parts, part, parts_of, unsafe
+
+CONTENT_TYPES = "[Content_Types].xml"
+CLASS = re.compile(r"application/x-(resqml|eml)\+xml;\s*version=([\d.]+);\s*type=(?:obj_)?(\w+)")
+EXTERNAL = "externalResource"  # last word of the relationship to a file beside
+DAMAGED = "the package is damaged or incomplete: export it again"
+
+
+@dataclass(frozen=True)
+class Reference:
+    """What one object says of another."""
+
+    uuid: str
+    kind: str  # its class
+    title: str
+
+
+@dataclass(frozen=True, eq=False)
+class Package:
+    """An open package: its parts, the class of each, and what has been read of it so far."""
+
+    file: str
+    parts: Parts
+    classes: Mapping[str, str]  # name of part -> class
+    versions: Mapping[str, str]  # name of part -> version of its schema
+    beside: Beside
+    trees: dict[str, Element] = field(default_factory=dict)  # name of part -> root
+    stores: dict[str, Any] = field(default_factory=dict)  # name of file beside -> open HDF5
+    told: list[str] = field(default_factory=list)  # what reading noticed of the package as a whole
+
+
+def package_of(content: bytes, file: str, beside: Beside) -> Package:
+    """Return an open package; FormatError where it is none."""
+    parts = parts_of(content, file)
+    classes, versions = {}, {}
+    for entry in tree_of(part(parts, CONTENT_TYPES), f"{file}, {CONTENT_TYPES}").iter("Override"):
+        known = CLASS.fullmatch(entry.get("ContentType", "").strip())
+        if known:
+            name = entry.get("PartName", "").removeprefix("/")
+            classes[name], versions[name] = known[3], known[2]
+    return Package(file, parts, classes, versions, beside)
+
+
+def tree(package: Package, name: str) -> Element:
+    """Return the root of a part, parsed once."""
+    if name not in package.trees:
+        package.trees[name] = tree_of(part(package.parts, name), f"{package.file}, {name}")
+    return package.trees[name]
+
+
+def objects(package: Package, *kinds: str) -> dict[str, Element]:
+    """Return the objects of some classes by their UUID, in the order of their UUIDs; FormatError where one comes twice."""
+    found: dict[str, Element] = {}
+    for name in sorted(name for name, kind in package.classes.items() if kind in kinds):
+        root = tree(package, name)
+        uuid = root.get("uuid", "").lower()
+        if not uuid or uuid in found:
+            what = "an object without a UUID" if not uuid else f"two objects with the UUID {uuid[:40]}"
+            raise FormatError(f"{package.file}, {name}", what, "one UUID an object", hint=DAMAGED)
+        found[uuid] = root
+    return dict(sorted(found.items()))
+
+
+def reference(element: Element | None) -> Reference:
+    """Return what a reference names; all empty where there is none. Version 2.0 has UUID and ContentType, 2.2 Uuid and QualifiedType."""
+    uuid = (text_at(element, "UUID") or text_at(element, "Uuid")).lower()
+    kind = text_at(element, "ContentType").rpartition("type=")[2] or text_at(element, "QualifiedType").rpartition(".")[2]
+    return Reference(uuid, kind.removeprefix("obj_"), text_at(element, "Title"))
+
+
+def title_of(root: Element | None) -> str:
+    """Return the title in the citation of an object, on one line."""
+    return " ".join(text_at(root, "Citation/Title").split())
+
+
+def external_name(package: Package, uuid: str) -> str:
+    """Return the file that an EpcExternalPartReference stands for, by the relationships of its part."""
+    for name in sorted(name for name, kind in package.classes.items() if kind == "EpcExternalPartReference"):
+        if tree(package, name).get("uuid", "").lower() != uuid:
+            continue
+        place = PurePosixPath(name)
+        rels = f"{place.parent / '_rels' / place.name}.rels".removeprefix("./")
+        for link in tree_of(part(package.parts, rels), f"{package.file}, {rels}").iter("Relationship"):
+            if link.get("TargetMode") == "External" and link.get("Type", "").endswith(EXTERNAL):
+                return link.get("Target", "")
+    raise FormatError(package.file, f"no file for the arrays of {uuid[:40] or 'an object'}", "an external HDF5 part", hint=DAMAGED)
+
+
+def store(package: Package, target: str, uuid: str = "") -> Any:
+    """Return the HDF5 file of a name, read once. Where there is none of that name, the one named like the package is taken and told."""
+    if target not in package.stores:
+        name = unquote(target)
+        if unsafe(name):
+            hint = "keep the HDF5 file in the folder of the package"
+            raise FormatError(package.file, f"arrays in {name[:120]!r}", "the name of a file beside the package", hint=hint)
+        package.stores[target] = _store(package, name, uuid)
+    return package.stores[target]
+
+
+def _store(package: Package, name: str, uuid: str) -> Any:
+    """Return an HDF5 file beside; by its own name, or by that of a package that was renamed together with it."""
+    try:
+        return opened(package.beside(name), name)
+    except FormatError:
+        raise
+    except InputError as missing:
+        other = f"{PurePosixPath(package.file).stem}.h5"
+        if other == name:
+            raise
+        try:
+            found = opened(package.beside(other), other)
+        except InputError:
+            raise missing from None
+    stored = found.attrs.get("uuid", b"")
+    stored = stored.decode("ascii", "replace") if isinstance(stored, bytes) else str(stored)
+    if uuid and stored.lower() != uuid:
+        hint = f"put {name} beside the package"
+        raise FormatError(other, f"the UUID {stored[:40]!r}", f"{uuid}, as the package says of {name}", hint=hint)
+    package.told.append(f"{name} is not there: arrays are taken from {other}")
+    return found
