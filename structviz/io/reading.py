@@ -11,6 +11,7 @@ from pathlib import Path
 import numpy as np
 
 from structviz.errors import InputError
+from structviz.io.declared_fields import fault_in_file, note_unused
 from structviz.io.format import Piece
 from structviz.io.independent import with_file
 from structviz.io.ledger import Ledger, Progress, content_of, inside, mesh_files, missing, pieces_of
@@ -86,7 +87,7 @@ def model_of_meshes(ledger: Ledger, paths: list[Path], title: str, progress: Pro
         if piece.kind == "horizon":
             horizons.append(Horizon(name, surface))
         else:
-            faults.append(declared_in_file(ledger, name, file, piece, surface))
+            faults.append(fault_in_file(ledger, name, file, piece, surface))
     if not faults:
         hint = "list them in a faults.csv if they are faults after all"
         raise InputError(title, f"{len(horizons)} horizons and no fault", "a fault surface", hint=hint)
@@ -97,16 +98,6 @@ def model_of_meshes(ledger: Ledger, paths: list[Path], title: str, progress: Pro
         hint = "bring all surfaces into one system: places in different systems do not compare"
         ledger.note("model", f"the files name different reference systems: {', '.join(systems)}", hint, "warning")
     return finished(ledger, title, systems[0] if len(systems) == 1 else "", tuple(faults), tuple(horizons), ())
-
-
-def declared_in_file(ledger: Ledger, name: str, file: str, piece: Piece, surface: Surface) -> Fault:
-    """Return a fault with the movement its own file declares, which is noted, if any."""
-    row = Row(file, name, dict(piece.declared))
-    sector, side, phase = declared(row), down_side(row), row.text("phase")
-    if piece.declared:
-        taken = ", ".join(f"{column} {value}" for column, value in piece.declared.items())
-        ledger.note(name, f"taken from {file}: {taken}", "give a faults.csv to say otherwise")
-    return Fault(name, surface, sector, phase, side)
 
 
 def distinct(named: list[tuple[str, str]]) -> list[str]:
@@ -218,10 +209,12 @@ def named_surface(ledger: Ledger, row: Row, name: str, frame: Frame) -> Surface:
             parts = [piece.name for piece in pieces if piece.name]
             listed = ", ".join(repr(known) for known in parts[:10]) + (f" and {len(parts) - 10} more" if len(parts) > 10 else "")
             raise row.error(f"part {part!r} of {shown}", listed or "a file with named parts", "name one of the parts, or the file alone")
+        note_unused(ledger, row, name, [chosen])
         return surface_m(frame, chosen, name, source_of(shown, chosen, len(pieces)))
     used = without_bounds(ledger, path, pieces, name)
     if len(used) > 1:
         ledger.note(name, f"{shown} holds {len(used)} named surfaces; together they are used as one", f"name one of them as {shown}#part")
+    note_unused(ledger, row, name, used)
     return surface_m(frame, merged(used), name, shown)
 
 

@@ -77,6 +77,17 @@ def values(source: Source, element: ElementTree.Element | None, what: str) -> ND
         raise FormatError(source.file, f"{what} that cannot be decoded ({error})", "whole data arrays", hint=DAMAGED) from None
 
 
+def texts_of(source: Source, element: ElementTree.Element, what: str) -> list[str]:
+    """Return the texts of one Array element of strings, which are stored as runs of UTF-8 codes closed by zero."""
+    form = element.get("format", "ascii")
+    try:
+        plain = form == "ascii"
+        codes = bytes(map(int, (element.text or "").split())) if plain else unpacked(source, element, form).tobytes()
+    except (ValueError, OverflowError, IndexError, zlib.error, lzma.LZMAError, binascii.Error, MemoryError) as error:
+        raise FormatError(source.file, f"{what} that cannot be decoded ({error})", "whole data arrays", hint=DAMAGED) from None
+    return [text.decode("utf-8", "replace") for text in codes.removesuffix(b"\0").split(b"\0")]
+
+
 def unpacked(source: Source, element: ElementTree.Element, form: str) -> NDArray[np.uint8]:
     """Return the bytes of a binary or appended array, decoded and unpacked."""
     if form == "appended":

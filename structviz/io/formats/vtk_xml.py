@@ -16,8 +16,9 @@ from numpy.typing import NDArray
 
 from structviz.errors import FormatError, SurfaceError
 from structviz.io.cells import POLYGON, STRIP, TRIANGLE, check_indices, check_runs, counted, no_triangles, triangles_of_cells
+from structviz.io.declared_names import declared_of
 from structviz.io.format import SEVERAL, CellData, Format, Piece, encoded, start_of
-from structviz.io.vtk_xml import DAMAGED, NAME_OF, Source, values
+from structviz.io.vtk_xml import DAMAGED, NAME_OF, TYPES, Source, texts_of, values
 from structviz.surfaces.surface import Surface
 
 
@@ -113,7 +114,9 @@ def read(content: bytes, file: str) -> tuple[Piece, ...]:
         base += len(points)
     if not any(len(made) for made in triangles):
         raise no_triangles(np.concatenate(types) if types else [], file)
-    return (Piece(name_in(source), np.concatenate(vertices), np.concatenate(triangles), tuple(history)),)
+    fields = fields_of(source)
+    body = np.concatenate(vertices), np.concatenate(triangles)
+    return (Piece(fields.get("name", ""), *body, tuple(history), declared=declared_of(fields)),)
 
 
 def triangles_or_none(ids: NDArray, ends: NDArray, kinds: NDArray, file: str) -> tuple[NDArray, tuple[str, ...]]:
@@ -124,13 +127,19 @@ def triangles_or_none(ids: NDArray, ends: NDArray, kinds: NDArray, file: str) ->
         return np.zeros((0, 3), np.int64), ()
 
 
-def name_in(source: Source) -> str:
-    """Return the text of the field array called name, as `write_polydata` stores it, or ""."""
-    for element in source.root.iter("Array"):
-        if element.get("Name") == "name" and element.get("type") == "String" and element.get("format") == "ascii":
-            codes = [int(code) for code in (element.text or "").split() if code.isdigit()]
-            return bytes(code for code in codes if 0 < code < 256).decode("utf-8", "replace")
-    return ""
+def fields_of(source: Source) -> dict[str, str]:
+    """Return the field data that are one text or one number by name, as text."""
+    found = {}
+    parent = source.root.find(source.root.get("type", ""))
+    for element in () if parent is None else parent.findall("FieldData/*"):
+        name, kind = element.get("Name", ""), element.get("type", "")
+        if kind == "String":
+            texts = texts_of(source, element, f"field {name}")
+            found[name] = texts[0] if len(texts) == 1 else ""
+        elif kind in TYPES and element.get("NumberOfTuples") == "1":
+            number = values(source, element, f"field {name}")
+            found[name] = repr(float(number[0])) if len(number) == 1 else ""
+    return found
 
 
 def sniffer(kind: str) -> Callable[[bytes], bool]:
