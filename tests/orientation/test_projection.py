@@ -91,3 +91,32 @@ def test_bad_points_and_counts_are_refused():
         great_circles([0.0, 0.0, 1.0], 2)
     with pytest.raises(ArgumentError, match="half_angle_deg: found 91 deg"):
         small_circle([0.0, 0.0, 1.0], 91.0)
+
+
+def test_points_outside_the_net_say_how_far_and_what_to_do():
+    with pytest.raises(ArgumentError, match=r"points: found radius 1\.1; wanted at most 1\n  next: scale so that"):
+        axes_of_points([[0.0, 0.5], [1.1, 0.0]])
+    with pytest.raises(ArgumentError, match=r"points: found shape \(3,\); wanted \(\.\.\., 2\) as east, north.*\n  next: give two coord"):
+        axes_of_points([0.0, 0.5, 0.1])
+    with pytest.raises(ArgumentError, match=r"points: found shape \(\)"):
+        axes_of_points(0.5)
+    on_the_rim = axes_of_points([np.sin(0.3) * (1 + 4e-10), np.cos(0.3) * (1 + 4e-10)])  # rounding is forgiven
+    assert on_the_rim[2] == 0.0
+    assert np.allclose(on_the_rim, [np.sin(0.3), np.cos(0.3), 0.0], atol=1e-8)
+
+
+def test_a_great_circle_does_not_care_which_way_its_normal_points():
+    for normal in random_axes(20, seed=3):
+        there, back = great_circles(normal, 31), great_circles(-normal, 31)
+        assert np.allclose(there, back, atol=1e-9) or np.allclose(there, back[::-1], atol=1e-9)
+    assert len(great_circles([0.3, 0.1, 0.9])) == 91
+
+
+def test_the_smallest_cones_are_drawn_too():
+    (dot,) = small_circle([0.0, 0.6, -0.8], 0.0)
+    assert np.ptp(dot, axis=0).max() < 1e-12
+    (ring,) = small_circle([0.0, 0.6, -0.8], 0.5, 61)
+    angles = np.degrees(np.arccos(np.clip(axes_of_points(ring) @ [0.0, 0.6, -0.8], -1, 1)))
+    assert np.allclose(angles, 0.5, atol=1e-6)
+    with pytest.raises(ArgumentError, match="half_angle_deg"):
+        small_circle([0.0, 0.6, -0.8], 90.5)

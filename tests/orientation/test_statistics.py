@@ -16,6 +16,7 @@ from structviz.orientation.statistics import (
     fabric,
     fisher_mean,
     likely_kappa,
+    mean_resultant,
     orientation_tensor,
     spherical_median,
 )
@@ -137,3 +138,80 @@ def test_nothing_to_average_is_refused():
         circular_mean_deg([1.0, 2.0], [0.0, 0.0])
     with pytest.raises(ArgumentError, match=r"resultant_share: found 1\.2; wanted 0 to 1"):
         likely_kappa(1.2)
+
+
+@pytest.mark.parametrize(
+    "measure",
+    [
+        axial_mean,
+        lambda v, w: fabric(v, w).eigenvalues,
+        spherical_median,
+        orientation_tensor,
+        lambda v, w: np.array(axial_mean_azimuth_deg(np.degrees(np.arctan2(v[:, 0], v[:, 1])), w)),
+        lambda v, w: np.array(circular_mean_deg(np.degrees(np.arctan2(v[:, 0], v[:, 1])), w)),
+    ],
+)
+def test_a_whole_weight_is_the_same_as_so_many_copies(measure):
+    v, w = cluster(12, kappa=6.0, seed=4), np.array([1, 3, 1, 2, 5, 1, 1, 4, 1, 1, 2, 1])
+    assert np.allclose(measure(v, w), measure(np.repeat(v, w, axis=0), np.ones(w.sum())), atol=1e-9)
+    assert not np.allclose(measure(v, w), measure(v, np.ones(12)), atol=1e-3)
+
+
+def test_weights_scale_out_of_the_axial_cone_and_count_as_fewer_data():
+    v, w = cluster(40, seed=5), np.random.default_rng(2).uniform(0.2, 3, 40)
+    assert axial_cone_deg(v, 7 * w) == pytest.approx(axial_cone_deg(v, w), rel=1e-12)
+    # The plain formula beside its name in the docstring, one axis at a time.
+    values, columns = np.linalg.eigh(np.einsum("n,ni,nj->ij", w, v, v) / w.sum())
+    count = w.sum() ** 2 / (w**2).sum()
+    widths = []
+    for j in (0, 1):
+        spread = sum(wk * (vk @ columns[:, 2]) ** 2 * (vk @ columns[:, j]) ** 2 for vk, wk in zip(v, w)) / w.sum()
+        widths.append(np.sqrt(5.991464547 * spread / (count * (values[2] - values[j]) ** 2)))
+    assert axial_cone_deg(v, w) == pytest.approx(np.degrees(max(widths)), rel=1e-6)
+    assert axial_cone_deg(v[:2]) is None
+    assert axial_cone_deg(v[:3]) is not None
+
+
+def test_a_cone_is_never_wider_than_ninety():
+    assert axial_cone_deg(np.random.default_rng(3).normal(size=(9, 3))) <= 90.0
+    assert axial_cone_deg(np.concatenate([np.eye(3), -np.eye(3)])) == 90.0
+
+
+def test_expected_resultant_is_smooth_where_the_series_takes_over():
+    kappa = np.array([1e-6, 5e-4, 9.99e-4, 1.001e-3, 2e-3, 0.1, 1.0, 30.0])
+    # The same by quadrature of the cosine over the sphere.
+    cosine = np.linspace(-1, 1, 200_001)
+    for each, found in zip(kappa, mean_resultant(kappa)):
+        density = np.exp(each * (cosine - 1))
+        assert found == pytest.approx(np.trapezoid(density * cosine, cosine) / np.trapezoid(density, cosine), rel=2e-6, abs=1e-9)
+
+
+def test_likely_kappa_solves_its_own_equation_over_the_whole_range():
+    for share in (0.0, 0.001, 0.3, 0.9, 0.9999):
+        assert float(mean_resultant(likely_kappa(share))) == pytest.approx(share, abs=1e-9)
+    assert likely_kappa(1.0) is None
+
+
+def test_two_vectors_are_enough_for_a_concentration_and_one_is_not():
+    one, two = fisher_mean([[0, 0, 1.0]]), fisher_mean([[0, 0, 1.0], [0, 0.1, 1.0]])
+    assert (one.kappa, one.alpha95_deg, one.angular_deviation_deg) == (None, None, None)
+    assert two.kappa == pytest.approx(1 / (2 - two.resultant))
+    assert two.alpha95_deg == pytest.approx(np.degrees(np.arccos(1 - (2 - two.resultant) / two.resultant * 19)))
+    with pytest.raises(ArgumentError, match=r"vectors: found shape \(0, 3\); wanted \(N, 3\).*\n  next: give the directions as rows"):
+        fisher_mean(np.zeros((0, 3)))
+
+
+def test_vectors_that_cancel_have_no_median_and_a_zero_mean():
+    assert not spherical_median([[0, 0, 1.0], [0, 0, -1.0]]).any()
+    assert fisher_mean([[0, 0, 1.0], [0, 0, -1.0]]).alpha95_deg == 180.0
+    assert np.isnan(circular_mean_deg([0.0, 180.0])[0])
+
+
+def test_errors_of_weights_say_what_to_do():
+    with pytest.raises(ArgumentError, match="weights: found negative or all-zero weights; wanted a positive sum\n  next: areas or counts"):
+        axial_mean(np.eye(3), [1, -1, 3])
+    with pytest.raises(ArgumentError, match="wanted a positive sum"):
+        axial_mean(np.stack([np.eye(3), np.eye(3)]), [[1, 1, 1], [0, 0, 0]])
+    with pytest.raises(ArgumentError, match="axes: found none; wanted one or more to average\n  next: check what was selected"):
+        axial_mean(np.zeros((0, 3)))
+    assert np.isfinite(axial_mean([[1, 0.1, 0.2], [1, 0, 0]], [0.2, 0.3])).all()  # a sum below one is a sum
