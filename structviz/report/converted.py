@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -46,8 +46,13 @@ def format_to(suffix: str) -> Format:
     raise ArgumentError(f"--to: found {suffix!r}; wanted one of {known}", hint="structviz formats says what each can hold")
 
 
-def convert_to_folder(model: FaultModel, folder: str, entry: Format, progress: Progress | None = None) -> Converted:
-    """Write every surface of a model into a new folder, with model.toml and faults.csv; return what was written and lost."""
+def convert_to_folder(
+    model: FaultModel, folder: str, entry: Format, progress: Progress | None = None, *, more: Mapping[str, str] | None = None
+) -> Converted:
+    """Write every surface of a model into a new folder, with model.toml and faults.csv; return what was written and lost.
+
+    `more` are further text files by name.
+    """
     tell = progress or (lambda text, done, total: None)
     target = whole.checked_target(folder, lambda place: set(), "nothing yet")
     suffix = entry.suffixes[0]
@@ -64,6 +69,8 @@ def convert_to_folder(model: FaultModel, folder: str, entry: Format, progress: P
         (new / "model.toml").write_text(_model_file(model, paths[len(model.faults) :]), encoding="utf-8", newline="\n")
         if model.striae:
             (new / "striae.csv").write_text(_striae(model), encoding="utf-8", newline="\n")
+        for name, text in (more or {}).items():
+            (new / name).write_text(text, encoding="utf-8", newline="\n")
         files = tuple(sorted(whole.all_files(new), key=lambda name: ("/" in name, name)))
     return Converted(target, files, (*_losses(entry), *_not_carried(model, striae=False)))
 
