@@ -23,6 +23,7 @@ from structviz.report.page_argument import argument, contents, parts_of
 from structviz.report.page_parts import answer, fault_list, other_cards, plain_lines, why_whole
 from structviz.scenarios import Sensitivity
 from structviz.views import palette
+from structviz.views.stereonet import build_net
 
 PICTURE_WIDTH = 1200  # pixels; enough for a page of A4 at 160 dots an inch
 JPEG_QUALITY = 82
@@ -32,6 +33,7 @@ PLOTS = (
     ("plunges_svg", "plunges", "Plunges of the axes"),
     ("rose_svg", "rose", "Strikes by area"),
     ("misfits_svg", "misfits", "Declared against predicted slip"),
+    ("reliability_svg", "reliability", "What the probabilities mean: how often they came true on synthetic models"),
 )
 
 
@@ -54,7 +56,7 @@ def page_text(analysis: Analysis, *, pictures: Mapping[str, bytes], depends: Sen
         "shared": why_whole(analysis),
         "list": fault_list(analysis),
         "scene_picture": _picture(pictures.get("scene.png"), "The faults in 3D, coloured by verdict, with the stress as glyphs"),
-        "net": _plot(analysis, *PLOTS[0], instead=pictures.get("net.png")),
+        "net": _plot(analysis, *PLOTS[0], instead=pictures.get("net.png"), note=_crowding(analysis)),
         "plots": joined([_plot(analysis, *each) for each in PLOTS[1:]]),
         "argument": argument(parts),
         "records": joined(other_cards(analysis)),
@@ -143,6 +145,7 @@ def _style() -> str:
     """Return the style of a page: colours of the pictures as variables, ours, and on paper those of the pictures again."""
     lines = {"paper": palette.PAPER, "ink": palette.INK, "faint": palette.FAINT, "hair": palette.HAIR}
     marks = {word: look.colour for word, look in palette.VERDICTS.items()} | {f"sigma{k}": c for k, c in enumerate(palette.SIGMA, 1)}
+    marks |= palette.GLYPH
     return f"{_variables(lines | marks)}\n{_template('page.css')}@media print {{ {_variables(marks)} }}\n"
 
 
@@ -174,10 +177,16 @@ def _small(png: bytes) -> tuple[bytes, int, int] | None:
     return held.getvalue(), image.width, image.height
 
 
-def _plot(analysis: Analysis, function: str, key: str, caption: str, *, instead: bytes | None = None) -> Markup:
+def _crowding(analysis: Analysis) -> str:
+    """Return what the shades of the net mean, where it has any."""
+    density = build_net(analysis).density
+    return f". Shaded where poles crowd: {words.listed([f'{level:g}' for level in density.levels])} s.d. above chance" if density else ""
+
+
+def _plot(analysis: Analysis, function: str, key: str, caption: str, *, instead: bytes | None = None, note: str = "") -> Markup:
     """Return a plot as a figure, or a picture in its place, or nothing."""
     make = _optional("structviz.report.svg", function)
     drawn = Markup(make(analysis)) if make else _picture(instead, caption) if instead else None
     if not drawn:
         return Markup("")
-    return element("figure", drawn, element("figcaption", caption), class_=f"plot {key}", data_plot=key)
+    return element("figure", drawn, element("figcaption", caption + note), class_=f"plot {key}", data_plot=key)

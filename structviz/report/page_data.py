@@ -49,10 +49,10 @@ class _Store:
         return zlib.compress(b"".join(self._pieces), 5)  # 9 is ten times as slow and 5 % smaller
 
 
-def page_data(analysis: Analysis, *, triangles: int = MOST_TRIANGLES) -> tuple[dict[str, Any], bytes]:
+def page_data(analysis: Analysis, *, triangles: int | None = None) -> tuple[dict[str, Any], bytes]:
     """Return the description of the scene and its arrays, deflated; faults of more than `triangles` altogether are simplified."""
     scene, store = build_scene(analysis), _Store()
-    drawn = drawn_surfaces([result.fault.surface for result in analysis.faults], triangles)
+    drawn = drawn_surfaces([result.fault.surface for result in analysis.faults], triangles or MOST_TRIANGLES)
     boxes = _add_surfaces(store, "faults", drawn, scene.origin)
     fields = _add_fields(store, analysis, drawn)
     horizons = _add_horizons(store, analysis, scene.origin)

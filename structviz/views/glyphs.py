@@ -13,8 +13,8 @@ from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
 
-LENS = (0.30, 0.62, 1.0)  # half-lengths along sigma1, sigma2, sigma3, in units of the size
-THUMB_GAP, THUMB_LENGTH, THUMB_RADIUS = 0.34, 0.75, 0.26
+LENS = (0.25, 0.47, 1.0)  # half-lengths along sigma1, sigma2, sigma3, in units of the size; about 1 : 2 : 4 tells the last two best
+THUMB_GAP, THUMB_LENGTH, THUMB_RADIUS = 0.30, 0.75, 0.26
 SIDES = 32
 
 

@@ -37,3 +37,4 @@ class PhaseLook:
 
 PHASE_LOOKS = (PhaseLook(True, "-"), PhaseLook(False, "--"), PhaseLook(False, ":"))
 SIGMA = ("#22303c", "#7a6a8e", "#d9a12b")  # sigma1 dark, sigma2 middling, sigma3 light
+GLYPH = {"lens": "#e2c37f", "thumb": SIGMA[0]}  # the lens stands off the paper in grey, and is no colour of a verdict

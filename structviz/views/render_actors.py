@@ -11,12 +11,11 @@ from numpy.typing import NDArray
 
 from structviz.views.captions import WORDS
 from structviz.views.glyphs import placed, stress_glyph
-from structviz.views.palette import FAINT, INK, PAPER, SIGMA, VERDICTS
+from structviz.views.palette import FAINT, GLYPH, INK, PAPER, VERDICTS
 from structviz.views.scene import Scene
 
 Floats = NDArray[np.float64]
 
-GLYPH_COLOURS = {"lens": "#efe3c4", "thumb": SIGMA[0]}
 CONTEXT_OPACITY = 0.55  # faults that nobody doubts step back, so that the others and the glyphs are seen
 PEELS = 4  # translucent surfaces told apart behind each other; each costs a rendering, and a fifth one is not seen
 ROW = "fault"  # cell array of a surface actor's mesh: which of scene.surfaces a triangle belongs to
@@ -55,7 +54,7 @@ def _surfaces(plotter: Any, scene: Scene, word: str, widths: float) -> list[Any]
 
 def _glyphs(plotter: Any, scene: Scene) -> list[Any]:
     actors, parts = [], stress_glyph()
-    for role, colour in GLYPH_COLOURS.items():
+    for role, colour in GLYPH.items():
         mesh = merged([(placed(p, g.axes, g.place, g.size_m), p.triangles) for g in scene.glyphs for p in parts if p.role == role])
         if mesh is not None:
             actors.append(plotter.add_mesh(mesh, color=colour, smooth_shading=True, split_sharp_edges=True, specular=0.1, ambient=0.3))

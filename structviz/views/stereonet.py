@@ -14,6 +14,7 @@ from structviz.orientation.planes import slip_vectors
 from structviz.orientation.projection import equal_area, equal_area_directed, great_circles, small_circle
 from structviz.stress.regime import Regime
 from structviz.views.captions import count_line, model_line, regime_line
+from structviz.views.net_density import NetDensity, net_density
 from structviz.views.registry import view
 
 Floats = NDArray[np.float64]
@@ -62,6 +63,7 @@ class Net:
     slips: tuple[NetSlip, ...]
     axes: tuple[NetAxis, ...]
     counts: tuple[tuple[str, int], ...]
+    density: NetDensity | None = None  # of the poles; None for few faults
 
 
 @view("net", title="Equal-area net, lower hemisphere", file_name="net.png", needs_gl=False, renderer="render_net")
@@ -70,7 +72,8 @@ def build_net(analysis: Analysis) -> Net:
     shown = [result for result in analysis.faults if result.measured.meaningful]
     planes = tuple(_plane(result) for result in shown)
     slips = tuple(slip for result in shown for slip in _slips(result))
-    return Net(regime_line(analysis), model_line(analysis), planes, slips, _axes(analysis), count_line(analysis))
+    density = net_density(np.array([result.measured.normal for result in shown]).reshape(-1, 3))
+    return Net(regime_line(analysis), model_line(analysis), planes, slips, _axes(analysis), count_line(analysis), density)
 
 
 def _plane(result: FaultResult) -> NetPlane:

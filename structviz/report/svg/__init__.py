@@ -9,5 +9,6 @@ from structviz.report.svg.charts import misfits_svg, rose_svg
 from structviz.report.svg.mohr import mohr_svg
 from structviz.report.svg.net import net_svg
 from structviz.report.svg.plunges import plunges_svg
+from structviz.report.svg.reliability import reliability_svg
 
-__all__ = ["misfits_svg", "mohr_svg", "net_svg", "plunges_svg", "rose_svg"]
+__all__ = ["misfits_svg", "mohr_svg", "net_svg", "plunges_svg", "reliability_svg", "rose_svg"]

@@ -37,6 +37,12 @@ def path(points: ArrayLike, *, closed: bool = False, **style: object) -> str:
     return f'<path d="M{steps}{"Z" if closed else ""}"{attributes(**style)}/>'
 
 
+def rings(lines: Iterable[ArrayLike], **style: object) -> str:
+    """Return closed lines through points (K, 2) as one path, so that a rule of filling may leave holes in it."""
+    steps = ("L".join(f"{number(x)},{number(y)}" for x, y in np.asarray(line, float)) for line in lines)
+    return f'<path d="{"".join(f"M{each}Z" for each in steps)}"{attributes(**style)}/>'
+
+
 def circle(x: float, y: float, radius: float, **style: object) -> str:
     """Return a circle."""
     return f'<circle cx="{number(x)}" cy="{number(y)}" r="{number(radius)}"{attributes(**style)}/>'

@@ -8,7 +8,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from structviz.analysis import Analysis
-from structviz.report.svg.drawing import circle, colour, drawing, group, mark, path, text
+from structviz.report.svg.drawing import circle, colour, drawing, group, mark, path, rings, text
+from structviz.views.net_density import NetDensity
 from structviz.views.palette import PHASE_LOOKS, VERDICTS
 from structviz.views.stereonet import Net, NetAxis, NetPlane, NetSlip, build_net
 
@@ -27,7 +28,7 @@ def net_svg(analysis: Analysis) -> str:
     rows = {result.fault.name: number for number, result in enumerate(analysis.faults)}
     planes = sorted(net.planes, key=lambda plane: ORDER[plane.verdict])
     faults = [_fault(plane, [slip for slip in net.slips if slip.name == plane.name], rows[plane.name]) for plane in planes]
-    parts = [*_frame(), *faults, *(_axis(axis) for axis in net.axes)]
+    parts = [*_density(net.density), *_frame(), *faults, *(_axis(axis) for axis in net.axes)]
     return drawing(SIZE, SIZE, parts, title=_title(net))
 
 
@@ -38,6 +39,16 @@ def _title(net: Net) -> str:
 def _at(points: Floats) -> Floats:
     """Return net points (..., 2) as places of the drawing: the ordinate of SVG runs down."""
     return np.asarray(points) * [RADIUS, -RADIUS] + SIZE / 2
+
+
+def _density(density: NetDensity | None) -> Iterator[str]:
+    """Return where poles crowd, a shade darker with each level, cut at the rim."""
+    if density is None:
+        return
+    yield f'<clipPath id="net-rim">{circle(SIZE / 2, SIZE / 2, RADIUS)}</clipPath>'
+    shades = [rings([_at(line) for line in level], fill=colour("ink"), fill_opacity=0.07, fill_rule="evenodd") for level in density.outlines]
+    told = f"poles are denser than chance by {', '.join(f'{level:g}' for level in density.levels)} standard deviations"
+    yield group(shades, title=told, class_="density", clip_path="url(#net-rim)")
 
 
 def _frame() -> Iterator[str]:

@@ -12,7 +12,9 @@ else place.classList.add("no-webgl");
 
 async function start() {
   try {
+    performance.mark("structviz:parsed");
     const { data, arrays } = await readData();
+    performance.mark("structviz:inflated");
     startView(place, data, arrays, tell);
   } catch (error) {
     place.replaceChildren();

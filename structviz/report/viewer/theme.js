@@ -2,7 +2,7 @@
 
 const FALLBACK = {
   ink: "#22303c", faint: "#9aa5ad", raised: "#ffffff", quiet: "#5b6872", hair: "#d9d7d0",
-  sigma1: "#22303c", sigma2: "#7a6a8e", sigma3: "#d9a12b", lens: "#efe3c4", thumb: "#22303c", horizon: "#9aa5ad",
+  sigma1: "#22303c", sigma2: "#7a6a8e", sigma3: "#d9a12b", lens: "#e2c37f", thumb: "#22303c", horizon: "#9aa5ad",
   conflicting: "#a33a1c", undetermined: "#d9cba6", consistent: "#7b98a8",
 };
 

@@ -35,6 +35,7 @@ export function startView(place, data, arrays, tell) {
 
   const state = { picked: null, height: 1, field: null, shown: data.faults.map(() => true) };
   const mesh = faultMesh(data, arrays);
+  performance.mark("structviz:unpacked");
   const { begin } = mesh.userData;
   const view = makeCamera(canvas, data, () => redraw());
   const layers = makeLayers(data, arrays, theme, view.size);
