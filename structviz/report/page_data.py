@@ -1,6 +1,6 @@
 """What the 3D view of the page draws, as plain data and arrays.
 
-Places travel as 16-bit steps in the box of their surface, relative to a float64 origin; values of triangles as steps of a stated
+Places travel as whole steps in the box of their surface, relative to a float64 origin; values of triangles as steps of a stated
 size. The arrays stand one after another, little-endian, in one zlib stream.
 """
 
@@ -17,7 +17,7 @@ from structviz.analysis import Analysis, FaultResult
 from structviz.orientation.planes import slip_vectors
 from structviz.report.names import printable
 from structviz.report.page_fields import coded_fields
-from structviz.report.page_geometry import Drawn, drawn_surfaces, quantised
+from structviz.report.page_geometry import STEPS, Drawn, drawn_surfaces, quantised
 from structviz.report.page_words import headline, regime_name
 from structviz.views import palette
 from structviz.views.captions import shortened
@@ -25,7 +25,7 @@ from structviz.views.glyph_layers import GlyphLayer, glyph_layers, middle_statio
 from structviz.views.glyphs import stress_glyph
 from structviz.views.scene import StressGlyph, build_scene
 
-MOST_TRIANGLES = 300_000  # drawn by the page; beyond, surfaces are simplified
+MOST_TRIANGLES = 1_000_000  # drawn by the page: 9 MB of file; beyond, surfaces are simplified
 MOST_OF_HORIZONS = 40_000
 CAUTION = "structviz: a screening aid. It tests geometry against declared movement, not stress magnitude, stability or hazard."
 
@@ -71,6 +71,7 @@ def page_data(analysis: Analysis, *, triangles: int | None = None) -> tuple[dict
         "glyphs": [_layer(layer, analysis) for layer in glyph_layers(analysis, scene)],
         "glyphParts": _glyph_parts(store),
         "striae": _striae(analysis, scene.origin),
+        "steps": STEPS,
         "tolerance": round(tolerance, 2),
         "triangles": [sum(len(r.fault.surface.triangles) for r in analysis.faults), sum(len(each.triangles) for each in drawn)],
         "colours": {word: look.colour for word, look in palette.VERDICTS.items()},

@@ -16,7 +16,7 @@ from structviz.stress.regime import Regime
 from structviz.stress.tensor import dilation_tendency, reduced_tensor
 
 NOTHING = 65_535  # code that stands for no value
-DISTANCE_STEPS = 250
+DISTANCE_STEPS = 100
 ROUND = (1.0, 2.0, 2.5, 5.0, 10.0)
 
 
@@ -34,11 +34,11 @@ class Shown:
 
 
 FIELDS = (
-    Shown("dip_deg", "Dip", "°", 0.0, 90.0, 0.5),
-    Shown("predicted_rake_deg", "Predicted rake", "°", -180.0, 180.0, 1.0, cyclic=True),
-    Shown("misfit_deg", "Misfit of declared slip", "°", 0.0, 180.0, 1.0),
-    Shown("slip_tendency", "Slip tendency", "of the greatest", 0.0, 1.0, 0.005),
-    Shown("dilation_tendency", "Dilation tendency", "0 shut to 1 open", 0.0, 1.0, 0.005),
+    Shown("dip_deg", "Dip", "°", 0.0, 90.0, 1.0),
+    Shown("predicted_rake_deg", "Predicted rake", "°", -180.0, 180.0, 2.0, cyclic=True),
+    Shown("misfit_deg", "Misfit of declared slip", "°", 0.0, 180.0, 2.0),
+    Shown("slip_tendency", "Slip tendency", "of the greatest", 0.0, 1.0, 0.01),
+    Shown("dilation_tendency", "Dilation tendency", "0 shut to 1 open", 0.0, 1.0, 0.01),
     Shown("pair_distance_m", "Distance to nearest pair", "m", 0.0, 1.0, 1.0),  # as far as the model goes
 )
 

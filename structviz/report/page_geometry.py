@@ -1,4 +1,4 @@
-"""Surfaces made small for the page: vertices snapped to a grid where there are too many triangles, and places as 16-bit steps.
+"""Surfaces made small for the page: vertices snapped to a grid where there are too many triangles, and places as whole steps.
 
 Only the drawing is made small. Every value shown for a triangle is that of one triangle of the model, and no number of the result
 is touched.
@@ -17,7 +17,7 @@ from structviz.surfaces.surface import Surface
 Floats = NDArray[np.float64]
 Integers = NDArray[np.int64]
 
-STEPS = 65_535  # of a place along each side of the box of its surface
+STEPS = 16_383  # of a place along each side of the box of its surface: 0.3 m on a fault of 5 km, far less than is seen
 
 
 @dataclass(frozen=True, eq=False)

@@ -1,4 +1,4 @@
-"""What the probabilities of conflict mean, as data: how often they came true where the truth is known, and where this model's faults lie."""
+"""What the probabilities of conflict mean, as data: how often they came true where the truth is known, and those of this model."""
 
 from __future__ import annotations
 

@@ -15,7 +15,7 @@ from tests.browser.chromium import Visit, visiting
 
 VIEWER = """
 const scene = document.querySelector("#scene");
-const canvas = scene.appendChild(document.createElement("canvas"));
+const canvas = scene.querySelector("canvas");
 canvas.width = scene.clientWidth; canvas.height = scene.clientHeight;
 const gl = canvas.getContext("webgl2");
 gl.clearColor(1, 0, 0, 1); gl.clear(gl.COLOR_BUFFER_BIT);

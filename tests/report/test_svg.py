@@ -61,7 +61,7 @@ def test_the_net_shows_planes_where_they_are(analysis):
     """A plane's group holds its great circle: its middle is the dip line, equal area, from the middle of the net."""
     root = ET.fromstring(svg.net_svg(analysis))
     for row in (5, 9):
-        line = root.find(f".//{SVG}g[@data-fault='{row}']").findall(f"{SVG}path")[1].get("d")
+        line = root.find(f".//{SVG}g[@data-fault='{row}']").find(f"{SVG}path[@class='line']").get("d")
         points = np.array([[float(v) for v in pair.split(",")] for pair in re.split("[ML]", line.strip("Z")) if pair])
         middle = points[len(points) // 2] - 180.0
         dip = np.radians(analysis.faults[row].measured.dip_deg)

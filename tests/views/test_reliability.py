@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+
 import pytest
 from scipy.stats import binomtest
 
@@ -21,7 +23,7 @@ def test_bands_follow_each_other_and_hold_their_means() -> None:
     bands = RANDOM_SECTORS.bands
     assert bands[0].low == 0
     assert bands[-1].high == 1
-    assert all(one.high == other.low for one, other in zip(bands, bands[1:], strict=False))
+    assert all(one.high == other.low for one, other in itertools.pairwise(bands))
     assert all(band.low <= band.mean <= band.high and 0 <= band.outside <= band.faults for band in bands)
 
 
@@ -31,7 +33,7 @@ def test_probabilities_came_true() -> None:
     observed = [band.outside / band.faults for band in bands]
     off = sum(abs(seen - band.mean) * band.faults for seen, band in zip(observed, bands, strict=True)) / sum(band.faults for band in bands)
     assert off < 0.01
-    assert all(one <= other + 0.02 for one, other in zip(observed, observed[1:], strict=False))
+    assert all(one <= other + 0.02 for one, other in itertools.pairwise(observed))
 
 
 @pytest.mark.parametrize(("count", "total"), [(0, 7), (3, 11), (50, 60), (9, 9)])

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from typing import Any
 
 from structviz.analysis import Analysis
 from structviz.report.svg.drawing import circle, colour, drawing, group, path, text
@@ -58,7 +59,7 @@ def _block(fault: ReliabilityFault, tall: float) -> str:
     x, y = LEFT + fault.column * wide, BASE + 2 + fault.level * tall
     corners = [(x + 0.7, y), (x + wide - 0.7, y), (x + wide - 0.7, y + tall - gap), (x + 0.7, y + tall - gap)]
     look = VERDICTS[fault.verdict]
-    edge = {"stroke": colour("ink") if fault.verdict == "conflicting" else "none", "stroke_width": look.width / 3}
+    edge: dict[str, Any] = {"stroke": colour("ink") if fault.verdict == "conflicting" else "none", "stroke_width": look.width / 3}
     block = path(corners, closed=True, fill=colour(fault.verdict), **edge)
     told = f"{fault.verdict}, {100 * fault.probability:.0f} %: {fault.name}"
     return group([block], title=told, data_fault=fault.row, class_=f"fault {fault.verdict}")

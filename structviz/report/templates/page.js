@@ -157,6 +157,13 @@ document.addEventListener("pointerout", (event) => {
   if (event.target.closest?.(".plot [data-fault], button.fault[data-fault]")) tell("hover", { fault: null, triangle: null, values: null });
 });
 
+// A thin line is hard to meet: each has a wide, clear one over it.
+for (const line of $$(".plot path.line")) {
+  const wide = line.cloneNode();
+  wide.setAttribute("class", "wide");
+  line.after(wide);
+}
+
 async function copied(button) {
   const text = button.parentElement.querySelector(".as-text").textContent;
   try {
@@ -216,12 +223,16 @@ function without(why) {
   $("#why-no-scene").textContent = why;
 }
 
+// The canvas that is asked is the one the view draws on: a second context would take as long again.
 function hasWebGL() {
+  const canvas = document.createElement("canvas");
   try {
-    return Boolean(document.createElement("canvas").getContext("webgl2"));
+    if (!canvas.getContext("webgl2", { alpha: true, antialias: true, preserveDrawingBuffer: true })) return false;
   } catch {
     return false;
   }
+  $("#scene").replaceChildren(canvas);
+  return true;
 }
 
 const INSTEAD = $(".instead img") ? "The prepared picture stands in its place; everything else is complete." : "Everything else is complete.";

@@ -15,7 +15,7 @@ export async function readData() {
   return { data, arrays };
 }
 
-// Turns places (16-bit differences, axis by axis) and corners (differences) of many surfaces into one list of triangles.
+// Turns places (differences of steps, axis by axis, modulo 65536) and corners (differences) of many surfaces into one list of triangles.
 export function unpack(boxes, places, corners) {
   const total = boxes.reduce((sum, box) => sum + box.triangles, 0);
   const positions = new Float32Array(total * 9);

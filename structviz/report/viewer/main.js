@@ -6,7 +6,7 @@ import { startView } from "./view.js";
 const tell = (name, detail) => document.dispatchEvent(new CustomEvent(`structviz:${name}`, { detail }));
 const place = document.getElementById("scene");
 
-// The page has asked for WebGL before: asking again would make one more context, and three writes to the console where there is none.
+// The page has asked for WebGL and put the canvas in its place: three would write to the console where there is none.
 if (document.documentElement.classList.contains("with-scene")) await start();
 else place.classList.add("no-webgl");
 

@@ -9,7 +9,7 @@ export function makePicker(data, mesh, camera) {
   const { begin } = mesh.userData;
   const caster = new Raycaster();
   const trees = data.faults.map(() => null);
-  const boxes = data.faults.map(({ low, step }) => new Box3(new Vector3(...low), new Vector3(...low.map((value, k) => value + 65535 * step[k]))).expandByScalar(1e-3));
+  const boxes = data.faults.map(({ low, step }) => new Box3(new Vector3(...low), new Vector3(...low.map((value, k) => value + data.steps * step[k]))).expandByScalar(1e-3));
 
   function tree(fault) {
     const count = begin[fault + 1] - begin[fault];

@@ -22,12 +22,12 @@ const POINTS = [["oblique", "Oblique"], ["map", "Map"], ["south", "From the sout
 export function startView(place, data, arrays, tell) {
   ColorManagement.enabled = false;
   const theme = makeTheme();
-  const renderer = new WebGLRenderer({ antialias: true, alpha: true, preserveDrawingBuffer: true });
+  const canvas = place.querySelector("canvas");
+  const renderer = new WebGLRenderer({ canvas, context: canvas.getContext("webgl2"), alpha: true });
   const pixels = Math.min(devicePixelRatio, 2);
   renderer.setPixelRatio(pixels);
   renderer.localClippingEnabled = true;
   renderer.outputColorSpace = LinearSRGBColorSpace; // with the line below: colours reach the screen as they stand in the legend
-  const canvas = renderer.domElement;
   canvas.tabIndex = 0;
   canvas.setAttribute("role", "application");
   canvas.setAttribute("aria-label", "The model in 3D: arrows turn it, plus and minus zoom, Escape lets go of a fault");
@@ -89,7 +89,7 @@ export function startView(place, data, arrays, tell) {
   }
   const boxOf = (fault) => {
     const { low, step } = data.faults[fault];
-    const box = new Box3(new Vector3(...low), new Vector3(...low.map((value, k) => value + 65535 * step[k])));
+    const box = new Box3(new Vector3(...low), new Vector3(...low.map((value, k) => value + data.steps * step[k])));
     box.min.z *= state.height;
     box.max.z *= state.height;
     return box;
