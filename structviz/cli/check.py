@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import argparse
 import sys
+from pathlib import Path
 
 from structviz.analysis import Analysis
 from structviz.analysis import run as analyse
@@ -58,6 +59,7 @@ def run(args: argparse.Namespace) -> int:
                 page=not args.no_page,
                 field=args.field,
                 depends=depends,
+                package=Path(args.path) if args.path.lower().endswith(".epc") else None,
                 progress=progress,
             )
     _show(analysis, written, depends, as_json=args.json)

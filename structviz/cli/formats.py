@@ -14,7 +14,9 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 def run(args: argparse.Namespace) -> int:
     """Print the table of formats and return 0."""
     rows = [("format", "suffixes", "", "cannot hold")]
-    rows += [(e.title, " ".join(e.suffixes), "read, write" if e.write else "read", ", ".join(e.cannot_store) or "-") for e in FORMATS]
+    for entry in FORMATS:
+        ways = "read, write" if entry.write or entry.write_model else "read"
+        rows.append((entry.title, " ".join(entry.suffixes), ways, ", ".join(entry.cannot_store) or "-"))
     widths = [max(len(row[k]) for row in rows) for k in range(3)]
     for row in rows:
         print("  ".join(cell.ljust(width) for cell, width in zip(row, [*widths, 0])).rstrip())

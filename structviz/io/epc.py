@@ -44,6 +44,8 @@ class Package:
     versions: Mapping[str, str]  # name of part -> version of its schema
     beside: Beside
     trees: dict[str, Element] = field(default_factory=dict)  # name of part -> root
+    found: dict[tuple[str, ...], dict[str, Element]] = field(default_factory=dict)  # classes -> objects by UUID
+    files: dict[str, str] = field(default_factory=dict)  # UUID of what stands for a file beside -> its name
     stores: dict[str, Any] = field(default_factory=dict)  # name of file beside -> open HDF5
     told: list[str] = field(default_factory=list)  # what reading noticed of the package as a whole
 
@@ -69,6 +71,8 @@ def tree(package: Package, name: str) -> Element:
 
 def objects(package: Package, *kinds: str) -> dict[str, Element]:
     """Return the objects of some classes by their UUID, in the order of their UUIDs; FormatError where one comes twice."""
+    if kinds in package.found:
+        return package.found[kinds]
     found: dict[str, Element] = {}
     for name in sorted(name for name, kind in package.classes.items() if kind in kinds):
         root = tree(package, name)
@@ -77,7 +81,8 @@ def objects(package: Package, *kinds: str) -> dict[str, Element]:
             what = "an object without a UUID" if not uuid else f"two objects with the UUID {uuid[:40]}"
             raise FormatError(f"{package.file}, {name}", what, "one UUID an object", hint=DAMAGED)
         found[uuid] = root
-    return dict(sorted(found.items()))
+    package.found[kinds] = dict(sorted(found.items()))
+    return package.found[kinds]
 
 
 def reference(element: Element | None) -> Reference:
@@ -94,6 +99,12 @@ def title_of(root: Element | None) -> str:
 
 def external_name(package: Package, uuid: str) -> str:
     """Return the file that an EpcExternalPartReference stands for, by the relationships of its part."""
+    if uuid not in package.files:
+        package.files[uuid] = _external_name(package, uuid)
+    return package.files[uuid]
+
+
+def _external_name(package: Package, uuid: str) -> str:
     for name in sorted(name for name, kind in package.classes.items() if kind == "EpcExternalPartReference"):
         if tree(package, name).get("uuid", "").lower() != uuid:
             continue
@@ -103,6 +114,16 @@ def external_name(package: Package, uuid: str) -> str:
             if link.get("TargetMode") == "External" and link.get("Type", "").endswith(EXTERNAL):
                 return link.get("Target", "")
     raise FormatError(package.file, f"no file for the arrays of {uuid[:40] or 'an object'}", "an external HDF5 part", hint=DAMAGED)
+
+
+def external_names(package: Package) -> set[str]:
+    """Return every file beside that the relationships of a package name."""
+    found: set[str] = set()
+    for name in package.parts.entries:
+        if name.endswith(".rels"):
+            links = tree_of(part(package.parts, name), f"{package.file}, {name}").iter("Relationship")
+            found |= {unquote(link.get("Target", "")) for link in links if link.get("TargetMode") == "External"}
+    return found
 
 
 def store(package: Package, target: str, uuid: str = "") -> Any:

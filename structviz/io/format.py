@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
+from structviz.model import FaultModel
 from structviz.surfaces.surface import Floats, Integers, Surface
 
 CellData = Mapping[str, NDArray]
@@ -48,6 +49,7 @@ class Format:
     explain: Callable[[bytes], str] = lambda content: ""  # what is wrong with a content of this suffix that no sniff knows
     read_beside: Callable[[bytes, str, Beside], tuple[Piece, ...]] | None = None  # used instead of `read` where other files belong to it
     write_all: Callable[[Sequence[tuple[Surface, CellData]]], bytes] | None = None  # several named surfaces in one file
+    write_model: Callable[[FaultModel, str], Mapping[str, bytes]] | None = None  # a whole model: files by name, (model, stem of them)
 
 
 def start_of(content: bytes, length: int = 512) -> bytes:

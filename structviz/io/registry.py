@@ -32,7 +32,10 @@ def suffixes(*, writable: bool = False) -> tuple[str, ...]:
 
 def table_text() -> str:
     """Return the table of formats as lines of text."""
-    rows = [f"  {entry.title:<22} {' '.join(entry.suffixes):<12} {'read, write' if entry.write else 'read'}" for entry in FORMATS]
+    rows = [
+        f"  {entry.title:<22} {' '.join(entry.suffixes):<12} {'read, write' if entry.write or entry.write_model else 'read'}"
+        for entry in FORMATS
+    ]
     return "\n".join(rows)
 
 

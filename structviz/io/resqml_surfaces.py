@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from structviz.errors import FormatError
 from structviz.io.cells import check_indices, counted, used_only
+from structviz.io.declared_names import declared_of
 from structviz.io.epc import DAMAGED, Package, Reference, objects, reference, title_of
 from structviz.io.resqml_arrays import NotRead, grid_of, indices, points, whole
 from structviz.io.resqml_frame import LocalFrame, frame_of, placed
@@ -17,7 +18,6 @@ from structviz.io.xml_tree import text_at
 
 TRIANGULATED, GRID = "TriangulatedSetRepresentation", "Grid2dRepresentation"
 KINDS = {"FaultInterpretation": "fault", "HorizonInterpretation": "horizon"}
-OUR_COLUMNS = ("sense", "rake_deg", "phase", "down_side")  # of a table of faults; as ExtraMetadata under "structviz:sense" and so on
 SENSES = {"normal": "normal", "reverse": "reverse", "thrust": "reverse"}  # kinds of throw that say a sense; all others are only told
 
 TOLD = (
@@ -142,12 +142,13 @@ def interpretation_of(root: Element) -> Reference:
 def declarations(interpretation: Element | None) -> tuple[dict[str, str], tuple[str, ...]]:
     """Return what a fault interpretation declares of its movement by our columns, and in words what it says besides and is not used.
 
-    Taken are ExtraMetadata named "structviz:sense" and so on, and a single kind of throw that is in the table of senses.
+    Taken are ExtraMetadata of the names in `io/declared_names.py`, with or without "structviz:" before them, and a single kind of throw
+    that is in the table of senses.
     """
     if interpretation is None or interpretation.tag != "FaultInterpretation":
         return {}, ()
-    extra = {text_at(pair, "Name"): text_at(pair, "Value") for pair in interpretation.findall("ExtraMetadata")}
-    taken = {column: extra[f"structviz:{column}"] for column in OUR_COLUMNS if extra.get(f"structviz:{column}")}
+    extra = {text_at(pair, "Name").removeprefix("structviz:"): text_at(pair, "Value") for pair in interpretation.findall("ExtraMetadata")}
+    taken = declared_of(extra)
     throws = list(dict.fromkeys((kind.text or "").strip().lower() for kind in interpretation.findall("ThrowInterpretation/Throw")))
     told = []
     if throws and not {"sense", "rake_deg"} & set(taken):

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import secrets
 from collections.abc import Mapping, Sequence
 from pathlib import Path
@@ -50,6 +51,25 @@ def write_surfaces(path: str | Path, surfaces: Sequence[Surface]) -> None:
         found = f"{path.name}: {known.title} holds one surface, and there are {len(surfaces)}"
         raise ArgumentError(found, hint=f"name a folder for one file each, or a file that ends in one of {several}")
     _put(path, known.write_all([(surface, {}) for surface in surfaces]))
+
+
+def write_new_files(folder: Path, files: Mapping[str, bytes]) -> None:
+    """Write files that belong together, all of them or none; the first is put in place last.
+
+    Raises OutputError where one exists already or cannot be written.
+    """
+    for name in files:
+        if os.path.lexists(folder / name):
+            raise OutputError(f"{folder / name}: exists already; wanted a new file", hint="name another, or remove that one")
+    put: list[Path] = []
+    try:
+        for name in reversed(list(files)):
+            _put(folder / name, files[name])
+            put.append(folder / name)
+    except BaseException:
+        for path in put:
+            path.unlink(missing_ok=True)
+        raise
 
 
 def _format_of(path: Path) -> Format:

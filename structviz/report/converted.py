@@ -11,7 +11,7 @@ from pathlib import Path
 from structviz.errors import ArgumentError
 from structviz.io import FORMATS, write_surface
 from structviz.io.format import FLOAT64, NAMES, SHARED_VERTICES, Format
-from structviz.io.writing import write_surfaces
+from structviz.io.writing import write_new_files, write_surfaces
 from structviz.kinematics.senses import Sector
 from structviz.model import FaultModel
 from structviz.report import whole
@@ -40,9 +40,10 @@ def format_to(suffix: str) -> Format:
     """Return the format that writes a suffix; ArgumentError shows those there are."""
     wanted = f".{suffix.lower().removeprefix('.')}"
     for entry in FORMATS:
-        if wanted in entry.suffixes and entry.write:
+        if wanted in entry.suffixes and (entry.write or entry.write_model):
             return entry
-    known = " ".join(sorted(suffix.removeprefix(".") for entry in FORMATS if entry.write for suffix in entry.suffixes))
+    writable = [entry for entry in FORMATS if entry.write or entry.write_model]
+    known = " ".join(sorted(suffix.removeprefix(".") for entry in writable for suffix in entry.suffixes))
     raise ArgumentError(f"--to: found {suffix!r}; wanted one of {known}", hint="structviz formats says what each can hold")
 
 
@@ -54,6 +55,8 @@ def convert_to_folder(
     `more` are further text files by name.
     """
     tell = progress or (lambda text, done, total: None)
+    if entry.write is None:
+        raise ArgumentError(f"--to: {entry.title} holds a whole model; wanted a file", hint=f"--out model{entry.suffixes[0]}")
     target = whole.checked_target(folder, lambda place: set(), "nothing yet")
     suffix = entry.suffixes[0]
     bodies = [fault.surface for fault in model.faults] + [horizon.surface for horizon in model.horizons]
@@ -76,10 +79,17 @@ def convert_to_folder(
 
 
 def convert_to_file(model: FaultModel, file: str, entry: Format) -> Converted:
-    """Write every surface of a model into one new file; return what was lost. ArgumentError where the format holds only one."""
+    """Write every surface of a model into one new file; return what was lost. ArgumentError where the format holds only one.
+
+    A format that holds whole models writes the files that belong to it beside, and keeps declared movements.
+    """
     target = Path(file)
     if target.is_dir():
         raise ArgumentError(f"--out: {printable(file)} is a folder; wanted a file", hint="name a file that does not exist yet")
+    if entry.write_model is not None:
+        files = entry.write_model(model, target.stem)
+        write_new_files(target.parent, files)
+        return Converted(target, tuple(files), (*_losses(entry), *_not_carried(model)))
     taken = {fault.name for fault in model.faults}
     named = [(fault.name, fault.surface) for fault in model.faults]
     named += [(f"{h.name} (horizon)" if h.name in taken else h.name, h.surface) for h in model.horizons]

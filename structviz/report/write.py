@@ -6,13 +6,14 @@ import json
 import os
 from collections.abc import Sequence
 from dataclasses import dataclass
-from pathlib import Path
+from pathlib import Path, PurePosixPath
 
 from structviz.analysis import Analysis, Progress
 from structviz.report import whole
 from structviz.report.annotated import mesh_files, write_annotated
 from structviz.report.field_files import field_outputs
 from structviz.report.html import page_text
+from structviz.report.resqml_results import package_with_results
 from structviz.report.results_json import results_text
 from structviz.report.tables import csv_text, fault_table, pair_table, sensitivity_table
 from structviz.report.whole import all_files, complete_or_nothing
@@ -40,17 +41,19 @@ def write_outputs(
     page: bool = True,
     field: bool = False,
     depends: Sensitivity | None = None,
+    package: Path | None = None,
     progress: Progress | None = None,
 ) -> Written:
     """Write results.json, the page, the tables, an annotated mesh a fault and the pictures into a folder; return what was written.
 
     The folder is made, with the folders above it. It may exist if it is empty or holds only an earlier result, which is
     replaced once the new one is complete. `field` adds field.vti and trajectories.vtp, `depends` adds sensitivity.csv and
-    what it holds to results.json. Raises OutputError, with nothing changed, where it cannot be written or holds other files.
+    what it holds to results.json; `package`, the RESQML package that was judged, adds results.epc. Raises OutputError, with nothing
+    changed, where it cannot be written or holds other files.
     """
     target = checked_target(folder)
     with complete_or_nothing(target) as new:
-        wanted = _Wanted(pictures, page, field, depends)
+        wanted = _Wanted(pictures, page, field, depends, package)
         files, skipped = _fill(new, analysis, wanted, progress or (lambda text, done, total: None))
     return Written(target, files, skipped)
 
@@ -77,6 +80,7 @@ class _Wanted:
     page: bool
     field: bool
     depends: Sensitivity | None
+    package: Path | None
 
 
 def _fill(new: Path, analysis: Analysis, wanted: _Wanted, tell: Progress) -> tuple[tuple[str, ...], tuple[str, ...]]:
@@ -96,6 +100,8 @@ def _fill(new: Path, analysis: Analysis, wanted: _Wanted, tell: Progress) -> tup
     if wanted.page:
         tell("writing the page", 0, 1)
         skipped = (*skipped, *_write_page(analysis, new, drawn, wanted.depends))
+    if wanted.package:
+        skipped = (*skipped, *_write_package(analysis, new, wanted.package))
     files = (RESULTS, *sorted(all_files(new), key=lambda name: ("/" in name, name)))
     _write_text(new / RESULTS, results_text(analysis, meshes=meshes, outputs=files, depends=wanted.depends))
     return files, tuple(skipped)
@@ -119,6 +125,20 @@ def _write_field(analysis: Analysis, new: Path, tell: Progress) -> tuple[str, ..
     for name, content in field_outputs(analysis.by_place).items():
         (new / name).write_bytes(content)
     return ()
+
+
+def _write_package(analysis: Analysis, new: Path, package: Path) -> tuple[str, ...]:
+    """Write a copy of the package that was judged, with results on its triangles; return what is missing in it."""
+    taken = {name.casefold() for name in (RESULTS, *all_files(new))}
+
+    def free(name: str) -> bool:
+        return not any(str(place).casefold() in taken for place in (PurePosixPath(name), *PurePosixPath(name).parents))
+
+    files, missing = package_with_results(analysis, package, free)
+    for name, content in files.items():
+        (new / name).parent.mkdir(parents=True, exist_ok=True)
+        (new / name).write_bytes(content)
+    return missing
 
 
 def _write_text(path: Path, text: str) -> None:

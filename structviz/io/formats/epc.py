@@ -1,4 +1,4 @@
-"""RESQML 2.0.1 and 2.2: fault and horizon interpretations with triangulated sets and grids, in an EPC package with HDF5 beside it.
+"""RESQML 2.0.1 and 2.2 read, 2.0.1 written: interpretations with triangulated sets and grids, in an EPC package with HDF5 beside it.
 
 The file states its units, datum and local axes, so its surfaces are framed: easting, northing, up in metres. An interpretation gives
 its name and says what a surface is; where it has several representations, one is used and the others are set aside.
@@ -15,7 +15,8 @@ from structviz.io.cells import counted
 from structviz.io.epc import CONTENT_TYPES, Package, objects, package_of, title_of
 from structviz.io.format import Beside, Format, Piece
 from structviz.io.resqml_arrays import NotRead
-from structviz.io.resqml_surfaces import GRID, KINDS, TRIANGULATED, declarations, interpretation_of, interpretations, mesh_of
+from structviz.io.resqml_surfaces import GRID, KINDS, TRIANGULATED, Mesh, declarations, interpretation_of, interpretations, mesh_of
+from structviz.io.resqml_writing import package_of_model
 from structviz.io.zip_parts import part, parts_of
 
 OTHERS = ("PointSetRepresentation", "PolylineRepresentation", "PolylineSetRepresentation")
@@ -58,30 +59,35 @@ def alone(name: str) -> bytes:
 
 def read_beside(content: bytes, file: str, beside: Beside) -> tuple[Piece, ...]:
     """Return the surfaces of a package: faults, horizons, and what stands for neither, set aside."""
-    package = package_of(content, file, beside)
+    return tuple(piece for piece, _, _ in surfaces_of(package_of(content, file, beside)))
+
+
+def surfaces_of(package: Package) -> list[tuple[Piece, Element, Mesh]]:
+    """Return every surface that is read, with the object it comes from; SurfaceError where there is none."""
     meaning = interpretations(package)
-    found: list[tuple[Element, Piece]] = []
-    untold: Counter[str] = Counter(kind for kind in package.classes.values() if kind in OTHERS)
+    found: list[tuple[Piece, Element, Mesh]] = []
     skipped: list[str] = []
     for root in objects(package, TRIANGULATED, GRID).values():
         try:
-            found.append((root, piece_of(package, root, meaning)))
+            mesh = mesh_of(package, root)
         except NotRead as error:
             skipped.append(f"{title_of(root)[:80]!r} is not read: {error}")
+            continue
+        found.append((piece_of(root, mesh, meaning), root, mesh))
     if not found:
         what = "; ".join(skipped[:3]) or "no triangulated sets or grids"
-        raise SurfaceError(file, what, "a surface with heights in length", hint=EXPORT)
-    told = (*package.told, *skipped, *(f"{counted(count, kind)} not read" for kind, count in sorted(untold.items())))
-    roots, pieces = [root for root, _ in found], [piece for _, piece in found]
-    used = chosen(pieces, [interpretation_of(root).uuid for root in roots], [title_of(root) for root in roots])
-    return tuple(replace(piece, told=told) for piece in used)
+        raise SurfaceError(package.file, what, "a surface with heights in length", hint=EXPORT)
+    others = Counter(kind for kind in package.classes.values() if kind in OTHERS)
+    told = (*package.told, *skipped, *(f"{counted(count, kind)} not read" for kind, count in sorted(others.items())))
+    roots = [root for _, root, _ in found]
+    used = chosen([piece for piece, _, _ in found], [interpretation_of(root).uuid for root in roots], [title_of(root) for root in roots])
+    return [(replace(piece, told=told), root, mesh) for piece, (_, root, mesh) in zip(used, found, strict=True)]
 
 
-def piece_of(package: Package, root: Element, meaning: dict[str, Element]) -> Piece:
+def piece_of(root: Element, mesh: Mesh, meaning: dict[str, Element]) -> Piece:
     """Return the surface of one representation, named by its interpretation."""
     named = interpretation_of(root)
     interpretation = meaning.get(named.uuid)
-    mesh = mesh_of(package, root)
     declared, told = declarations(interpretation)
     kind = KINDS.get(interpretation.tag if interpretation is not None else named.kind, "")
     name = title_of(interpretation) or named.title or title_of(root)
@@ -122,4 +128,4 @@ def free_name(name: str, taken: set[str]) -> str:
     return free
 
 
-FORMATS = (Format("resqml", "RESQML 2.0.1, 2.2", (".epc",), sniff, read, None, (), explain, read_beside),)
+FORMATS = (Format("resqml", "RESQML 2.0.1, 2.2", (".epc",), sniff, read, None, (), explain, read_beside, None, package_of_model),)
