@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from structviz.io import FORMATS
+from structviz.model import Fault, FaultModel, Horizon
 from structviz.surfaces.surface import Surface
 
 Files = dict[str, bytes]  # the first is the one that is read; the others lie beside it
@@ -60,6 +61,8 @@ def samples() -> dict[str, Files]:
         if entry.write_all:
             other = Surface("Fault B", sheet().vertices + [300.0, 50.0, 0.0], sheet().triangles)
             found[f"{entry.key}, several"] = {f"a{entry.suffixes[0]}": entry.write_all([(sheet(), {}), (other, {})])}
+        if entry.write_model:
+            found[entry.key] = dict(entry.write_model(FaultModel("small", (Fault("Fault A", sheet()),), (Horizon("Top", sheet()),)), "a"))
     mesh = {"a.ply": found["ply"]["a.ply"]}
     tables = {"faults.csv": FAULTS, "striae.csv": STRIAE, "quakes.csv": QUAKES, "wells.csv": WELLS}
     for name, content in ({"model.toml": MODEL} | tables).items():

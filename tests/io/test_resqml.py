@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import io
 import random
+import re
 import sys
 import time
 import zipfile
@@ -626,6 +627,35 @@ def test_damage_is_an_error_or_still_a_surface(version):
             assert 0 <= piece.triangles.min() <= piece.triangles.max() < len(piece.vertices)
     assert errors > 300
     assert time.perf_counter() - began < 60
+
+
+@both
+def test_damaged_words_within_a_whole_archive_are_an_error_or_still_a_surface(version):
+    made = plain(version).interpretation(3, "Top", "HorizonInterpretation")
+    below = made.lattice("r:SupportingGeometry", (1000, 2000, 0), ((0, 1, 0), 25, 2), ((1, 0, 0), 10, 2))
+    heights = made.array("r:ZValues", "Double", "/g/z", np.arange(9.0))
+    made.grid(4, 3, (3, 3), f'<r:Points xsi:type="r:Point3dZValueArray">{below}{heights}</r:Points>')
+    good, held, chance = list(made.objects), made.h5(), random.Random(12)
+    words = ["", "-1", "0", "9999999999", "nan", "1e400", "x", "true", "\u00e9", "<a/>", "</", "..", "3"]
+    errors = 0
+    for _ in range(1200):
+        made.objects = list(good)
+        for _ in range(chance.choice([1, 1, 2])):
+            place = chance.randrange(len(good))
+            text = made.objects[place][4]
+            values = list(re.finditer(r"(?<=>)[^<>]*(?=<)|(?<=\")[^\"]*(?=\")|</?[a-z]:\w+", text))
+            found = chance.choice(values)
+            made.objects[place] = (*made.objects[place][:4], text[: found.start()] + chance.choice(words) + text[found.end() :])
+        content = made.epc(compression=zipfile.ZIP_STORED)
+        try:
+            pieces = read_pieces(content, "m.epc", lambda name: held)
+        except StructvizError:
+            errors += 1
+            continue
+        for piece in pieces:
+            assert np.isfinite(piece.vertices).all()
+            assert 0 <= piece.triangles.min() <= piece.triangles.max() < len(piece.vertices)
+    assert 300 < errors < 1100
 
 
 @pytest.mark.parametrize("name", ["resqml_2_0_1_testingPackageCpp.epc", "resqml_2_2_testingPackageCpp22.epc"])
