@@ -1,4 +1,4 @@
-"""From the coordinates of a GeoJSON file to metres: longitude and latitude, or the system that the file names."""
+"""From the coordinates of a file of lines to metres: longitude and latitude, or the system that the file names."""
 
 from __future__ import annotations
 
@@ -6,12 +6,15 @@ import math
 import re
 from collections.abc import Callable
 from dataclasses import dataclass
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from structviz.errors import FormatError
+
+if TYPE_CHECKING:
+    from pyproj import CRS
 
 Floats = NDArray[np.float64]
 
@@ -29,32 +32,40 @@ class Projection:
     told: str
 
 
-def projection(tree: dict[str, Any], places: Floats, file: str) -> Projection:
-    """Return the projection for the places (N, 2) of a GeoJSON collection; FormatError where they cannot be placed.
+def projection(named: str, places: Floats, file: str) -> Projection:
+    """Return the projection for places (N, 2) in the system `named`; FormatError where they cannot be placed.
 
-    Longitude and latitude unless an (old) `crs` member names another system: RFC 7946 has no other, the edition of 2008 had.
+    `named` is authority:code, or the text of a system (WKT); longitude and latitude where it is "".
     """
-    named = named_system(tree, file)
     if named in ("", *LONGITUDE_LATITUDE):
-        return _about_the_middle(places, "EPSG:4326", "longitude and latitude", file)
+        words = "longitude and latitude" if named else "no reference system is named: coordinates taken as longitude and latitude,"
+        return _about_the_middle(places, "EPSG:4326", words, file)
+    system, shown = known_system(named, file)
+    if system.is_geographic:
+        return _about_the_middle(places, named, f"longitude and latitude of {shown}", file)
+    directions = {axis.direction for axis in system.axis_info}
+    if not system.is_projected or "west" in directions:
+        found = f"the reference system {shown}, which " + ("counts to the west" if "west" in directions else "is no map projection")
+        raise FormatError(file, found, "easting and northing", hint="export the traces as longitude and latitude")
+    factor = float(system.axis_info[0].unit_conversion_factor)
+    if factor == 1.0:
+        return Projection(lambda line: line, shown, f"coordinates taken as metres in {shown}, as the file says")
+    told = f"coordinates in {shown} turned from {system.axis_info[0].unit_name} into metres (times {factor:.10g})"
+    return Projection(lambda line: line * factor, f"{shown}, in metres", told)
+
+
+def known_system(named: str, file: str) -> tuple[CRS, str]:
+    """Return a reference system and how it is shown: authority:code, or the name in its text; FormatError where it is not known."""
     from pyproj import CRS
     from pyproj.exceptions import CRSError
 
+    short = " ".join(named.split())[:60]
     try:
         system = CRS.from_user_input(named)
     except CRSError:
-        hint = "correct the 'crs' member, or export the traces as longitude and latitude"
-        raise FormatError(file, f"the reference system {named}, which is not known", "a known EPSG code", hint=hint) from None
-    if system.is_geographic:
-        return _about_the_middle(places, named, f"longitude and latitude of {named}", file)
-    if not system.is_projected:
-        hint = "export the traces as longitude and latitude"
-        raise FormatError(file, f"the reference system {named}, which is no map projection", "easting and northing", hint=hint)
-    factor = float(system.axis_info[0].unit_conversion_factor)
-    if factor == 1.0:
-        return Projection(lambda line: line, named, f"coordinates taken as metres in {named}, as the file says")
-    told = f"coordinates in {named} turned from {system.axis_info[0].unit_name} into metres (times {factor:.10g})"
-    return Projection(lambda line: line * factor, f"{named}, in metres", told)
+        hint = "correct the reference system of the file, or export the traces as longitude and latitude"
+        raise FormatError(file, f"the reference system {short}, which is not known", "a known EPSG code", hint=hint) from None
+    return system, named if len(named) < 30 else str(system.name)
 
 
 def named_system(tree: dict[str, Any], file: str) -> str:
@@ -79,7 +90,7 @@ def _about_the_middle(places: Floats, source: str, words: str, file: str) -> Pro
             file,
             f"coordinates up to {np.abs(places).max():g} without a reference system",
             "longitude and latitude in degrees",
-            hint="GeoJSON holds longitude and latitude; name a projected system in a 'crs' member, or export it as it should be",
+            hint="name the projected system in the file (GeoJSON: a 'crs' member; Shapefile: .prj), or export longitude and latitude",
         )
     across = east - west > 180.0  # the short way round leads over the antimeridian
     if across:

@@ -152,7 +152,7 @@ def mesh_files(folder: Path) -> list[Path]:
     )
     meshes = [entry for entry in found if entry.suffix.lower() in known]
     if not meshes:
-        hint = f"name a folder that holds surfaces in one of these formats, or a model.toml or faults.csv:\n{table_text()}"
+        hint = f"name a folder that holds surfaces in one of these formats, traces, or a model.toml or faults.csv:\n{table_text()}"
         what = f"{len(found)} files, none of them a mesh" if found else "no files"
         raise InputError(folder, what, "mesh files, model.toml or faults.csv", hint=hint)
     return meshes

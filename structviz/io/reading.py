@@ -15,11 +15,14 @@ from structviz.io.declared_fields import fault_in_file, note_unused
 from structviz.io.format import Piece
 from structviz.io.independent import with_file
 from structviz.io.ledger import Ledger, Progress, content_of, inside, mesh_files, missing, pieces_of
+from structviz.io.line_files import SHOWN as LINE_FORMATS
+from structviz.io.line_files import SUFFIXES as LINE_SUFFIXES
+from structviz.io.line_files import faults_of_files, files_of_lines, with_layer
 from structviz.io.model_file import ModelFile, parsed_model
+from structviz.io.registry import suffixes
+from structviz.io.sticks import faults_of_stick_table, is_stick_table
 from structviz.io.striae import read_striae
 from structviz.io.tables import FAULT_COLUMNS, Row, declared, down_side, read_table
-from structviz.io.traces import SUFFIXES as TRACE_SUFFIXES
-from structviz.io.traces import read_traces
 from structviz.io.units import Frame, surface_m
 from structviz.model import Fault, FaultModel, Horizon, Stria
 from structviz.surfaces.surface import Surface
@@ -32,31 +35,54 @@ def read_model(
 ) -> FaultModel:
     """Return the fault model at a path, in metres with up positive.
 
-    `path` is a model file (TOML), a table of faults (CSV), traces (GeoJSON), a mesh file, or a folder; a folder with model.toml or
-    faults.csv uses that, any other gives every mesh in it, without senses. `where` keeps the traces whose properties have the
-    values given. Files outside the folder of the model are refused unless `allow_outside`. `progress` is called with what is being
-    done, how many are done, of how many. Raises InputError (FormatError, TableError, SurfaceError).
+    `path` is a model file (TOML), a table of faults or of sticks (CSV), lines (GeoJSON, GeoPackage, also file.gpkg#layer, Shapefile), a
+    mesh file, or a folder; a folder with model.toml or faults.csv uses that, any other gives every mesh in it, without senses, or all
+    its lines where it has no mesh. `where` keeps the lines whose properties have the values given. Files outside the folder of the
+    model are refused unless `allow_outside`. `progress` is called with what is being done, how many are done, of how many.
+    Raises InputError (FormatError, TableError, SurfaceError).
     """
-    path = Path(path)
-    if where and path.suffix.lower() not in TRACE_SUFFIXES:
-        raise InputError(path.name, "properties to choose by, for an input without any", "GeoJSON traces", hint="leave --where out")
+    path, layer = with_layer(Path(path))
     if os.path.isdir(path):  # unlike Path.is_dir, False for a path no system could hold
         found = next((path / name for name in ("model.toml", "faults.csv") if (path / name).is_file()), None)
         if found is None:
-            return model_of_meshes(Ledger(path, allow_outside), mesh_files(path), path.resolve().name, progress)
+            return model_of_folder(path, allow_outside, where or {}, progress)
         path = found
     elif not os.path.exists(path):
         raise missing(path, str(path))
-    ledger = Ledger(path.parent, allow_outside)
-    if path.suffix.lower() == ".toml":
+    ledger, suffix = Ledger(path.parent, allow_outside), path.suffix.lower()
+    if suffix in LINE_SUFFIXES:
+        traces = faults_of_files([path], ledger, where or {}, layer)
+        return finished(ledger, layer or path.stem, traces.crs, traces.faults, (), ())
+    no_lines(where, path.name)
+    if suffix == ".toml":
         return model_of_file(ledger, path, parsed_model(content_of(ledger, path), path.name), progress)
-    if path.suffix.lower() == ".csv":
+    if suffix == ".csv" and path.name != "faults.csv" and is_stick_table(content := content_of(ledger, path)):
+        return finished(ledger, path.stem, "", faults_of_stick_table(content, path.name, ledger), (), ())
+    if suffix == ".csv":
         striae = "striae.csv" if path.name == "faults.csv" and (path.parent / "striae.csv").is_file() else ""
         return model_of_file(ledger, path, ModelFile(path.resolve().parent.name, faults=path.name, striae=striae), progress)
-    if path.suffix.lower() in TRACE_SUFFIXES:
-        traces = read_traces(content_of(ledger, path), path.name, ledger, where or {})
-        return finished(ledger, path.stem, traces.crs, traces.faults, (), ())
     return model_of_meshes(ledger, [path], path.stem, progress)
+
+
+def model_of_folder(folder: Path, allow_outside: bool, where: Mapping[str, str], progress: Progress | None) -> FaultModel:
+    """Return a model of every mesh in a folder, or of all its lines where it has no mesh."""
+    ledger, title, lines = Ledger(folder, allow_outside), folder.resolve().name, files_of_lines(folder)
+    known = suffixes()
+    meshes = any(entry.suffix.lower() in known and entry.is_file() and not entry.name.startswith(".") for entry in folder.iterdir())
+    if lines and (where or not meshes):
+        traces = faults_of_files(lines, ledger, where)
+        return finished(ledger, title, traces.crs, traces.faults, (), ())
+    no_lines(where, folder.name)
+    if lines:
+        names = ", ".join(path.name for path in lines[:5]) + (f" and {len(lines) - 5} more" if len(lines) > 5 else "")
+        ledger.note("model", f"traces beside the meshes are not read: {names}", "name such a file, or move it to a folder of its own")
+    return model_of_meshes(ledger, mesh_files(folder), title, progress)
+
+
+def no_lines(where: Mapping[str, str] | None, name: str) -> None:
+    """Raise InputError where lines are to be chosen by their properties and the input has none."""
+    if where:
+        raise InputError(name, "properties to choose by, for an input without any", f"traces: {LINE_FORMATS}", hint="leave --where out")
 
 
 def read_surfaces(path: str | Path) -> tuple[Surface, ...]:

@@ -1,16 +1,14 @@
-"""Fault traces from GeoJSON (RFC 7946): lines with dip, dip direction, rake and depth range, made into surfaces.
+"""Faults from lines: traces with dip, dip direction, rake and depth range; lines without a dip that share a fault are sticks of it.
 
-Properties are taken by the names in PROPERTIES and no others; which ones were used is told. Longitude and latitude are projected to
-a plane about the middle of the data, and that is told too.
+Properties are taken by the names of one table (`trace_properties`) and no others; which ones were used is told. Longitude and latitude
+are projected to a plane about the middle of the data, and that is told too.
 """
 
 from __future__ import annotations
 
-import json
 import math
 import re
-from collections import Counter
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Any
 
@@ -20,68 +18,120 @@ from numpy.typing import NDArray
 from structviz.errors import ArgumentError, FormatError, SurfaceError, TableError
 from structviz.io.geographic import projection
 from structviz.io.ledger import Ledger
+from structviz.io.lines import LineFeature, LineSet, chosen, in_one_system
+from structviz.io.sticks import Stick, sticks_by_fault, tell_lofts
+from structviz.io.tables import nearest
+from structviz.io.trace_properties import LOWER_DEPTH_M, number_of, tell_cut_names, tell_properties, text_of, value_of
 from structviz.kinematics.senses import COMPASS_DEG, DIP_SLIP, RAKE_OF_WORD, Sector, describe_rake, sector_of_rake, sector_of_words
 from structviz.model import Fault
+from structviz.surfaces.from_sticks import Loft, surface_from_sticks
 from structviz.surfaces.from_traces import mean_dip_direction_deg, surface_from_trace
 from structviz.surfaces.surface import Surface
 
 Floats = NDArray[np.float64]
 
-SUFFIXES = (".geojson", ".json")
-# What is needed of a trace, and the names under which it is taken, with the factor to our unit. Nothing else is guessed.
-PROPERTIES: Mapping[str, Mapping[str, float]] = {
-    "name": {"name": 1, "Name": 1, "fault_name": 1, "FaultName": 1},
-    "dip_deg": {"dip_deg": 1, "dip": 1, "DipDeg": 1, "dip_int": 1},
-    "dip_direction": {"dip_direction_deg": 1, "dip_direction": 1, "dip_dir": 1, "DipDir": 1},
-    "rake_deg": {"rake_deg": 1, "rake": 1, "Rake": 1},
-    "sense": {"sense": 1, "slip_type": 1},
-    "upper_depth_m": {"upper_depth_m": 1, "upper_depth_km": 1000, "UpDepth": 1000},
-    "lower_depth_m": {"lower_depth_m": 1, "lower_depth_km": 1000, "LowDepth": 1000},
-    "phase": {"phase": 1},
-}
-LOWER_DEPTH_M = 15_000.0  # where none is given: about the base of brittle faulting in continents (common practice)
 VAGUE_DEG = 45.0  # a dip direction further than this from across the trace is told
 ALONG_DEG = 75.0  # one further than this does not say to which side
 
 
 @dataclass(frozen=True)
 class Traces:
-    """Faults made from traces, and the reference system of their coordinates."""
+    """Faults made from lines, and the reference system of their coordinates."""
 
     faults: tuple[Fault, ...]
     crs: str
 
 
-def read_traces(content: bytes, file: str, ledger: Ledger, where: Mapping[str, str]) -> Traces:
-    """Return the faults of the lines of a GeoJSON collection; notes go into the ledger.
+def faults_of_lines(sets: Sequence[LineSet], ledger: Ledger, where: Mapping[str, str]) -> Traces:
+    """Return the faults of all lines; notes go into the ledger.
 
     `where` keeps the lines whose properties have one of the values given, parted by commas.
-    Raises FormatError where it is no such collection or no line can be used, TableError where a property is out of range.
+    Raises FormatError where no line can be used, TableError where a property is out of range.
     """
-    tree = _parsed(content, file)
-    features = list(_lines(tree, file, where, ledger))
-    if not any(lines for _, _, lines in features):
-        chosen = " with " + ", ".join(f"{k}={v}" for k, v in where.items()) if where else ""
-        raise FormatError(file, f"no lines{chosen}", "LineString or MultiLineString features", hint="check the file and --where")
-    _tell_properties(features, file, ledger)
-    placed = projection(tree, np.concatenate([line for _, _, lines in features for line in lines])[:, :2], file)
-    ledger.note("model", f"{file}: {placed.told}")
-    faults, names, told = [], set[str](), Remarks()
-    for number, properties, lines in features:
-        own = [np.column_stack([placed.metres(line[:, :2]), line[:, 2]]) for line in lines]
-        fault = _fault(f"{file}, feature {number}", properties, own, f"{file}#{number}", told)
-        if fault is None:
-            continue
-        name = _free_name(fault.name, number, names)
-        names.add(name)
-        faults.append(replace(fault, name=name, surface=replace(fault.surface, name=name)))
-    told.tell(file, ledger)
-    if not faults:
+    sets, crs = in_one_system(chosen(sets, where, ledger), ledger)
+    files = ", ".join(dict.fromkeys(each.file for each in sets))
+    placed = projection(crs, np.concatenate([line for each in sets for f in each.features for line in f.lines])[:, :2], files)
+    ledger.note("model", f"{files}: {placed.told}")
+    told = Remarks()
+    made = [fault for each in sets for fault in _faults_of_set(in_metres(each, placed.metres), ledger, told)]
+    told.tell(files, ledger)
+    if not made:
         reasons = [f"{len(who)} {reason}" for reason, who in told.left_out.items()]
         shown = ", ".join(reasons[:3]) + (" and other reasons" if len(reasons) > 3 else "")
         wanted = "a dip, a dip direction across the trace, and a lower depth below the upper"
-        raise FormatError(file, f"no trace that can be used ({shown})", wanted, hint="add or correct these properties")
-    return Traces(tuple(faults), placed.crs)
+        raise FormatError(files, f"no trace that can be used ({shown})", wanted, hint="add or correct these properties")
+    return Traces(_apart(made, files, ledger), placed.crs)
+
+
+def in_metres(each: LineSet, metres: Callable[[Floats], Floats]) -> LineSet:
+    """Return the set with its lines projected."""
+
+    def placed(line: Floats) -> Floats:
+        return np.column_stack([metres(line[:, :2]), line[:, 2]])
+
+    return replace(each, features=tuple(replace(f, lines=tuple(placed(line) for line in f.lines)) for f in each.features))
+
+
+def _faults_of_set(each: LineSet, ledger: Ledger, told: Remarks) -> Iterator[tuple[Fault, str]]:
+    """Yield the faults of one file or layer, each with the mark that keeps it apart from others of its name."""
+    groups, single = _sticks_and_traces(each.features)
+    tell_properties(single, each.file, ledger)
+    tell_cut_names(each.features, each.file, ledger)
+    for feature in single:
+        fault = _fault(feature, told)
+        if fault is not None:
+            yield fault, feature.source.rpartition("#")[2]
+    lofts: list[tuple[Loft, list[Stick]]] = []
+    for name, features in groups.items():
+        fault = _fault_of_sticks(name, features, lofts, told)
+        if fault is not None:
+            yield fault, features[0].source.rpartition("#")[2]
+    tell_lofts(lofts, each.file, ledger)
+
+
+def _sticks_and_traces(features: Sequence[LineFeature]) -> tuple[dict[str, list[LineFeature]], list[LineFeature]]:
+    """Return the features that are sticks, by fault, and all others: sticks share a fault, have heights that differ and no dip."""
+    groups = sticks_by_fault(features, _stick_fault, lambda feature: value_of(feature.properties, "dip_deg")[0] is not None)
+    sticks = {id(feature) for group in groups.values() for feature in group}
+    return groups, [feature for feature in features if id(feature) not in sticks]
+
+
+def _stick_fault(feature: LineFeature) -> str:
+    """Return the fault a stick belongs to: its property fault, else its name."""
+    given = {key.lower(): value for key, value in feature.properties.items()}
+    return str(given.get("fault") or "").strip() or text_of(feature.properties, "name")
+
+
+def _fault_of_sticks(name: str, features: Sequence[LineFeature], lofts: list[tuple[Loft, list[Stick]]], told: Remarks) -> Fault | None:
+    """Return the fault lofted between the sticks of all its features; its movement is that of the first feature that gives one."""
+    sticks = [Stick(feature.where.rpartition(", ")[2], line) for feature in features for line in feature.lines]
+    try:
+        lofts.append((surface_from_sticks([stick.points for stick in sticks], name=name, source=features[0].source), sticks))
+    except SurfaceError as error:
+        told.leave_out(f"with {error.found}", name)
+        return None
+    said = {key: [f for f in features if text_of(f.properties, key)] for key in ("rake_deg", "sense", "down_side", "phase")}
+    for key, givers in said.items():
+        if len({text_of(f.properties, key) for f in givers}) > 1:
+            told.remark(f"with sticks that differ in {key}, that of the first used", "make them the same", "warning", name)
+    properties = {key: text_of(givers[0].properties, key) for key, givers in said.items() if givers}
+    where = features[0].where
+    declared = _movement(properties, where, name, told)
+    return Fault(name, lofts[-1][0].surface, declared, properties.get("phase", ""), _down_side(properties, where))
+
+
+def _apart(made: Sequence[tuple[Fault, str]], files: str, ledger: Ledger) -> tuple[Fault, ...]:
+    """Return the faults with distinct names; those that had to be renamed are told."""
+    names, renamed, faults = set[str](), [], []
+    for fault, mark in made:
+        name = _free_name(fault.name, mark, names)
+        names.add(name)
+        renamed += [name] if name != fault.name else []
+        faults.append(replace(fault, name=name, surface=replace(fault.surface, name=name)))
+    if renamed:
+        message = f"{files}: {_counted(renamed)} with the name of another, told apart as {_listed(renamed)}"
+        ledger.note("model", message, "give each fault a name of its own", "warning")
+    return tuple(faults)
 
 
 @dataclass
@@ -115,100 +165,18 @@ def _listed(names: Sequence[str]) -> str:
     return ", ".join(names[:8]) + (f" and {len(names) - 8} more" if len(names) > 8 else "")
 
 
-def _free_name(name: str, number: int, taken: set[str]) -> str:
-    """Return a name that no trace before has: its own, else with the number of the feature."""
-    candidates = (name, f"{name} ({number})", *(f"{name} ({number}, {k})" for k in range(2, len(taken) + 3)))
+def _free_name(name: str, mark: str, taken: set[str]) -> str:
+    """Return a name that no fault before has: its own, else with the mark of the feature."""
+    candidates = (name, f"{name} ({mark})", *(f"{name} ({mark}, {k})" for k in range(2, len(taken) + 3)))
     return next(candidate for candidate in candidates if candidate not in taken)
 
 
-def _parsed(content: bytes, file: str) -> dict[str, Any]:
-    def refuse(word: str) -> float:
-        raise ValueError(f"{word}, which is no JSON")
-
-    try:
-        tree = json.loads(content.decode("utf-8-sig"), parse_constant=refuse)
-    except (ValueError, RecursionError) as error:
-        raise FormatError(file, f"text that is not JSON ({error})"[:200], "a GeoJSON FeatureCollection", hint="export it again") from None
-    if not isinstance(tree, dict) or tree.get("type") != "FeatureCollection" or not isinstance(tree.get("features"), list):
-        raise FormatError(file, "JSON of another kind", "a GeoJSON FeatureCollection", hint="export the traces as a FeatureCollection")
-    return tree
-
-
-def _lines(tree: dict[str, Any], file: str, where: Mapping[str, str], ledger: Ledger) -> Iterator[tuple[int, dict[str, Any], list[Floats]]]:
-    """Yield number, properties and lines, (N, 3) each, of every feature asked for; others than lines are counted."""
-    other, high = 0, 0
-    for number, feature in enumerate(tree["features"], 1):
-        properties = feature.get("properties") if isinstance(feature, dict) else None
-        geometry = feature.get("geometry") if isinstance(feature, dict) else None
-        if not isinstance(properties, dict) or not isinstance(geometry, dict):
-            other += 1
-            continue
-        if not _chosen(properties, where):
-            continue
-        kind, places = geometry.get("type"), geometry.get("coordinates")
-        if kind not in ("LineString", "MultiLineString") or not isinstance(places, list):
-            other += 1
-            continue
-        lines = [_line(line, f"{file}, feature {number}") for line in (places if kind == "MultiLineString" else [places])]
-        high += any(line[:, 2].any() for line in lines)
-        yield number, properties, lines
-    if other:
-        ledger.note("model", f"{file}: {other} features left out, no lines with properties")
-    if high:
-        ledger.note("model", f"{file}: heights, which {high} features have, are taken as metres; depths count from there")
-
-
-def _chosen(properties: Mapping[str, Any], where: Mapping[str, str]) -> bool:
-    """Return whether every property asked for has the value given, or one of several parted by commas."""
-    for key, wanted in where.items():
-        found = properties.get(key)
-        if ("" if found is None else str(found)) not in (wanted, *(value.strip() for value in wanted.split(","))):
-            return False
-    return True
-
-
-def _line(places: Any, where: str) -> Floats:
-    """Return longitude, latitude (or easting, northing) and height, 0 where there is none, of each point of a line."""
-    try:
-        line = np.array([[float(p[0]), float(p[1]), float(p[2]) if len(p) > 2 else 0.0] for p in places], float)
-    except (TypeError, ValueError, IndexError, KeyError, OverflowError):
-        raise FormatError(where, "coordinates that are not pairs of numbers", "pairs of numbers", hint="export the trace again") from None
-    if line.ndim != 2 or not np.isfinite(line).all():
-        raise FormatError(where, "a line without points, or with numbers that are not finite", "finite points", hint="export it again")
-    return line
-
-
-def _value(properties: Mapping[str, Any], wanted: str) -> tuple[Any, float]:
-    """Return what a feature says of one thing, None where nothing, and the factor to our unit."""
-    for key, factor in PROPERTIES[wanted].items():
-        if properties.get(key) not in (None, ""):
-            return properties[key], factor
-    return None, 1.0
-
-
-def _text(properties: Mapping[str, Any], wanted: str) -> str:
-    value, _ = _value(properties, wanted)
-    return "" if value is None else str(value).strip()
-
-
-def _number(properties: Mapping[str, Any], wanted: str, where: str, low: float, high: float) -> float | None:
-    value, factor = _value(properties, wanted)
-    if value is None:
-        return None
-    try:
-        found = float(value if not isinstance(value, bool) else "") * factor
-    except (TypeError, ValueError):
-        raise TableError(where, f"{wanted} {value!r}", "a number", hint="write a number without unit") from None
-    if not (math.isfinite(found) and low <= found <= high):
-        raise TableError(where, f"{wanted} {found:g}", f"{low:g} to {high:g}", hint=f"correct {wanted} of that feature")
-    return found
-
-
-def _fault(where: str, properties: Mapping[str, Any], lines: Sequence[Floats], source: str, told: Remarks) -> Fault | None:
+def _fault(feature: LineFeature, told: Remarks) -> Fault | None:
     """Return the fault of one feature; None where it has to be left out, and why among the remarks."""
-    name = _text(properties, "name") or where.rpartition(", ")[2]
-    dip, side = _number(properties, "dip_deg", where, 0.0, 90.0), _side_deg(properties, where)
-    lines = [line for line in lines if len(np.unique(line[:, :2], axis=0)) > 1]
+    where, properties = feature.where, feature.properties
+    name = text_of(properties, "name") or where.rpartition(", ")[2]
+    dip, side = number_of(properties, "dip_deg", where, 0.0, 90.0), _side_deg(properties, where)
+    lines = [line for line in feature.lines if len(np.unique(line[:, :2], axis=0)) > 1]
     if not dip or not lines:
         told.leave_out("of one point" if dip else "without a dip", name)
         return None
@@ -220,18 +188,27 @@ def _fault(where: str, properties: Mapping[str, Any], lines: Sequence[Floats], s
     if told_side and off > VAGUE_DEG:
         told.remark(f"with a dip direction over {VAGUE_DEG:g} deg off, drawn across the chord", "check the direction", "note", name)
     try:
-        surface = _surface(lines, dip, across, _depths_m(properties, where), name, source)
+        surface = _surface(lines, dip, across, _depths_m(properties, where), name, feature.source)
     except SurfaceError as error:
         told.leave_out(f"with {error.found}", name)
         return None
     declared, down_side = _movement(properties, where, name, told), ""
     if dip == 90.0:
         declared, down_side = _on_vertical(declared, across if told_side else None)
-    return Fault(name, surface, declared, _text(properties, "phase"), down_side)
+    return Fault(name, surface, declared, text_of(properties, "phase"), _down_side(properties, where) or down_side)
+
+
+def _down_side(properties: Mapping[str, Any], where: str) -> str:
+    """Return the compass word of the side that went down, "" where none is given."""
+    word = text_of(properties, "down_side").upper()
+    if word and word not in COMPASS_DEG:
+        hint = f"{nearest(word, COMPASS_DEG)}give the side that went down as a compass word"
+        raise TableError(where, f"down_side {word!r}", f"one of {', '.join(COMPASS_DEG)}", hint=hint)
+    return word
 
 
 def _depths_m(properties: Mapping[str, Any], where: str) -> tuple[float, float]:
-    upper, lower = (_number(properties, key, where, 0.0, 1e5) for key in ("upper_depth_m", "lower_depth_m"))
+    upper, lower = (number_of(properties, key, where, 0.0, 1e5) for key in ("upper_depth_m", "lower_depth_m"))
     return upper or 0.0, lower if lower is not None else (upper or 0.0) + LOWER_DEPTH_M
 
 
@@ -254,7 +231,7 @@ def _across_deg(lines: Sequence[Floats], side_deg: float) -> tuple[float, float]
 
 def _side_deg(properties: Mapping[str, Any], where: str) -> float | None:
     """Return the azimuth of the dip, from a compass word or a number; None where none is given or the word says vertical."""
-    text = _text(properties, "dip_direction")
+    text = text_of(properties, "dip_direction")
     if text.upper() in COMPASS_DEG:
         return float(COMPASS_DEG[text.upper()])
     if not text or text.lower() in ("vertical", "v"):
@@ -271,8 +248,8 @@ def _side_deg(properties: Mapping[str, Any], where: str) -> float | None:
 
 def _movement(properties: Mapping[str, Any], where: str, name: str, told: Remarks) -> Sector | None:
     """Return the declared movement: a rake, else a word. Where both are given and differ, that is told."""
-    rake = _number(properties, "rake_deg", where, -360.0, 360.0)
-    word = re.sub(r"\s*[-_/ ]\s*", "-", _text(properties, "sense").lower())
+    rake = number_of(properties, "rake_deg", where, -360.0, 360.0)
+    word = re.sub(r"\s*[-_/ ]\s*", "-", text_of(properties, "sense").lower())
     try:
         said = sector_of_words(word) if word else None
     except ArgumentError as error:
@@ -303,25 +280,3 @@ def _on_vertical(declared: Sector | None, hanging_deg: float | None) -> tuple[Se
 
 def _compass(azimuth_deg: float) -> str:
     return list(COMPASS_DEG)[round(azimuth_deg / 22.5) % 16]
-
-
-def _tell_properties(features: Sequence[tuple[int, dict[str, Any], list[Floats]]], file: str, ledger: Ledger) -> None:
-    """Note which properties were taken for what, and what was assumed where there was none."""
-    used: list[str] = []
-    for wanted, names in PROPERTIES.items():
-        given = [[key for key in names if properties.get(key) not in (None, "")] for _, properties, _ in features]
-        taken = Counter(keys[0] for keys in given if keys)
-        words = [f"{key}{' (km)' * (names[key] == 1000)}{f' ({count})' * (len(taken) > 1)}" for key, count in taken.items()]
-        used += [f"{wanted} from {' and '.join(words)}"] if words else []
-        passed_over = [keys for keys in given if len(keys) > 1]
-        if passed_over:
-            first, *others = passed_over[0]
-            ledger.note(
-                "model",
-                f"{file}: {len(passed_over)} of {len(given)} traces give {wanted} as {first} and {', '.join(others)}; {first} is used",
-            )
-    ledger.note("model", f"{file}: {'; '.join(used) or 'no property that is known'}")
-    lacking = sum(_value(properties, "lower_depth_m")[0] is None for _, properties, _ in features)
-    if lacking:
-        told = f"{lacking} of {len(features)} traces give no lower depth and are drawn {LOWER_DEPTH_M / 1000:g} km down"
-        ledger.note("model", f"{file}: {told}")

@@ -62,7 +62,7 @@ def surface_from_trace(
     shift = 0.0 if dip_deg == 90.0 else 1 / np.tan(dip)
     down = np.column_stack([(depths * shift)[:, None] * towards, -depths])
     vertices = (along[None] + down[:, None]).reshape(-1, 3) + 0.0
-    return Surface(name, vertices, _cells(rows, len(along), _hanging_wall_left(chord, towards)), source)
+    return Surface(name, vertices, grid_cells(rows, len(along), _hanging_wall_left(chord, towards)), source)
 
 
 def mean_dip_direction_deg(trace: ArrayLike, side_deg: float) -> float:
@@ -125,7 +125,8 @@ def _hanging_wall_left(chord: Floats, towards: Floats) -> bool:
     return bool(chord[0] * towards[1] - chord[1] * towards[0] > 0)
 
 
-def _cells(rows: int, columns: int, left: bool) -> NDArray[np.int64]:
+def grid_cells(rows: int, columns: int, left: bool) -> NDArray[np.int64]:
+    """Return the triangles (T, 3) between the points of a grid; row after row lies deeper, wound for a dip to the left or the right."""
     corner = (np.arange(rows - 1)[:, None] * columns + np.arange(columns - 1)).reshape(-1, 1)
     # Seen from the right of the trace, down is across: along, then down, turns towards the left side.
     first, second = corner + [0, 1, columns + 1], corner + [0, columns + 1, columns]

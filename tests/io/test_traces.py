@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from dataclasses import replace
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -60,8 +61,8 @@ def test_properties_choose_traces(tmp_path):
     assert len(read_model(path, where={"state": "X,Y"}).faults) == 2
     with pytest.raises(FormatError, match="found no lines with state=Z"):
         read_model(path, where={"state": "Z"})
-    with pytest.raises(InputError, match=r"for an input without any; wanted GeoJSON traces"):
-        read_model(tmp_path, where={"state": "Z"})
+    with pytest.raises(InputError, match=r"for an input without any; wanted traces: GeoJSON"):
+        read_model(Path(__file__).parents[2] / "meshes" / "faults.csv", where={"state": "Z"})
 
 
 def test_traces_without_a_dip_or_a_side_are_left_out_and_named(tmp_path):
