@@ -35,7 +35,7 @@ PLOTS = (
     ("plunges_svg", "plunges", "Plunges of the axes"),
     ("rose_svg", "rose", "Strikes by area"),
     ("misfits_svg", "misfits", "Declared against predicted slip"),
-    ("reliability_svg", "reliability", "What the probabilities mean: how often they came true on synthetic models"),
+    ("reliability_svg", "reliability", "What the probabilities mean, on synthetic models"),
 )
 
 

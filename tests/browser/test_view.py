@@ -106,6 +106,30 @@ def test_it_starts_without_a_request_or_a_complaint(visit: Visit) -> None:
     assert (picture(visit).std(axis=(0, 1)) > 5).all()
 
 
+def marked_in_plots(visit: Visit) -> set[str]:
+    """Return the rows of the faults that stand out in the net and in the other plots."""
+    told = "() => [...document.querySelectorAll('.plot .fault.picked')].map((each) => each.dataset.fault)"
+    dimmed = "() => [...document.querySelectorAll('.plot .fault:not(.picked)')].every((each) => getComputedStyle(each).opacity < 0.5)"
+    assert visit.page.evaluate(dimmed)
+    return set(visit.page.evaluate(told))
+
+
+def test_a_click_in_the_net_is_followed_by_the_model(visit: Visit) -> None:
+    before = picture(visit)
+    line = visit.page.locator(".plot.net .fault .wide").first
+    fault = line.evaluate("(path) => path.closest('[data-fault]').dataset.fault")
+    middle = line.evaluate(
+        "(path) => { const p = path.getPointAtLength(0.3 * path.getTotalLength()).matrixTransform(path.getScreenCTM());"
+        " return [p.x, p.y]; }"
+    )
+    top = "([x, y]) => document.elementFromPoint(x, y).closest('[data-fault]')?.dataset.fault"
+    fault = visit.page.evaluate(top, middle) or fault  # where planes cross, the one on top is meant
+    visit.page.mouse.click(*middle)
+    assert visit.page.locator("button.fault[aria-current]").get_attribute("data-fault") == fault
+    assert marked_in_plots(visit) == {fault}
+    assert changed(before, picture(visit)).mean() > 0.1
+
+
 def test_a_click_picks_the_fault_that_is_drawn_there(visit: Visit, analysis: Analysis) -> None:
     bare(visit, analysis)
     picks(visit)
@@ -115,6 +139,7 @@ def test_a_click_picks_the_fault_that_is_drawn_there(visit: Visit, analysis: Ana
         click(visit, x, y)
         assert visit.page.evaluate("() => window.told.at(-1)") == {"fault": fault, "from": "scene"}
         assert visit.page.locator("button.fault[aria-current]").get_attribute("data-fault") == str(fault)
+        assert marked_in_plots(visit) == {str(fault)}
         visit.page.locator("#scene canvas").press("Escape")
         assert visit.page.evaluate("() => window.told.at(-1).fault") is None
         show(visit, [fault], False)

@@ -10,7 +10,7 @@ from structviz.report.svg.drawing import circle, colour, drawing, group, path, t
 from structviz.views.palette import VERDICTS
 from structviz.views.reliability import BIN, ReliabilityFault, ReliabilityPoint, build_reliability
 
-LEFT, RIGHT, TOP, BASE, WIDTH = 46.0, 350.0, 26.0, 170.0, 360.0
+LEFT, RIGHT, TOP, BASE, WIDTH = 46.0, 342.0, 32.0, 176.0, 360.0
 HANG, BLOCK = 60.0, 9.0  # room below the axis, and the tallest block
 SHARES = (0.0, 0.25, 0.5, 0.75, 1.0)
 

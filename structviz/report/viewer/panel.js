@@ -42,7 +42,7 @@ export const STYLE = `
 .sv-panel select, .sv-panel button, .sv-panel summary { font: inherit; color: inherit; background: var(--raised, #fff); border: 1px solid var(--hair, #d9d7d0); border-radius: 3px; padding: .14rem .45rem; cursor: pointer; max-width: 13rem; }
 .sv-panel option { background: var(--raised, #fff); color: var(--ink, #22303c); }
 .sv-more { margin-left: auto; }
-.sv-inside { background: color-mix(in srgb, var(--raised, #fff) 94%, transparent); } .sv-more summary { list-style: none; display: block; margin: 0; }
+.sv-inside { background: color-mix(in srgb, var(--raised, #fff) 94%, transparent); } .sv-more summary { list-style: none; display: block; margin: 0; } .sv-more summary::first-letter { text-transform: uppercase; }
 .sv-more summary::-webkit-details-marker { display: none; }
 .sv-more[open] summary { border-color: var(--ink, #22303c); }
 .sv-more { position: relative; } .sv-inside { position: absolute; right: 0; top: calc(100% + .25rem); z-index: 2; border: 1px solid var(--hair, #d9d7d0); border-radius: 3px; text-align: left; padding: .5rem .4rem .4rem; display: grid; grid-template-columns: minmax(0, 1fr); gap: .12rem; width: 18rem; max-width: calc(100vw - 3rem); }
@@ -71,5 +71,5 @@ export const STYLE = `
 .sv-glyph-note { color: var(--quiet, #5b6872); font-size: .75rem; margin-top: .15rem; }
 .sv-heading { font-weight: 600; padding: .3rem .35rem .1rem; }
 .sv-compass { width: 46px; height: 46px; flex: none; }
-@media (max-width: 640px) { .sv-top .sv-row > span:first-child { display: none; } .sv-top { gap: .2rem; } .sv-top > .sv-row { padding: 0; } .sv-panel select { max-width: 8.5rem; } .sv-where { font-size: .72rem; } .sv-inside .sv-row > span:first-child { display: inline !important; } }
+@media (max-width: 640px) { .sv-top .sv-row > span:first-child { display: none; } .sv-top { gap: .2rem; } .sv-top > .sv-row { padding: 0; } .sv-panel select { max-width: 8.5rem; } .sv-where { font-size: .72rem; } .sv-inside .sv-row > span:first-child { display: inline !important; } .sv-wide, .sv-names .coordinate { display: none; } }
 `;

@@ -134,8 +134,8 @@ export function startView(place, data, arrays, tell) {
     element("div", { class: "sv-note", text: "Exaggeration stretches heights alone: angles are then not true." }),
     ...group("Stress glyphs", switches(({ glyphs }) => glyphs)), ...group("Also shown", switches(({ glyphs }) => !glyphs)),
     ...(simplified ? [element("div", { class: "sv-note", text: simplified })] : []));
-  const more = element("details", { class: "sv-more" }, element("summary", { text: "Section, layers" }), inside);
-  const save = element("button", { type: "button", text: "Save picture", onclick: savePicture });
+  const more = element("details", { class: "sv-more" }, element("summary", {}, element("span", { class: "sv-wide", text: "Section, " }), "layers"), inside);
+  const save = element("button", { type: "button", onclick: savePicture, "aria-label": "Save picture" }, "Save", element("span", { class: "sv-wide", text: " picture" }));
   place.append(element("div", { class: "sv-panel sv-top" }, colouring.row, looking.row, save, more), legend, foot.box);
 
   function look(name) {
