@@ -6,6 +6,7 @@ import io
 import random
 import re
 import zipfile
+import zlib
 from collections.abc import Callable
 
 TOKENS = (
@@ -94,7 +95,7 @@ def repacked(content: bytes, chance: random.Random) -> bytes:
     try:
         with zipfile.ZipFile(io.BytesIO(content)) as archive:
             members = [(info.filename, archive.read(info)) for info in archive.infolist() if info.file_size < MOST_INSIDE]
-    except (zipfile.BadZipFile, OSError, NotImplementedError, ValueError):
+    except (zipfile.BadZipFile, zlib.error, OSError, EOFError, RuntimeError, KeyError, ValueError):
         return flipped(content, chance)
     if not members:
         return content

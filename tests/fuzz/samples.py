@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import io
+
 import numpy as np
 
 from structviz.io import FORMATS
@@ -69,4 +71,21 @@ def samples() -> dict[str, Files]:
         # The table under test is the first, which is damaged; the model file that names it is what is read.
         found[name] = {name: content} | {"model.toml": MODEL} | tables | mesh
     found["traces"] = {"a.geojson": TRACES}
+    found["dxf"] = {"a.dxf": faces_in_dxf()}
     return found
+
+
+def faces_in_dxf() -> bytes:
+    """Return DXF text with the triangles of the sheet as 3D faces, on two layers, one of them in a block."""
+    import ezdxf
+
+    document = ezdxf.new()
+    block = document.blocks.new("B")
+    for corners in sheet().vertices[sheet().triangles].tolist():
+        document.modelspace().add_3dface(corners, dxfattribs={"layer": "Fault A"})
+        block.add_3dface(corners, dxfattribs={"layer": "Fault B"})
+    document.modelspace().add_blockref("B", (300, 50, 0))
+    document.layers.add("Fault A")
+    out = io.StringIO()
+    document.write(out)
+    return out.getvalue().encode()
