@@ -33,6 +33,7 @@ class Piece:
     framed: bool = False  # True where the file states its units and datum: the vertices are then metres with up positive
     crs: str = ""  # the reference system the file names
     told: tuple[str, ...] = ()  # what the file holds besides and was not read, the same on every piece of it
+    missed: tuple[str, ...] = ()  # surfaces of the file that may be faults and could not be read, the same on every piece of it
 
 
 @dataclass(frozen=True)

@@ -78,6 +78,9 @@ def pieces_of(ledger: Ledger, path: Path) -> tuple[Piece, ...]:
         ledger.pieces[path] = read_pieces(content_of(ledger, path), ledger.shown(path), files_beside(ledger, path))
         for words in dict.fromkeys(words for piece in ledger.pieces[path] for words in piece.told):
             ledger.note("model", f"{ledger.shown(path)}: {words}")
+        for words in dict.fromkeys(words for piece in ledger.pieces[path] for words in piece.missed):
+            hint = "export that surface in another way if it belongs to the model"
+            ledger.note("model", f"{ledger.shown(path)}: {words}", hint, "warning")
     return ledger.pieces[path]
 
 

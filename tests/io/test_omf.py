@@ -132,7 +132,7 @@ class TestFirst:
         offsets = (np.arange(3.0)[:, None] + np.zeros(3)).ravel()
         content = first([sheet(), grid(offsets, u=(1.0, 1.0), v=(1.0, 1.0))])
         (piece,) = read_pieces(content, "m.omf")
-        assert piece.told == ("'grid' is not read: the order of its offsets is not stated and cannot be known",)
+        assert piece.missed == ("'grid' is not read: the order of its offsets is not stated and cannot be known",)
 
 
 class TestSecond:
@@ -294,4 +294,5 @@ def test_sample_files_of_another_writer(shared_data, name):
     assert (fault.name, fault.surface.triangles.shape, fault.surface.vertices.shape) == ("trisurf", (50, 3), (100, 3))
     told = [finding.message for finding in model.findings]
     assert f"{name}: 'gridsurf' is not read: the order of its offsets is not stated and cannot be known" in told
+    assert any(finding.severity == "warning" and "gridsurf" in finding.message for finding in model.findings)
     assert model.crs == ("EPSG:3857" if "v2" in name else "")

@@ -360,7 +360,22 @@ class TestReferenceSystems:
             made.pieces()
         made.triangles(3, 1, title="in depth")
         (piece,) = made.pieces()
-        assert piece.told == ("'rep' is not read: heights in time, not in length: dips cannot be judged",)
+        words = "'rep' is not read: heights in time, not in length: dips cannot be judged"
+        assert (piece.told, piece.missed) == ((words,), ())
+
+    def test_a_fault_that_is_missed_is_a_warning(self, tmp_path):
+        made = plain().interpretation(4, "Fault B").triangles(5, 4, title="B in time", crs_kind="LocalTime3dCrs")
+        made.interpretation(6, "Top", "HorizonInterpretation")
+        made.triangles(7, 6, title="Top in time", kind="HorizonInterpretation", crs_kind="LocalTime3dCrs")
+        made.triangles(8, 0, title="loose in time", crs_kind="LocalTime3dCrs")
+        (tmp_path / "m.epc").write_bytes(made.epc())
+        (tmp_path / "m.h5").write_bytes(made.h5())
+        found = [finding for finding in read_model(tmp_path / "m.epc").findings if "in time" in finding.message]
+        assert {finding.message.split("'")[1]: finding.severity for finding in found} == {
+            "B in time": "warning",
+            "Top in time": "note",
+            "loose in time": "note",
+        }
 
 
 class TestDeclarations:

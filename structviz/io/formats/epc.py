@@ -66,22 +66,37 @@ def surfaces_of(package: Package) -> list[tuple[Piece, Element, Mesh]]:
     """Return every surface that is read, with the object it comes from; SurfaceError where there is none."""
     meaning = interpretations(package)
     found: list[tuple[Piece, Element, Mesh]] = []
-    skipped: list[str] = []
+    skipped: list[tuple[Element, str]] = []
     for root in objects(package, TRIANGULATED, GRID).values():
         try:
             mesh = mesh_of(package, root)
         except NotRead as error:
-            skipped.append(f"{title_of(root)[:80]!r} is not read: {error}")
+            skipped.append((root, f"{title_of(root)[:80]!r} is not read: {error}"))
             continue
         found.append((piece_of(root, mesh, meaning), root, mesh))
     if not found:
-        what = "; ".join(skipped[:3]) or "no triangulated sets or grids"
+        what = "; ".join(words for _, words in skipped[:3]) or "no triangulated sets or grids"
         raise SurfaceError(package.file, what, "a surface with heights in length", hint=EXPORT)
     others = Counter(kind for kind in package.classes.values() if kind in OTHERS)
-    told = (*package.told, *skipped, *(f"{counted(count, kind)} not read" for kind, count in sorted(others.items())))
     roots = [root for _, root, _ in found]
+    missed = missed_faults(skipped, roots, meaning)
+    noted = [words for _, words in skipped if words not in missed]
+    told = (*package.told, *noted, *(f"{counted(count, kind)} not read" for kind, count in sorted(others.items())))
     used = chosen([piece for piece, _, _ in found], [interpretation_of(root).uuid for root in roots], [title_of(root) for root in roots])
-    return [(replace(piece, told=told), root, mesh) for piece, (_, root, mesh) in zip(used, found, strict=True)]
+    return [(replace(piece, told=told, missed=missed), root, mesh) for piece, (_, root, mesh) in zip(used, found, strict=True)]
+
+
+def missed_faults(skipped: list[tuple[Element, str]], read: list[Element], meaning: dict[str, Element]) -> tuple[str, ...]:
+    """Return the words for what was not read of faults that no other representation shows, or that may be faults."""
+    shown = {interpretation_of(root).uuid for root in read}
+    kinds = [KINDS.get(inner.tag, "other") for inner in meaning.values()]
+    missed = []
+    for root, words in skipped:
+        named = interpretation_of(root)
+        kind = KINDS.get(meaning[named.uuid].tag if named.uuid in meaning else named.kind, "" if not named.uuid else "other")
+        if (kind == "fault" and named.uuid not in shown) or (not kind and "fault" not in kinds):
+            missed.append(words)
+    return tuple(missed)
 
 
 def piece_of(root: Element, mesh: Mesh, meaning: dict[str, Element]) -> Piece:

@@ -13,7 +13,7 @@ import uuid
 import zlib
 from collections import Counter
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Any
 
 import numpy as np
@@ -118,14 +118,14 @@ def pieces(source: Source, project: dict, elements: list[tuple[dict, dict, str]]
     """Return the surfaces among elements (element, geometry, kind) in metres where the unit is known; the others are told."""
     scale = METRES.get(unit.strip().lower().removesuffix("s"), METRES.get(unit.strip().lower()))
     start = vector(project.get("origin"), source.file)
-    found, told = [], []
+    found, told, missed = [], [], []
     others: Counter[str] = Counter()
     for element, body, kind in elements:
         name = str(element.get("name") or "")
         try:
             made = surface_of(source, body, kind)
         except NotRead as error:
-            told.append(f"{name[:80]!r} is not read: {error}")
+            missed.append(f"{name[:80]!r} is not read: {error}")
             continue
         if made is None:
             others[kind[:60]] += 1
@@ -138,8 +138,10 @@ def pieces(source: Source, project: dict, elements: list[tuple[dict, dict, str]]
         told.append(f"unit {unit.strip()[:40]!r} is not known: coordinates are taken as they stand")
     told += [f"{counted(count, kind)} not read" for kind, count in sorted(others.items())]
     if not found:
-        raise SurfaceError(source.file, "; ".join(told[:3]) or "no elements", "a surface of triangles", hint="export the fault surfaces")
-    return tuple(Piece(**{**piece.__dict__, "told": tuple(told)}) for piece in found)
+        raise SurfaceError(
+            source.file, "; ".join([*missed, *told][:3]) or "no elements", "a surface of triangles", hint="export the fault surfaces"
+        )
+    return tuple(replace(piece, told=tuple(told), missed=tuple(missed)) for piece in found)
 
 
 def surface_of(source: Source, body: dict, kind: str) -> tuple[NDArray[np.float64], NDArray[np.int64], tuple[str, ...]] | None:
