@@ -15,7 +15,7 @@ from xml.etree.ElementTree import Element
 
 from structviz.errors import FormatError, InputError
 from structviz.io.format import Beside
-from structviz.io.hdf5 import opened
+from structviz.io.hdf5 import mark_of, opened
 from structviz.io.xml_tree import text_at, tree_of
 from structviz.io.zip_parts import Parts, part, parts_of, unsafe
 
@@ -127,34 +127,39 @@ def external_names(package: Package) -> set[str]:
 
 
 def store(package: Package, target: str, uuid: str = "") -> Any:
-    """Return the HDF5 file of a name, read once. Where there is none of that name, the one named like the package is taken and told."""
+    """Return the HDF5 file that a package names, read once; `uuid` is that of what stands for it in version 2.0.
+
+    Where the name leads out of the folder, or there is no such file, the one named like the package is taken if it carries that UUID, and
+    told: packages are renamed together with their arrays, and some writers name whole paths.
+    """
     if target not in package.stores:
         name = unquote(target)
-        if unsafe(name):
-            hint = "keep the HDF5 file in the folder of the package"
-            raise FormatError(package.file, f"arrays in {name[:120]!r}", "the name of a file beside the package", hint=hint)
-        package.stores[target] = _store(package, name, uuid)
+        try:
+            if unsafe(name):
+                hint = "keep the HDF5 file in the folder of the package"
+                raise InputError(package.file, f"arrays in {name[:120]!r}", "the name of a file beside the package", hint=hint)
+            content, found = package.beside(name), name
+        except InputError as refused:
+            content, found = _renamed(package, name, uuid, refused)
+        package.stores[target] = opened(content, found)
+        stored = mark_of(package.stores[target])
+        if uuid and stored and stored != uuid:
+            package.told.append(f"{found} carries the identifier {stored[:40]}, where the package says {uuid}")
     return package.stores[target]
 
 
-def _store(package: Package, name: str, uuid: str) -> Any:
-    """Return an HDF5 file beside; by its own name, or by that of a package that was renamed together with it."""
+def _renamed(package: Package, name: str, uuid: str, refused: InputError) -> tuple[bytes, str]:
+    """Return the content and name of the HDF5 file named like the package; the refusal of the other where it is not the right one."""
+    other = f"{PurePosixPath(package.file).stem}.h5"
+    if other == name:
+        raise refused
     try:
-        return opened(package.beside(name), name)
-    except FormatError:
-        raise
-    except InputError as missing:
-        other = f"{PurePosixPath(package.file).stem}.h5"
-        if other == name:
-            raise
-        try:
-            found = opened(package.beside(other), other)
-        except InputError:
-            raise missing from None
-    stored = found.attrs.get("uuid", b"")
-    stored = stored.decode("ascii", "replace") if isinstance(stored, bytes) else str(stored)
-    if uuid and stored.lower() != uuid:
-        hint = f"put {name} beside the package"
-        raise FormatError(other, f"the UUID {stored[:40]!r}", f"{uuid}, as the package says of {name}", hint=hint)
-    package.told.append(f"{name} is not there: arrays are taken from {other}")
-    return found
+        content = package.beside(other)
+    except InputError:
+        raise refused from None
+    stored = mark_of(opened(content, other))
+    if stored != (uuid or PurePosixPath(name).name.lower()):  # version 2.2 has no UUID here; its writers may put the name of the file
+        hint = f"put {PurePosixPath(name).name[:80]} beside the package"
+        raise FormatError(other, f"the identifier {stored[:40]!r}", f"{uuid or name[:80]}, which the package names", hint=hint)
+    package.told.append(f"{name[:120]} is not there: arrays are taken from {other}, which carries its identifier")
+    return content, other

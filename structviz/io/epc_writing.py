@@ -134,7 +134,8 @@ def relationships(objects: Sequence[Made]) -> dict[str, str]:
     lines: dict[str, list[str]] = {made.part: [] for made in objects}
     for made in objects:
         if made.external:
-            lines[made.part].append(_relation("Hdf5File", made.external, "externalResource", ' TargetMode="External"'))
+            target = made.external.replace("%", "%25")  # a target is a URI; readers differ on all other letters, so these stay
+            lines[made.part].append(_relation("Hdf5File", target, "externalResource", ' TargetMode="External"'))
         for kind, key, part in made.links:
             proxy = kind == "EpcExternalPartReference"
             lines[made.part].append(_relation(f"_{key}", part, "mlToExternalPartProxy" if proxy else "destinationObject"))

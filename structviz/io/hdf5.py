@@ -13,6 +13,7 @@ from structviz.errors import FormatError, StructvizError
 FILTERS = {1: "deflate", 2: "shuffle", 3: "checksum", 32000: "LZF"}  # numbers: the filter registry of the HDF5 file format
 MOST_RATIO = 1100  # deflate cannot pack tighter
 SPARE = 2**25  # bytes that packed arrays may take beyond ten times the file
+LONGEST_MARK = 256  # bytes of text
 DAMAGED = "the HDF5 file is damaged, cut short or not the one that belongs to it: export both again"
 BROKEN = (OSError, KeyError, ValueError, TypeError, OverflowError, AttributeError, RuntimeError, IndexError, MemoryError)
 
@@ -33,6 +34,22 @@ def opened(content: bytes, file: str) -> Any:
         return h5py.File(io.BytesIO(content), "r")
     except BROKEN as error:
         raise FormatError(file, f"content that is not whole HDF5 ({shortened(error)})", "an HDF5 file", hint=DAMAGED) from None
+
+
+def mark_of(store: Any) -> str:
+    """Return the attribute `uuid` of an open content in small letters, "" where there is none of fixed length.
+
+    Text of variable length lies in a heap, in which the library goes round in circles where it is damaged: it is never read.
+    """
+    try:
+        held = store.attrs.get_id("uuid") if "uuid" in store.attrs else None
+        if held is None or held.dtype.kind != "S" or held.dtype.itemsize > LONGEST_MARK or held.shape != ():
+            return ""
+        found = np.zeros((), held.dtype)
+        held.read(found)
+        return bytes(found[()]).decode("ascii", "replace").strip().lower()
+    except BROKEN:
+        return ""
 
 
 def array_at(store: Any, path: str, count: int, file: str) -> NDArray:

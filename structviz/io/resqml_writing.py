@@ -12,7 +12,9 @@ import re
 import numpy as np
 from numpy.typing import NDArray
 
+from structviz.errors import ArgumentError
 from structviz.io.epc_writing import Made, hdf5_bytes, identifier, package_bytes, plain, proxy_of, reference, stored
+from structviz.io.zip_parts import unsafe
 from structviz.model import Fault, FaultModel
 from structviz.surfaces.surface import Surface
 
@@ -21,7 +23,13 @@ THROWS = {"normal": "normal", "reverse": "reverse"}
 
 
 def package_of_model(model: FaultModel, stem: str) -> dict[str, bytes]:
-    """Return the two files of a package by name, STEM.epc and STEM.h5: every fault and horizon of a model."""
+    """Return the two files of a package by name, STEM.epc and STEM.h5: every fault and horizon of a model.
+
+    ArgumentError for a stem that a package cannot name its arrays by.
+    """
+    if unsafe(f"{stem}.h5"):
+        found = f"a package named {stem[:80]!r}"
+        raise ArgumentError(f"{found}: wanted a plain name, without colons, backslashes or control characters", hint="choose another name")
     proxy = proxy_of(identifier("proxy", model.title, stem), f"{stem}.h5")
     system = _reference_system(model.crs)
     objects = [proxy, system]

@@ -14,6 +14,7 @@ import pytest
 
 from structviz.errors import FormatError, InputError, StructvizError, SurfaceError
 from structviz.io import read_model
+from structviz.io.formats.epc import alone
 from structviz.io.ledger import read_pieces
 
 h5py = pytest.importorskip("h5py")
@@ -153,10 +154,10 @@ class Builder:
                 archive.writestr(name, content)
         return out.getvalue()
 
-    def h5(self, **options):
+    def h5(self, mark=np.bytes_(PROXY), **options):  # noqa: B008
         out = io.BytesIO()
         with h5py.File(out, "w") as store:
-            store.attrs["uuid"] = PROXY
+            store.attrs["uuid"] = mark
             for path, values in self.arrays.items():
                 store.create_dataset(path, data=values, **options)
         return out.getvalue()
@@ -415,7 +416,7 @@ class TestDeclarations:
 class TestHostile:
     def refused(self, content, match, h5=b"", file="m.epc"):
         with pytest.raises(InputError, match=match):
-            read_pieces(content, file, lambda name: {"m.h5": h5}[name])
+            read_pieces(content, file, lambda name: {"m.h5": h5}[name] if name == "m.h5" else alone(name))
 
     @pytest.mark.parametrize("name", ["../x.xml", "/x.xml", "a/../../x", "C:/x", "x\x1b[31m"])
     def test_names_that_leave_the_archive(self, name):
@@ -461,7 +462,21 @@ class TestHostile:
         made = Builder(version)
         made.h5_name = target
         made.depth_crs().interpretation(1).triangles(2, 1)
-        self.refused(made.epc(), "the name of a file beside the package|no file for the arrays", made.h5())
+        other = made.h5().replace(PROXY.encode(), b"7" * len(PROXY))
+        self.refused(made.epc(), "found arrays in|the identifier '7777|no file for the arrays", other)
+        self.refused(made.epc(), "found arrays in|the identifier '7777|no file for the arrays", other, "n.epc")
+
+    @pytest.mark.parametrize("target", ["C:\\models\\m.h5", "/home/me/far/away.h5"])
+    def test_whole_paths_are_never_followed_but_the_file_beside_may_be_the_one(self, target):
+        made = Builder()
+        made.h5_name = target
+        (piece,) = made.depth_crs().interpretation(1).triangles(2, 1).pieces()
+        assert piece.told == (f"{target} is not there: arrays are taken from m.h5, which carries its identifier",)
+
+    def test_another_identifier_is_told(self):
+        made = plain()
+        (piece,) = made.pieces(made.h5().replace(PROXY.encode(), b"7" * len(PROXY)))
+        assert piece.told == (f"m.h5 carries the identifier {'7' * len(PROXY)}, where the package says {PROXY}",)
 
     def test_the_hdf5_file_is_missing(self, tmp_path):
         (tmp_path / "a.epc").write_bytes(plain().epc())
@@ -473,9 +488,11 @@ class TestHostile:
         (tmp_path / "a.epc").write_bytes(made.epc())
         (tmp_path / "a.h5").write_bytes(made.h5())
         model = read_model(tmp_path / "a.epc")
-        assert "a.epc: m.h5 is not there: arrays are taken from a.h5" in [finding.message for finding in model.findings]
+        assert "a.epc: m.h5 is not there: arrays are taken from a.h5, which carries its identifier" in [
+            finding.message for finding in model.findings
+        ]
         (tmp_path / "a.h5").write_bytes(made.h5().replace(PROXY.encode(), b"9" * len(PROXY)))
-        with pytest.raises(InputError, match="the UUID '9999"):
+        with pytest.raises(InputError, match="the identifier '9999"):
             read_model(tmp_path / "a.epc")
 
     def test_a_link_out_of_the_folder(self, tmp_path):
@@ -620,9 +637,10 @@ class TestHostile:
 
 @both
 def test_damage_is_an_error_or_still_a_surface(version):
+    """Text of variable length among the arrays: the library goes round in circles where its heap is damaged, if it is read."""
     made = plain(version).interpretation(3, "Top", "HorizonInterpretation")
     made.grid(4, 3, (2, 3), made.array("r:Points", "Point3d", "/g/points", np.arange(18.0)))
-    good, chance = (made.epc(compression=zipfile.ZIP_STORED), made.h5()), random.Random(11)
+    good, chance = (made.epc(compression=zipfile.ZIP_STORED), made.h5(mark=PROXY)), random.Random(11)
     began, errors = time.perf_counter(), 0
     for turn in range(1500):
         damaged = [bytearray(content) for content in good]
@@ -653,7 +671,7 @@ def test_damaged_words_within_a_whole_archive_are_an_error_or_still_a_surface(ve
     good, held, chance = list(made.objects), made.h5(), random.Random(12)
     words = ["", "-1", "0", "9999999999", "nan", "1e400", "x", "true", "\u00e9", "<a/>", "</", "..", "3"]
     errors = 0
-    for _ in range(1200):
+    for _ in range(600):
         made.objects = list(good)
         for _ in range(chance.choice([1, 1, 2])):
             place = chance.randrange(len(good))
@@ -670,7 +688,7 @@ def test_damaged_words_within_a_whole_archive_are_an_error_or_still_a_surface(ve
         for piece in pieces:
             assert np.isfinite(piece.vertices).all()
             assert 0 <= piece.triangles.min() <= piece.triangles.max() < len(piece.vertices)
-    assert 300 < errors < 1100
+    assert 150 < errors < 560
 
 
 @pytest.mark.parametrize("name", ["resqml_2_0_1_testingPackageCpp.epc", "resqml_2_2_testingPackageCpp22.epc"])

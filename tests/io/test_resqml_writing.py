@@ -14,6 +14,7 @@ import pytest
 
 from structviz.analysis import Settings, run
 from structviz.cli.main import entry
+from structviz.errors import ArgumentError
 from structviz.io import read_model
 from structviz.io.formats.epc import FORMATS, read_beside
 from structviz.io.resqml_writing import package_of_model
@@ -75,6 +76,15 @@ class TestRoundTrip:
         faults = tuple(Fault(name, Surface(name, NODES + [k * 500, 0, 0], CORNERS)) for k, name in enumerate(names))
         back = read_model(put(tmp_path, package_of_model(FaultModel("\x01", faults, crs="a <b> & \x02"), "m")))
         assert sorted(fault.name for fault in back.faults) == ["a b", "c" * 256, "unknown", "unknown (2)"]
+
+    @pytest.mark.parametrize("stem", ["50%41 é", "a b", "a.b", "&<"])
+    def test_any_plain_name_of_the_files(self, stem, tmp_path):
+        assert len(read_model(put(tmp_path, package_of_model(model(), stem))).faults) == 4
+
+    @pytest.mark.parametrize("stem", ["a:b", "a\\b", "a\x07"])
+    def test_names_a_package_cannot_hold(self, stem):
+        with pytest.raises(ArgumentError, match="wanted a plain name"):
+            package_of_model(model(), stem)
 
     def test_the_same_answer_through_a_package(self, tmp_path):
         known = random_model("normal", faults=14, conjugate=11, planted=2, triangles=80, random_state=8).model
