@@ -29,6 +29,7 @@ class Ledger:
     inputs: dict[Path, str] = field(default_factory=dict)
     pieces: dict[Path, tuple[Piece, ...]] = field(default_factory=dict)
     findings: list[Finding] = field(default_factory=list)
+    parts: set[Path] = field(default_factory=set)  # files that were read as part of another one
 
     def shown(self, path: Path) -> str:
         """Return a path as messages and results show it: relative to the folder, with forward slashes."""
@@ -89,6 +90,7 @@ def files_beside(ledger: Ledger, path: Path) -> Beside:
 
     def content(name: str) -> bytes:
         other = inside(ledger, name, ledger.shown(path), path.parent)
+        ledger.parts.add(other.resolve())
         return content_of(ledger, other)
 
     return content

@@ -19,7 +19,7 @@ from structviz.io.line_files import SHOWN as LINE_FORMATS
 from structviz.io.line_files import SUFFIXES as LINE_SUFFIXES
 from structviz.io.line_files import faults_of_files, files_of_lines, with_layer
 from structviz.io.model_file import ModelFile, parsed_model
-from structviz.io.registry import suffixes
+from structviz.io.registry import names_others, suffixes
 from structviz.io.sticks import faults_of_stick_table, is_stick_table
 from structviz.io.striae import read_striae
 from structviz.io.tables import FAULT_COLUMNS, Row, declared, down_side, read_table
@@ -100,8 +100,11 @@ def source_of(file: str, piece: Piece, count: int) -> str:
 def model_of_meshes(ledger: Ledger, paths: list[Path], title: str, progress: Progress | None) -> FaultModel:
     """Return a model of every surface of each file: a horizon where the file says so, else a fault, with a sense where the file has one."""
     found: list[tuple[str, str, Piece, str]] = []
-    for done, path in enumerate(paths):
+    # What names other files is read first: a surface that belongs to a collection in the same folder is not read twice.
+    for done, path in enumerate(sorted(paths, key=lambda path: not names_others(path.suffix))):
         tell(progress, "reading surfaces", done, len(paths))
+        if path.resolve() in ledger.parts:
+            continue
         pieces = pieces_of(ledger, path)
         chosen = without_bounds(ledger, path, pieces)
         found += [(piece.name or path.stem, path.name, piece, source_of(path.name, piece, len(pieces))) for piece in chosen]

@@ -30,6 +30,11 @@ def suffixes(*, writable: bool = False) -> tuple[str, ...]:
     return tuple(suffix for entry in FORMATS for suffix in entry.suffixes if entry.write or not writable)
 
 
+def names_others(suffix: str) -> bool:
+    """Return True for the suffix of a format whose files may name other ones beside them."""
+    return any(entry.read_beside and suffix.lower() in entry.suffixes for entry in FORMATS)
+
+
 def table_text() -> str:
     """Return the table of formats as lines of text."""
     rows = [

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from pathlib import Path, PurePosixPath
 
 from structviz.analysis import Analysis, Progress
+from structviz.io.formats.vtm import collection
 from structviz.report import whole
 from structviz.report.annotated import mesh_files, write_annotated
 from structviz.report.field_files import field_outputs
@@ -22,6 +23,7 @@ from structviz.views import render
 
 RESULTS = "results.json"
 PAGE = "report.html"
+COLLECTION = "faults.vtm"
 
 
 @dataclass(frozen=True)
@@ -90,6 +92,7 @@ def _fill(new: Path, analysis: Analysis, wanted: _Wanted, tell: Progress) -> tup
     for number, result in enumerate(analysis.faults):
         tell("writing meshes", number, len(analysis.faults))
         write_annotated(result, analysis.regimes[result.phase] if analysis.regimes else None, new / meshes[result.fault.name])
+    (new / COLLECTION).write_bytes(collection(meshes))
     _write_text(new / "faults.csv", csv_text(fault_table(analysis)))
     _write_text(new / "pairs.csv", csv_text(pair_table(analysis)))
     drawn, skipped = render(analysis, new, progress=tell) if wanted.pictures else ((), ())

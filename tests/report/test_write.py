@@ -12,6 +12,7 @@ import pytest
 
 from structviz.analysis import Analysis
 from structviz.errors import OutputError
+from structviz.io import read_model
 from structviz.report import whole, write
 from structviz.report.write import checked_target, write_outputs
 
@@ -217,3 +218,11 @@ def test_a_page_that_fails_loses_no_numbers(no_stress: Analysis, tmp_path: Path,
 def test_the_page_is_left_out_where_not_wanted(no_stress: Analysis, tmp_path: Path) -> None:
     assert "report.html" in write_outputs(no_stress, tmp_path / "with", pictures=False).files
     assert "report.html" not in write_outputs(no_stress, tmp_path / "without", pictures=False, page=False).files
+
+
+def test_the_collection_names_every_mesh(analysis: Analysis, tmp_path: Path) -> None:
+    write_outputs(analysis, tmp_path / "out", pictures=False, page=False)
+    model = read_model(tmp_path / "out" / "faults.vtm")
+    assert sorted(fault.name.strip() for fault in model.faults) == sorted(
+        "".join(" " if ord(c) < 32 or ord(c) == 127 else c for c in result.fault.name).strip() for result in analysis.faults
+    )
