@@ -7,6 +7,7 @@ conflicts, 1 where conflicts were found, 2 where the input or the call cannot be
 from __future__ import annotations
 
 import argparse
+import os
 import sys
 from pathlib import Path
 
@@ -59,7 +60,7 @@ def run(args: argparse.Namespace) -> int:
                 page=not args.no_page,
                 field=args.field,
                 depends=depends,
-                package=Path(args.path) if args.path.lower().endswith(".epc") else None,
+                inputs_in=Path(args.path) if os.path.isdir(args.path) else Path(args.path).parent,
                 progress=progress,
             )
     _show(analysis, written, depends, as_json=args.json)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import posixpath
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path, PurePosixPath
@@ -15,11 +16,13 @@ from structviz.analysis import Analysis, FaultResult
 from structviz.errors import InputError, StructvizError
 from structviz.io.epc import Package, external_names, package_of, title_of
 from structviz.io.format import Piece
-from structviz.io.formats.epc import sniff, surfaces_of
+from structviz.io.formats.epc import FORMATS, surfaces_of
 from structviz.io.reading import source_of
 from structviz.io.resqml_properties import Host, Values, with_properties
 from structviz.io.resqml_surfaces import TRIANGULATED, Mesh
+from structviz.io.zip_parts import unsafe
 from structviz.report.annotated import VERDICT_CODES, triangle_values
+from structviz.report.names import printable
 
 STEM = "results"
 PROPERTIES = (  # of triangle_values; title in the package, unit, kind among the standard ones
@@ -55,44 +58,59 @@ class _Inputs:
         return content
 
 
-def package_with_results(analysis: Analysis, path: Path, free: Callable[[str], bool]) -> tuple[dict[str, bytes], tuple[str, ...]]:
+def package_with_results(analysis: Analysis, folder: Path, free: Callable[[str], bool]) -> tuple[dict[str, bytes], tuple[str, ...]]:
     """Return the files of a package with results by name, and in words what is missing.
 
-    They are results.epc, a copy of the package at `path` with values on its triangles, the HDF5 file of these, and copies of the HDF5
-    files that it names. Nothing comes back for a path that is no package. `free` says whether a name may be used in the folder.
+    They are results.epc, a copy of the one package among the inputs, with values on its triangles, the HDF5 file of these, and copies
+    of the HDF5 files that it names. Nothing comes back where no input is a package. `folder` is where the paths of the inputs begin;
+    `free` says whether a name may be used beside the other outputs.
     """
-    inputs = _Inputs(path.parent, {entry.path: entry.sha256 for entry in analysis.model.inputs})
+    names = [entry.path for entry in analysis.model.inputs if entry.path.lower().endswith(FORMATS[0].suffixes)]
+    if len(names) != 1:
+        return {}, (f"no {STEM}.epc was written: the model is of {len(names)} packages",) if names else ()
+    inputs = _Inputs(folder, {entry.path: entry.sha256 for entry in analysis.model.inputs})
     try:
-        content = inputs.read(path.name)
-        if not sniff(content):
-            return {}, ()
-        package = package_of(content, path.name, inputs.read)
-        values, missing = _values(analysis, package)
-        if not values:
-            return {}, missing
-        copies, strangers = _copies(package, inputs, free)
-        named = external_names(package)
-        h5_name = _free_name(lambda name: free(name) and name not in named)
-        epc, h5 = with_properties(content, path.name, values, h5_name)
+        return _with_results(analysis, names[0], inputs, free)
     except StructvizError as error:
         return {}, (f"no {STEM}.epc was written: {error.message}",)
+
+
+def _with_results(analysis: Analysis, file: str, inputs: _Inputs, free: Callable[[str], bool]) -> tuple[dict[str, bytes], tuple[str, ...]]:
+    content = inputs.read(file)
+    if not FORMATS[0].sniff(content):
+        return {}, ()
+    package = package_of(content, file, lambda name: inputs.read(_beside(file, name)))
+    values, missing = _values(analysis, package)
+    if not values:
+        return {}, missing
+    copies, strangers = _copies(package, inputs, free)
+    named = external_names(package)
+    h5_name = _free_name(lambda name: free(name) and name not in named)
+    epc, h5 = with_properties(content, file, values, h5_name)
     return {f"{STEM}.epc": epc, h5_name: h5} | copies, (*missing, *strangers)
+
+
+def _beside(file: str, name: str) -> str:
+    """Return a file named in another as the inputs name it."""
+    return posixpath.normpath(posixpath.join(posixpath.dirname(file), name))
 
 
 def _values(analysis: Analysis, package: Package) -> tuple[list[tuple[Host, list[Values]]], tuple[str, ...]]:
     """Return the representation of each fault with its values, and in words which have none."""
     surfaces = surfaces_of(package)
     by_source = {source_of(package.file, piece, len(surfaces)): (piece, root, mesh) for piece, root, mesh in surfaces}
-    found, missing = [], []
+    found: list[tuple[Host, list[Values]]] = []
+    missing, used = [], set()
     for result in analysis.faults:
         known = by_source.get(result.fault.surface.source)
         host = _host(package, known) if known else None
-        if host is None or sum(host.patches) != len(result.fault.surface.triangles):
+        if host is None or host.uuid in used or sum(host.patches) != len(result.fault.surface.triangles):
             missing.append(result.fault.name)
         else:
+            used.add(host.uuid)
             found.append((host, _values_of(analysis, result)))
-    told = (f"{STEM}.epc has no values on {', '.join(missing[:3])}{' and others' if len(missing) > 3 else ''}: not triangulated sets",)
-    return found, told if missing else ()
+    named = ", ".join(printable(name) for name in missing[:3]) + (f" and {len(missing) - 3} more" if len(missing) > 3 else "")
+    return found, (f"{STEM}.epc has no values on {named}: not triangulated sets of their own in it",) if missing else ()
 
 
 def _host(package: Package, known: tuple[Piece, Element, Mesh]) -> Host | None:
@@ -117,12 +135,13 @@ def _values_of(analysis: Analysis, result: FaultResult) -> list[Values]:
 
 def _copies(package: Package, inputs: _Inputs, free: Callable[[str], bool]) -> tuple[dict[str, bytes], tuple[str, ...]]:
     """Return the HDF5 files that were read, by the names the package gives them, and in words those that it names and are not there."""
-    renamed = f"{PurePosixPath(package.file).stem}.h5"
-    read = {name: inputs.contents.get(name, inputs.contents.get(renamed, b"")) for name in map(unquote, package.stores)}
-    found = {name: content for name, content in sorted(read.items()) if free(name)}
-    told = [f"{name}, which has the name of another output" for name in sorted(set(read) - set(found))]
+    renamed = _beside(package.file, f"{PurePosixPath(package.file).stem}.h5")
+    held = inputs.contents
+    read = {name: held.get(_beside(package.file, name), held.get(renamed, b"")) for name in map(unquote, package.stores)}
+    found = {name: content for name, content in sorted(read.items()) if not unsafe(name) and free(name)}
+    told = [f"{name}, which cannot stand beside it under that name" for name in sorted(set(read) - set(found))]
     told += [f"{name}, which holds no surface" for name in sorted(external_names(package) - set(read))]
-    return found, tuple(f"{STEM}.epc also names arrays in {words}: put it beside yourself if you need them" for words in told)
+    return found, tuple(f"{STEM}.epc also names arrays in {printable(words)}: see to it yourself if you need them" for words in told)
 
 
 def _free_name(free: Callable[[str], bool]) -> str:

@@ -43,19 +43,19 @@ def write_outputs(
     page: bool = True,
     field: bool = False,
     depends: Sensitivity | None = None,
-    package: Path | None = None,
+    inputs_in: Path | None = None,
     progress: Progress | None = None,
 ) -> Written:
     """Write results.json, the page, the tables, an annotated mesh a fault and the pictures into a folder; return what was written.
 
     The folder is made, with the folders above it. It may exist if it is empty or holds only an earlier result, which is
     replaced once the new one is complete. `field` adds field.vti and trajectories.vtp, `depends` adds sensitivity.csv and
-    what it holds to results.json; `package`, the RESQML package that was judged, adds results.epc. Raises OutputError, with nothing
-    changed, where it cannot be written or holds other files.
+    what it holds to results.json; `inputs_in`, the folder where the paths of the inputs begin, adds results.epc where one of them
+    is a RESQML package. Raises OutputError, with nothing changed, where it cannot be written or holds other files.
     """
     target = checked_target(folder)
     with complete_or_nothing(target) as new:
-        wanted = _Wanted(pictures, page, field, depends, package)
+        wanted = _Wanted(pictures, page, field, depends, inputs_in)
         files, skipped = _fill(new, analysis, wanted, progress or (lambda text, done, total: None))
     return Written(target, files, skipped)
 
@@ -82,7 +82,7 @@ class _Wanted:
     page: bool
     field: bool
     depends: Sensitivity | None
-    package: Path | None
+    inputs_in: Path | None
 
 
 def _fill(new: Path, analysis: Analysis, wanted: _Wanted, tell: Progress) -> tuple[tuple[str, ...], tuple[str, ...]]:
@@ -103,8 +103,8 @@ def _fill(new: Path, analysis: Analysis, wanted: _Wanted, tell: Progress) -> tup
     if wanted.page:
         tell("writing the page", 0, 1)
         skipped = (*skipped, *_write_page(analysis, new, drawn, wanted.depends))
-    if wanted.package:
-        skipped = (*skipped, *_write_package(analysis, new, wanted.package))
+    if wanted.inputs_in is not None:
+        skipped = (*skipped, *_write_package(analysis, new, wanted.inputs_in))
     files = (RESULTS, *sorted(all_files(new), key=lambda name: ("/" in name, name)))
     _write_text(new / RESULTS, results_text(analysis, meshes=meshes, outputs=files, depends=wanted.depends))
     return files, tuple(skipped)
@@ -130,14 +130,14 @@ def _write_field(analysis: Analysis, new: Path, tell: Progress) -> tuple[str, ..
     return ()
 
 
-def _write_package(analysis: Analysis, new: Path, package: Path) -> tuple[str, ...]:
+def _write_package(analysis: Analysis, new: Path, inputs_in: Path) -> tuple[str, ...]:
     """Write a copy of the package that was judged, with results on its triangles; return what is missing in it."""
     taken = {name.casefold() for name in (RESULTS, *all_files(new))}
 
     def free(name: str) -> bool:
         return not any(str(place).casefold() in taken for place in (PurePosixPath(name), *PurePosixPath(name).parents))
 
-    files, missing = package_with_results(analysis, package, free)
+    files, missing = package_with_results(analysis, inputs_in, free)
     for name, content in files.items():
         (new / name).parent.mkdir(parents=True, exist_ok=True)
         (new / name).write_bytes(content)

@@ -181,7 +181,7 @@ def judged(tmp_path_factory):
     known = random_model("normal", faults=8, conjugate=7, planted=1, triangles=60, random_state=8).model
     path = put(folder, package_of_model(known, "m"))
     analysis = run(read_model(path), Settings(replicates=100))
-    return path, analysis, write_outputs(analysis, folder / "out", pictures=False, page=False, package=path)
+    return path, analysis, write_outputs(analysis, folder / "out", pictures=False, page=False, inputs_in=path.parent)
 
 
 class TestResults:
@@ -243,25 +243,43 @@ class TestResults:
 
     def test_the_same_bytes_again_and_results_of_results(self, judged, tmp_path):
         path, analysis, written = judged
-        again = write_outputs(analysis, tmp_path / "out", pictures=False, page=False, package=path)
+        again = write_outputs(analysis, tmp_path / "out", pictures=False, page=False, inputs_in=path.parent)
         for name in ("results.epc", "results.h5"):
             assert (again.folder / name).read_bytes() == (written.folder / name).read_bytes()
         second = run(read_model(again.folder / "results.epc"), Settings(replicates=100))
-        more = write_outputs(second, tmp_path / "more", pictures=False, page=False, package=again.folder / "results.epc")
+        more = write_outputs(second, tmp_path / "more", pictures=False, page=False, inputs_in=again.folder)
         assert {"results.epc", "results-2.h5", "m.h5"} <= set(more.files)
-        assert more.skipped == (
-            "results.epc also names arrays in results.h5, which holds no surface: put it beside yourself if you need them",
-        )
+        assert more.skipped == ("results.epc also names arrays in results.h5, which holds no surface: see to it yourself if you need them",)
 
     def test_a_file_that_changed_meanwhile_is_told(self, tmp_path):
         path = put(tmp_path, package_of_model(model(), "m"))
         analysis = run(read_model(path), Settings(replicates=100))
         path.with_name("m.h5").write_bytes(b"other")
-        written = write_outputs(analysis, tmp_path / "out", pictures=False, page=False, package=path)
+        written = write_outputs(analysis, tmp_path / "out", pictures=False, page=False, inputs_in=path.parent)
         assert "results.epc" not in written.files
         assert written.skipped == (
             "no results.epc was written: m.h5: found a file that has changed since it was judged; wanted the same file",
         )
+
+    def test_a_table_of_faults_of_a_package(self, tmp_path):
+        (tmp_path / "sub").mkdir()
+        put(tmp_path / "sub", package_of_model(model(), "m"))
+        rows = "name,surface,sense\none,sub/m.epc#B,normal\ntwo,sub/m.epc#C,reverse\nthree,sub/m.epc#B,normal\n"
+        (tmp_path / "faults.csv").write_text(rows)
+        analysis = run(read_model(tmp_path / "faults.csv"), Settings(replicates=100))
+        written = write_outputs(analysis, tmp_path / "out", pictures=False, page=False, inputs_in=tmp_path)
+        assert written.skipped == ("results.epc has no values on three: not triangulated sets of their own in it",)
+        with zipfile.ZipFile(written.folder / "results.epc") as archive:
+            added = [archive.read(name).decode() for name in archive.namelist() if name.startswith("obj_CategoricalProperty")]
+        assert sorted(re.search(r"<r:SupportingRepresentation>.*?<e:Title>(\w)</e:Title>", text)[1] for text in added) == ["B", "C"]
+        assert (written.folder / "m.h5").read_bytes() == (tmp_path / "sub" / "m.h5").read_bytes()
+
+    def test_two_packages_are_told(self, tmp_path):
+        for stem in "ab":
+            put(tmp_path, package_of_model(model(), stem))
+        analysis = run(read_model(tmp_path), Settings(replicates=100))
+        written = write_outputs(analysis, tmp_path / "out", pictures=False, page=False, inputs_in=tmp_path)
+        assert written.skipped == ("no results.epc was written: the model is of 2 packages",)
 
     def test_check_does_it_for_packages_only(self, tmp_path, capsys):
         path = put(tmp_path, package_of_model(model(), "m"))
@@ -279,7 +297,9 @@ class TestResults:
         for suffix in (".epc", ".h5"):
             (tmp_path / f"{name}{suffix}").write_bytes((shared_data / "open_standard_samples" / f"{name}{suffix}").read_bytes())
         path = tmp_path / f"{name}.epc"
-        written = write_outputs(run(read_model(path), Settings(replicates=100)), tmp_path / "out", pictures=False, page=False, package=path)
+        written = write_outputs(
+            run(read_model(path), Settings(replicates=100)), tmp_path / "out", pictures=False, page=False, inputs_in=path.parent
+        )
         assert written.skipped == ()
         with zipfile.ZipFile(path) as old, zipfile.ZipFile(written.folder / "results.epc") as new:
             digests = [{part: hashlib.sha256(archive.read(part)).digest() for part in old.namelist()} for archive in (old, new)]
