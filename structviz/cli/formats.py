@@ -5,6 +5,7 @@ from __future__ import annotations
 import argparse
 
 from structviz.io import FORMATS
+from structviz.io.line_files import SHOWN as LINE_FORMATS
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -21,4 +22,5 @@ def run(args: argparse.Namespace) -> int:
     for row in rows:
         print("  ".join(cell.ljust(width) for cell, width in zip(row, [*widths, 0])).rstrip())
     print("\nA model is a model file (.toml), a table of faults (.csv), one mesh file, or a folder of these.")
+    print(f"Fault traces and sticks: lines in {LINE_FORMATS};\nsticks also in a table (.csv) of fault, stick, easting, northing, up.")
     return 0

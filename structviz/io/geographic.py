@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 from structviz.errors import FormatError
 
 if TYPE_CHECKING:
-    from pyproj import CRS
+    from pyproj import CRS, Transformer
 
 Floats = NDArray[np.float64]
 
@@ -68,6 +68,19 @@ def known_system(named: str, file: str) -> tuple[CRS, str]:
     return system, named if len(named) < 30 else str(system.name)
 
 
+def transformer_between(source: str, target: str, file: str) -> Transformer:
+    """Return the way from one reference system to another, east before north in both; FormatError where there is none."""
+    from pyproj import CRS, Transformer
+    from pyproj.exceptions import ProjError
+
+    try:
+        return Transformer.from_crs(CRS(source), CRS(target), always_xy=True)
+    except ProjError:  # of which CRSError is one
+        found = f"the reference system {known_system(source, file)[1]}, from which no way leads to {target[:40]}"
+        hint = "correct the reference system of the file, or export the traces as longitude and latitude"
+        raise FormatError(file, found, "a reference system of the Earth", hint=hint) from None
+
+
 def named_system(tree: dict[str, Any], file: str) -> str:
     """Return the reference system that a collection names, as authority:code; "" where it names none."""
     member = tree.get("crs")
@@ -100,8 +113,6 @@ def _about_the_middle(places: Floats, source: str, words: str, file: str) -> Pro
     if east - west > WIDEST_DEG:
         hint = "take one region, for example with --where"
         raise FormatError(file, f"traces over {east - west:.0f} deg of longitude", f"{WIDEST_DEG:g} deg at most", hint=hint)
-    from pyproj import CRS, Transformer
-
     middle = (west + east) / 2, (south + north) / 2
     if east - west <= WIDE_DEG and south > -80.0 and north < 84.0:
         column = math.floor((middle[0] + 180.0) / 6.0)
@@ -113,7 +124,7 @@ def _about_the_middle(places: Floats, source: str, words: str, file: str) -> Pro
         target = f"+proj=tmerc +lat_0={middle[1]:.4f} +lon_0={meridian:.4f} +k=0.9996 +datum=WGS84 +units=m"
         told, meridian = f"{words} projected to a transverse Mercator about the middle of the data ({target})", middle[0]
     turn = max(east - meridian, meridian - west) * math.sin(math.radians(max(abs(south), abs(north))))
-    transformer = Transformer.from_crs(CRS(source), CRS(target), always_xy=True)
+    transformer = transformer_between(source, target, file)
 
     def metres(line: Floats) -> Floats:
         return np.stack(transformer.transform(line[:, 0], line[:, 1]), 1)

@@ -29,7 +29,7 @@ NEEDED_PARTS = PARTS[:3]
 MOST_UNPACKED = 2**30  # bytes of one part of a zipped Shapefile
 LINES = ("LineString", "Curve", "Unknown", "Geometry")  # of a layer: kinds that may hold lines
 DAMAGED = "the file is damaged or cut short: export it again"
-BROKEN = (RuntimeError, ValueError, TypeError, KeyError, IndexError, AttributeError, OverflowError, MemoryError)
+BROKEN = (RuntimeError, ValueError, TypeError, KeyError, IndexError, AttributeError, OverflowError, MemoryError, NameError)
 BROKEN_DATABASE = (sqlite3.Error, OverflowError, ValueError)
 
 

@@ -157,7 +157,8 @@ def mesh_files(folder: Path) -> list[Path]:
     )
     meshes = [entry for entry in found if entry.suffix.lower() in known]
     if not meshes:
-        hint = f"name a folder that holds surfaces in one of these formats, traces, or a model.toml or faults.csv:\n{table_text()}"
+        others = "traces (.geojson, .gpkg, .shp), or a model.toml or faults.csv"
+        hint = f"name a folder that holds surfaces in one of these formats, {others}:\n{table_text()}"
         what = f"{len(found)} files, none of them a mesh" if found else "no files"
         raise InputError(folder, what, "mesh files, model.toml or faults.csv", hint=hint)
     return meshes

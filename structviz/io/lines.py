@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from structviz.errors import FormatError
-from structviz.io.geographic import LONGITUDE_LATITUDE, known_system
+from structviz.io.geographic import LONGITUDE_LATITUDE, known_system, transformer_between
 from structviz.io.ledger import Ledger
 
 Floats = NDArray[np.float64]
@@ -91,9 +91,7 @@ def geographic(each: LineSet) -> Iterator[LineFeature]:
     if each.crs in ("", *LONGITUDE_LATITUDE):
         yield from each.features
         return
-    from pyproj import Transformer
-
-    turned = Transformer.from_crs(known_system(each.crs, each.file)[0], "EPSG:4326", always_xy=True)
+    turned = transformer_between(each.crs, "EPSG:4326", each.file)
     for feature in each.features:
         lines = tuple(np.column_stack([*turned.transform(line[:, 0], line[:, 1]), line[:, 2]]) for line in feature.lines)
         if not all(np.isfinite(line).all() for line in lines):

@@ -24,6 +24,7 @@ Integers = NDArray[np.int64]
 COMPARED = 17  # points of each stick by which distances between sticks are taken
 FEWEST, MOST = 9, 400  # points along a stick after resampling
 MOST_CELLS = 50_000  # of one surface by filling gaps between sticks
+FARTHEST_M = 1e9  # no map is so wide, and squares of far larger numbers overflow
 MOST_STICKS = 2000  # distances are taken between all pairs
 WIDE = 3.0  # times the median spacing: a gap that is told
 
@@ -101,6 +102,9 @@ def _points(stick: ArrayLike, name: str) -> Floats:
     if points.ndim != 2 or points.shape[1] != 3 or not np.isfinite(points).all():
         found = f"a stick of shape {points.shape}" + ("" if np.isfinite(points).all() else " with numbers that are not finite")
         raise SurfaceError(name, found, "finite points of easting, northing and up", hint="correct the stick")
+    if points.size and np.abs(points).max() > FARTHEST_M:
+        found = f"a stick with a coordinate of {np.abs(points).max():g}"
+        raise SurfaceError(name, found, f"places within {FARTHEST_M:g} m", hint="correct the stick; coordinates are metres")
     return points[np.concatenate([[True], (np.diff(points, axis=0) != 0).any(1)])[: len(points)]] + 0.0
 
 

@@ -3,6 +3,10 @@
 from __future__ import annotations
 
 import io
+import tempfile
+import warnings
+from importlib.util import find_spec
+from pathlib import Path
 
 import numpy as np
 
@@ -42,6 +46,9 @@ TRACES = b"""{"type": "FeatureCollection", "features": [
   "upper_depth_km": 0, "lower_depth_km": 10},
  "geometry": {"type": "MultiLineString", "coordinates": [[[-117.9, 38.0], [-117.9, 38.1]], [[-117.9, 38.1], [-117.88, 38.2]]]}}]}
 """
+STICKS = b"fault,stick,easting,northing,up,sense\n" + b"".join(
+    b"A,%d,%d,%d,%d,normal\n" % (k, 500000 + 50 * k + 400 * j, 4000000 + 900 * k, -700 * j) for k in range(4) for j in range(4)
+)
 
 
 def sheet() -> Surface:
@@ -72,7 +79,28 @@ def samples() -> dict[str, Files]:
         found[name] = {name: content} | {"model.toml": MODEL} | tables | mesh
     found["traces"] = {"a.geojson": TRACES}
     found["dxf"] = {"a.dxf": faces_in_dxf()}
+    found["sticks"] = {"sticks.csv": STICKS}
+    if find_spec("pyogrio") and find_spec("shapely"):
+        found |= lines()
     return found
+
+
+def lines() -> dict[str, Files]:
+    """Return two traces as a GeoPackage and as a Shapefile, written by GDAL."""
+    import pyogrio
+    import shapely
+
+    shapes = shapely.to_wkb(np.array([shapely.LineString([[x, 38.0], [x + 0.01, 38.1], [x, 38.2]]) for x in (-118.0, -117.9)], object))
+    names = ["name", "dip_deg", "dip_dir", "rake_deg", "lower_km"]
+    columns = [np.array(["T1", "T2"], object), np.array([60.0, 55.0]), np.array([90.0, 270.0]), np.array([-90, -80]), np.array([10.0, 9.0])]
+    pyogrio.set_gdal_config_options({"OGR_CURRENT_DATE": "2026-01-01T00:00:00Z"})
+    with tempfile.TemporaryDirectory() as folder, warnings.catch_warnings():
+        warnings.simplefilter("ignore")
+        for name in ("a.gpkg", "a.shp"):
+            pyogrio.raw.write(Path(folder, name), shapes, columns, names, geometry_type="LineString", crs="EPSG:4326")
+        found = {path.name: path.read_bytes() for path in Path(folder).iterdir()}
+    whole = {name: found[name] for name in ("a.shp", "a.shx", "a.dbf", "a.prj", "a.cpg")}
+    return {"lines, GeoPackage": {"a.gpkg": found["a.gpkg"]}, "lines, Shapefile": whole}
 
 
 def faces_in_dxf() -> bytes:

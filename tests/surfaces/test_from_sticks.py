@@ -99,6 +99,7 @@ def test_resampling_keeps_ends_and_equal_steps_along_a_straight_line():
         ([[[0, 0, 0], [0, 0, -1]], [[0, 0, -1], [0, 0, 0]]], "1 stick that can be used"),
         ([[[0, 0], [0, 1]], [[1, 0], [1, 1]]], r"a stick of shape \(2, 2\)"),
         ([[[0, 0, np.nan], [0, 1, 0]], [[1, 0, 0], [1, 1, 0]]], "not finite"),
+        ([[[0, 0, 1e300], [0, 1, 0]], [[1, 0, 0], [1, 1, 0]]], r"a coordinate of 1e\+300; wanted places within 1e\+09 m"),
         ([["a"], [[1, 0, 0], [1, 1, 0]]], "no table of numbers"),
     ],
 )
