@@ -23,7 +23,7 @@ Integers = NDArray[np.int64]
 
 COMPARED = 17  # points of each stick by which distances between sticks are taken
 FEWEST, MOST = 9, 400  # points along a stick after resampling
-MOST_CELLS = 50_000  # of one surface by filling gaps between sticks
+MOST_CELLS = 50_000  # of one surface; more only where the sticks themselves have more points
 FARTHEST_M = 1e9  # no map is so wide, and squares of far larger numbers overflow
 MOST_STICKS = 2000  # distances are taken between all pairs
 WIDE = 3.0  # times the median spacing: a gap that is told
@@ -193,7 +193,8 @@ def _lofted(rows: Sequence[Floats], spacing: Floats, name: str, source: str) -> 
     """Return the grid of cells through the rows, with as many rows between them as make the cells about square."""
     length = max(float(np.linalg.norm(np.diff(row, axis=0), axis=1).sum()) for row in rows)
     bends = 2 * max(len(row) for row in rows)
-    count = int(np.clip(max(bends, np.ceil(length / np.median(spacing))), FEWEST, MOST))
+    square = min(np.ceil(length / np.median(spacing)), MOST_CELLS / (2 * len(rows)))
+    count = int(np.clip(max(bends, square), FEWEST, MOST))
     cell = length / (count - 1)
     between = np.clip(np.round(spacing / cell), 1, max(1, MOST_CELLS // (2 * count * len(spacing)))).astype(int)
     points = [resampled(row, count) for row in rows]
