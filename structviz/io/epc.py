@@ -21,6 +21,8 @@ from structviz.io.zip_parts import Parts, part, parts_of, unsafe
 
 CONTENT_TYPES = "[Content_Types].xml"
 CLASS = re.compile(r"application/x-(resqml|eml)\+xml;\s*version=([\d.]+);\s*type=(?:obj_)?(\w+)")
+TIMES, SPARE = 10, 2**28  # bytes of memory that XML, and arrays, may take: so many times the files, and so many more
+BYTES_OF_AN_ELEMENT = 200  # that a parsed element takes, measured
 EXTERNAL = "externalResource"  # last word of the relationship to a file beside
 DAMAGED = "the package is damaged or incomplete: export it again"
 
@@ -48,6 +50,7 @@ class Package:
     files: dict[str, str] = field(default_factory=dict)  # UUID of what stands for a file beside -> its name
     stores: dict[str, Any] = field(default_factory=dict)  # name of file beside -> open HDF5
     told: list[str] = field(default_factory=list)  # what reading noticed of the package as a whole
+    left: dict[str, int] = field(default_factory=dict)  # bytes of memory that XML and arrays may still take
 
 
 def package_of(content: bytes, file: str, beside: Beside) -> Package:
@@ -59,13 +62,27 @@ def package_of(content: bytes, file: str, beside: Beside) -> Package:
         if known:
             name = entry.get("PartName", "").removeprefix("/")
             classes[name], versions[name] = known[3], known[2]
-    return Package(file, parts, classes, versions, beside)
+    return Package(file, parts, classes, versions, beside, left=dict.fromkeys(("XML", "arrays"), TIMES * len(content) + SPARE))
+
+
+def charge(package: Package, what: str, size: int) -> None:
+    """Count bytes against what may be taken of a package; FormatError beyond it: few words may stand for very much."""
+    package.left[what] -= size
+    if package.left[what] < 0:
+        raise FormatError(package.file, f"{what} that unpack to far more than the files", "less", hint=DAMAGED)
+
+
+def xml_part(package: Package, name: str) -> Element:
+    """Return the root of a part, parsed anew."""
+    content = part(package.parts, name)
+    charge(package, "XML", len(content) + BYTES_OF_AN_ELEMENT * (content.count(b"<") - content.count(b"</")))
+    return tree_of(content, f"{package.file}, {name}")
 
 
 def tree(package: Package, name: str) -> Element:
     """Return the root of a part, parsed once."""
     if name not in package.trees:
-        package.trees[name] = tree_of(part(package.parts, name), f"{package.file}, {name}")
+        package.trees[name] = xml_part(package, name)
     return package.trees[name]
 
 
@@ -110,7 +127,7 @@ def _external_name(package: Package, uuid: str) -> str:
             continue
         place = PurePosixPath(name)
         rels = f"{place.parent / '_rels' / place.name}.rels".removeprefix("./")
-        for link in tree_of(part(package.parts, rels), f"{package.file}, {rels}").iter("Relationship"):
+        for link in xml_part(package, rels).iter("Relationship"):
             if link.get("TargetMode") == "External" and link.get("Type", "").endswith(EXTERNAL):
                 return link.get("Target", "")
     raise FormatError(package.file, f"no file for the arrays of {uuid[:40] or 'an object'}", "an external HDF5 part", hint=DAMAGED)
@@ -121,7 +138,7 @@ def external_names(package: Package) -> set[str]:
     found: set[str] = set()
     for name in package.parts.entries:
         if name.endswith(".rels"):
-            links = tree_of(part(package.parts, name), f"{package.file}, {name}").iter("Relationship")
+            links = xml_part(package, name).iter("Relationship")
             found |= {unquote(link.get("Target", "")) for link in links if link.get("TargetMode") == "External"}
     return found
 
@@ -142,6 +159,7 @@ def store(package: Package, target: str, uuid: str = "") -> Any:
         except InputError as refused:
             content, found = _renamed(package, name, uuid, refused)
         package.stores[target] = opened(content, found)
+        package.left["arrays"] += TIMES * len(content)
         stored = mark_of(package.stores[target])
         if uuid and stored and stored != uuid:
             package.told.append(f"{found} carries the identifier {stored[:40]}, where the package says {uuid}")

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from structviz.errors import FormatError
-from structviz.io.epc import DAMAGED, Package, external_name, objects, reference, store
+from structviz.io.epc import DAMAGED, Package, charge, external_name, objects, reference, store
 from structviz.io.hdf5 import array_at
 from structviz.io.xml_tree import kind_of, text_at
 
@@ -47,7 +47,10 @@ def numbers(package: Package, element: Element | None, count: int, what: str) ->
     kind = kind_of(element)
     if kind.endswith(("Hdf5Array", "ExternalArray")):
         inner = element.find("Coordinates" if kind.startswith("Point") else "Values")
-        return stored(package, inner, count, what)
+        found = stored(package, inner, count, what)
+        charge(package, "arrays", 8 * count)  # after the file beside has been opened, which allows for as much as it holds
+        return found
+    charge(package, "arrays", 8 * count)
     if kind.endswith("ConstantArray"):
         checked(whole(element, "Count", package.file), count, what, package.file)
         check_made(count, what, package.file)
@@ -184,6 +187,7 @@ def lattice(package: Package, element: Element, shape: tuple[int, ...]) -> NDArr
     axes = element.findall("Offset") or element.findall("Dimension")
     if len(axes) != len(shape):
         raise FormatError(package.file, f"{len(axes)} axes of a lattice", f"{len(shape)}", hint=DAMAGED)
+    charge(package, "arrays", 24 * int(np.prod(shape, dtype=np.int64)))
     found = np.array(coordinates(element.find("Origin"), package.file)).reshape(1, 3)
     for axis, count in zip(axes, shape, strict=True):
         inner = axis.find("Offset") if axis.find("Offset") is not None else axis.find("Direction")

@@ -11,11 +11,12 @@ from numpy.typing import NDArray
 from structviz.errors import FormatError
 from structviz.io.cells import check_indices, counted, used_only
 from structviz.io.declared_names import declared_of
-from structviz.io.epc import DAMAGED, Package, Reference, objects, reference, title_of
+from structviz.io.epc import DAMAGED, Package, Reference, charge, objects, reference, title_of
 from structviz.io.resqml_arrays import NotRead, grid_of, indices, points, whole
 from structviz.io.resqml_frame import LocalFrame, frame_of, placed
 from structviz.io.xml_tree import text_at
 
+BYTES_OF_A_NODE = 48  # that the triangles of a grid take, two a node
 TRIANGULATED, GRID = "TriangulatedSetRepresentation", "Grid2dRepresentation"
 KINDS = {"FaultInterpretation": "fault", "HorizonInterpretation": "horizon"}
 SENSES = {"normal": "normal", "reverse": "reverse", "thrust": "reverse"}  # kinds of throw that say a sense; all others are only told
@@ -105,6 +106,7 @@ def grid_mesh(package: Package, root: Element) -> Mesh:
     if min(rows, columns) < 2:
         raise NotRead(f"a grid of {rows} x {columns} nodes")
     nodes = points(package, geometry.find("Points"), (rows, columns), reference(geometry.find("LocalCrs")).uuid)
+    charge(package, "arrays", BYTES_OF_A_NODE * rows * columns)
     number = np.arange(rows * columns).reshape(rows, columns)
     a, b, c, d = (block.ravel() for block in (number[:-1, :-1], number[:-1, 1:], number[1:, 1:], number[1:, :-1]))
     triangles = np.stack([a, b, c, a, c, d], axis=1).reshape(-1, 3)

@@ -435,6 +435,26 @@ class TestHostile:
         made.objects[-1] = (*made.objects[-1][:4], made.objects[-1][4] + " " * 30_000_000)
         self.refused(made.epc(), "that unpacks to 30,0", made.h5())
 
+    def test_many_parts_that_each_unpack_to_a_little_less_than_is_noticed(self):
+        made = plain()
+        for number in range(100, 120):
+            made.add("FaultInterpretation", uuid(number), "x", "<a/>" * 200_000)
+        self.refused(made.epc(), "XML that unpack to far more than the files", made.h5())
+
+    def test_one_large_array_used_very_often(self):
+        nodes = np.random.default_rng(1).normal(size=(30_000, 3))
+        made = Builder().depth_crs().triangles(2, 0, ((nodes, CORNERS),))
+        kind, _, version, name, text = made.objects[-1]
+        made.objects += [(kind, uuid(k), version, name, text.replace(f'uuid="{uuid(2)}', f'uuid="{uuid(k)}')) for k in range(3, 600)]
+        self.refused(made.epc(), "arrays that unpack to far more than the files", made.h5())
+
+    def test_many_lattices_of_a_few_words(self):
+        made = plain()
+        for number in range(10, 40):
+            below = made.lattice("r:Points", (0, 0, 0), ((0, 1, 0), 1, 999), ((1, 0, 0), 1, 999))
+            made.grid(number, 0, (1000, 1000), below)
+        self.refused(made.epc(), "arrays that unpack to far more than the files", made.h5())
+
     def test_a_million_parts(self):
         self.refused(plain().epc() + b"PK\x01\x02" * 100_001, "more than 100,000 parts")
 

@@ -28,6 +28,7 @@ from structviz.io.zip_parts import Parts, part, parts_of
 
 PROJECT, PARQUET_INDEX = "project.json", "index.json.gz"
 SPARE = 2**25  # bytes that arrays may unpack to beyond ten times the file
+SPARE_JSON = 2**23  # the same of JSON, which takes twenty times its bytes at worst
 METRES = {"m": 1.0, "metre": 1.0, "meter": 1.0, "km": 1000.0, "ft": 0.3048, "foot": 0.3048, "feet": 0.3048, "us-ft": 1200.0 / 3937.0}
 KINDS = {
     "Int8Array": "i1", "Int16Array": "i2", "Int32Array": "i4", "Int64Array": "i8", "Uint8Array": "u1", "Uint16Array": "u2",
@@ -90,7 +91,7 @@ def read_first(content: bytes, file: str) -> tuple[Piece, ...]:
 
 def read_second(parts: Parts, content: bytes, file: str) -> tuple[Piece, ...]:
     """Return the surfaces of OMF 2 with project.json."""
-    project = parsed(part(parts, PROJECT), file)
+    project = parsed(part(parts, PROJECT, 10 * len(content) + SPARE_JSON), file)
     stated = project.get("metadata")
     about = stated if isinstance(stated, dict) else {}
     source = Source(file, lambda named, row: plain(parts, named, row, file), [10 * len(content) + SPARE])
