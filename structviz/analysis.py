@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from concurrent.futures import Future, ThreadPoolExecutor
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -29,6 +30,7 @@ from structviz.stress.regime import Reading, Regime
 from structviz.stress.replicates import Posterior, bootstrap_counts
 from structviz.stress.shared_causes import with_shared_stress
 from structviz.stress.verdict import Verdict, VerdictLimits, undetermined
+from structviz.surfaces.intersections import Meeting, meetings
 from structviz.surfaces.surface import MeasuredSurface, Stations
 
 __all__ = ["CAUTIONS", "Analysis", "ByPlace", "FaultResult", "Progress", "Settings", "run"]
@@ -73,6 +75,7 @@ class Analysis:
     answer: Answer | None = None  # the stress with its replicates, faults in the order of the model; None where nothing speaks
     comparisons: tuple[Comparison, ...] = ()  # of each regime with wells and earthquakes
     by_place: ByPlace | None = None  # the stress as a field; None where phases are mixed or the stress is loose
+    meetings: tuple[Meeting, ...] = ()  # lines where faults meet, faults by their place in the model
 
     @property
     def conflicting(self) -> tuple[FaultResult, ...]:
@@ -91,6 +94,20 @@ def run(
     settings = settings or Settings()
     tell = progress or (lambda text, done, total: None)
     examined, order = examine(model, settings, tell)
+    with ThreadPoolExecutor(1) as beside:  # nothing waits for the lines where faults meet
+        met = beside.submit(meetings, [(fault.surface.vertices, fault.surface.triangles) for fault in model.faults])
+        return _run(model, settings, limits, tell, examined, order, met)
+
+
+def _run(
+    model: FaultModel,
+    settings: Settings,
+    limits: Mapping[str, float] | None,
+    tell: Progress,
+    examined: Examination,
+    order: NDArray[np.int64],
+    met: Future[tuple[Meeting, ...]],
+) -> Analysis:
     tell("pairing faults", 0, 1)
     subjects, geometric, pairs = pair(examined, settings)
     tell("inferring stress", 0, 1)
@@ -125,6 +142,7 @@ def run(
         found,
         compared,
         place_in_order(place, back) if place else None,
+        met.result(),
     )
 
 

@@ -23,7 +23,7 @@ from structviz.views import palette
 from structviz.views.captions import shortened
 from structviz.views.glyph_layers import GlyphLayer, glyph_layers, middle_station
 from structviz.views.glyphs import stress_glyph
-from structviz.views.scene import StressGlyph, build_scene
+from structviz.views.scene import Scene, StressGlyph, build_scene
 
 MOST_TRIANGLES = 1_000_000  # drawn by the page: 9 MB of file; beyond, surfaces are simplified
 MOST_OF_HORIZONS = 40_000
@@ -71,6 +71,7 @@ def page_data(analysis: Analysis, *, triangles: int | None = None) -> tuple[dict
         "glyphs": [_layer(layer, analysis) for layer in glyph_layers(analysis, scene)],
         "glyphParts": _glyph_parts(store),
         "striae": _striae(analysis, scene.origin),
+        "meetings": _add_meetings(store, scene),
         "steps": STEPS,
         "tolerance": round(tolerance, 2),
         "triangles": [sum(len(r.fault.surface.triangles) for r in analysis.faults), sum(len(each.triangles) for each in drawn)],
@@ -97,6 +98,14 @@ def _add_surfaces(store: _Store, name: str, drawn: tuple[Drawn, ...], origin: ND
     store.add(f"{name}.places", np.concatenate(places) if places else np.zeros(0, np.uint16))
     store.add(f"{name}.corners", np.concatenate(corners) if corners else np.zeros(0, np.int32))
     return boxes
+
+
+def _add_meetings(store: _Store, scene: Scene) -> dict[str, list[int]] | None:
+    """Put the lines where faults meet into the store; return how many points each has, None where there is none."""
+    if not len(scene.meetings):
+        return None
+    store.add("meetings", scene.meetings.reshape(-1, 3).astype(np.float32))
+    return {"counts": [2] * len(scene.meetings)}
 
 
 def _differences(triangles: NDArray[np.int64]) -> NDArray[np.int32]:

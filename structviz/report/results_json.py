@@ -52,6 +52,7 @@ def results(
         "summary": {word: words.count(word) for word in ("consistent", "conflicting", "undetermined")},
         "faults": [_fault(result, (meshes or {}).get(result.fault.name)) for result in analysis.faults],
         "pairs": _pairs(analysis),
+        "meetings": _meetings(analysis),
         "regimes": [_regime(regime) for regime in analysis.regimes],
         "by_place": _by_place(analysis.by_place),
         "readings": [_reading(reading) for reading in analysis.readings],
@@ -161,6 +162,15 @@ def _axes(axes: Floats, cones_deg: Sequence[float] = ()) -> Row:
     for name, cone in zip(AXES, cones_deg):
         rows[name]["cone_deg"] = rounded(cone, 2)
     return rows
+
+
+def _meetings(analysis: Analysis) -> list[Row]:
+    """Return which faults meet; where one ends on another, that one stands first."""
+    names = [result.fault.name for result in analysis.faults]
+    return [
+        {"faults": [names[number] for number in each.surfaces], "kind": each.kind, "length_m": rounded(each.length_m, 1)}
+        for each in analysis.meetings
+    ]
 
 
 def _pairs(analysis: Analysis) -> list[Row]:

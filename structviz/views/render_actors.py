@@ -25,13 +25,14 @@ FILL_ACROSS, FILL_UP, LIFT = 0.84, 0.78, 0.09  # shares of the picture that the 
 def add_actors(plotter: Any, scene: Scene, *, widths: float = 1.0) -> dict[str, list[Any]]:
     """Add everything of a scene that is not words to a plotter; return its actors by what they show.
 
-    Keys are the verdicts ("conflicting", "undetermined", "consistent"), "glyphs" and "frame"; a key without actors has an empty
+    Keys are the verdicts ("conflicting", "undetermined", "consistent"), "glyphs", "meetings" and "frame"; a key without actors has an empty
     list. Line widths, in pixels, are multiplied by `widths`. The mesh of a verdict has the cell array `ROW`, so that a picked
     triangle leads to its surface: `actor.mapper.dataset.cell_data[ROW]`; rims have none.
     """
     plotter.set_background(PAPER)
     actors: dict[str, list[Any]] = {word: _surfaces(plotter, scene, word, widths) for word in reversed(WORDS)}
     actors["glyphs"] = _glyphs(plotter, scene)
+    actors["meetings"] = _meetings(plotter, scene, widths)
     actors["frame"] = [plotter.add_mesh(pv.Line(*line), color=FAINT, line_width=1.5 * widths) for line in frame_lines(scene)]
     return actors
 
@@ -59,6 +60,17 @@ def _glyphs(plotter: Any, scene: Scene) -> list[Any]:
         if mesh is not None:
             actors.append(plotter.add_mesh(mesh, color=colour, smooth_shading=True, split_sharp_edges=True, specular=0.1, ambient=0.3))
     return actors
+
+
+def _meetings(plotter: Any, scene: Scene, widths: float) -> list[Any]:
+    """Add the lines where faults meet as one actor."""
+    count = len(scene.meetings)
+    if not count:
+        return []
+    lines = pv.PolyData(scene.meetings.reshape(-1, 3).astype(np.float32))
+    lines.lines = np.column_stack([np.full(count, 2), np.arange(2 * count).reshape(-1, 2)]).ravel()
+    lines.verts = np.zeros(0, np.int64)
+    return [plotter.add_mesh(lines, color=INK, line_width=2.0 * widths, lighting=False)]
 
 
 def merged(pieces: list[tuple[Floats, NDArray[np.int64]]]) -> Any:

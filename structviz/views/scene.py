@@ -6,7 +6,7 @@ Everything is relative to a float64 origin, so that it survives float32; the ori
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -66,6 +66,7 @@ class Scene:
     view_from_deg: float  # azimuth from which the scene is seen
     counts: tuple[tuple[str, int], ...]
     elevation_deg: float = ELEVATION_DEG  # of the eye over the horizon; 90 is a map
+    meetings: Floats = field(default_factory=lambda: np.zeros((0, 2, 3)))  # (N, 2, 3) lines where faults meet, m from the origin
 
 
 @view("scene", title="Faults by verdict, with the stress they speak for", file_name="scene.png", needs_gl=True, renderer="render_scene")
@@ -89,6 +90,7 @@ def build_scene(analysis: Analysis, *, azimuth_deg: float | None = None, elevati
         view_from_deg=azimuth,
         counts=count_line(analysis),
         elevation_deg=elevation_deg,
+        meetings=np.concatenate([np.zeros((0, 2, 3)), *(meeting.segments - origin for meeting in analysis.meetings)]),
     )
 
 

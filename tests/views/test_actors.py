@@ -26,7 +26,7 @@ def test_actors_hold_every_triangle_and_lead_back_to_its_surface(analysis, plott
 
     scene = build_scene(analysis)
     actors = add_actors(plotter, scene)
-    assert list(actors) == ["consistent", "undetermined", "conflicting", "glyphs", "frame"]
+    assert list(actors) == ["consistent", "undetermined", "conflicting", "glyphs", "meetings", "frame"]
     for word in ("consistent", "undetermined", "conflicting"):
         wanted = {row: len(s.triangles) for row, s in enumerate(scene.surfaces) if s.kind == word}
         rows = actors[word][0].mapper.dataset.cell_data[ROW] if actors[word] else []
