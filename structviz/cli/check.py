@@ -32,6 +32,7 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--json", action="store_true", help="print results.json instead of the summary")
     parser.add_argument("--no-pictures", action="store_true", help="leave the pictures out")
     parser.add_argument("--no-page", action="store_true", help="leave report.html out")
+    parser.add_argument("--glb", action="store_true", help="write the scene for slides too: scene.glb, faults by name and colour")
     parser.add_argument("--field", action="store_true", help="write the stress as a field too: field.vti and trajectories.vtp")
     parser.add_argument(
         "--sensitivity", action="store_true", help="try other choices: which verdicts depend on them, what carries the stress"
@@ -59,6 +60,7 @@ def run(args: argparse.Namespace) -> int:
                 pictures=not args.no_pictures,
                 page=not args.no_page,
                 field=args.field,
+                slides=args.glb,
                 depends=depends,
                 inputs_in=Path(args.path) if os.path.isdir(args.path) else Path(args.path).parent,
                 progress=progress,

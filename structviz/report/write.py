@@ -16,6 +16,7 @@ from structviz.report.field_files import field_outputs
 from structviz.report.html import page_text
 from structviz.report.resqml_results import package_with_results
 from structviz.report.results_json import results_text
+from structviz.report.scene_glb import scene_glb
 from structviz.report.tables import csv_text, fault_table, pair_table, sensitivity_table
 from structviz.report.whole import all_files, complete_or_nothing
 from structviz.scenarios import Sensitivity
@@ -24,6 +25,7 @@ from structviz.views import render
 RESULTS = "results.json"
 PAGE = "report.html"
 COLLECTION = "faults.vtm"
+SLIDES = "scene.glb"
 
 
 @dataclass(frozen=True)
@@ -42,6 +44,7 @@ def write_outputs(
     pictures: bool = True,
     page: bool = True,
     field: bool = False,
+    slides: bool = False,
     depends: Sensitivity | None = None,
     inputs_in: Path | None = None,
     progress: Progress | None = None,
@@ -49,13 +52,13 @@ def write_outputs(
     """Write results.json, the page, the tables, an annotated mesh a fault and the pictures into a folder; return what was written.
 
     The folder is made, with the folders above it. It may exist if it is empty or holds only an earlier result, which is
-    replaced once the new one is complete. `field` adds field.vti and trajectories.vtp, `depends` adds sensitivity.csv and
+    replaced once the new one is complete. `field` adds field.vti and trajectories.vtp, `slides` scene.glb, `depends` sensitivity.csv and
     what it holds to results.json; `inputs_in`, the folder where the paths of the inputs begin, adds results.epc where one of them
     is a RESQML package. Raises OutputError, with nothing changed, where it cannot be written or holds other files.
     """
     target = checked_target(folder)
     with complete_or_nothing(target) as new:
-        wanted = _Wanted(pictures, page, field, depends, inputs_in)
+        wanted = _Wanted(pictures, page, field, depends, inputs_in, slides)
         files, skipped = _fill(new, analysis, wanted, progress or (lambda text, done, total: None))
     return Written(target, files, skipped)
 
@@ -83,6 +86,7 @@ class _Wanted:
     field: bool
     depends: Sensitivity | None
     inputs_in: Path | None
+    slides: bool
 
 
 def _fill(new: Path, analysis: Analysis, wanted: _Wanted, tell: Progress) -> tuple[tuple[str, ...], tuple[str, ...]]:
@@ -100,6 +104,8 @@ def _fill(new: Path, analysis: Analysis, wanted: _Wanted, tell: Progress) -> tup
         _write_text(new / "sensitivity.csv", csv_text(sensitivity_table(wanted.depends)))
     if wanted.field:
         skipped = (*skipped, *_write_field(analysis, new, tell))
+    if wanted.slides:
+        (new / SLIDES).write_bytes(scene_glb(analysis))
     if wanted.page:
         tell("writing the page", 0, 1)
         skipped = (*skipped, *_write_page(analysis, new, drawn, wanted.depends))
