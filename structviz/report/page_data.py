@@ -15,10 +15,10 @@ from numpy.typing import NDArray
 
 from structviz.analysis import Analysis, FaultResult
 from structviz.orientation.planes import slip_vectors
+from structviz.report import page_words as words
 from structviz.report.names import printable
 from structviz.report.page_fields import coded_fields
 from structviz.report.page_geometry import STEPS, Drawn, drawn_surfaces, quantised
-from structviz.report.page_words import headline, regime_name
 from structviz.views import palette
 from structviz.views.captions import shortened
 from structviz.views.glyph_layers import GlyphLayer, glyph_layers, middle_station
@@ -59,7 +59,7 @@ def page_data(analysis: Analysis, *, triangles: int | None = None) -> tuple[dict
     tolerance = max((each.tolerance_m for each in drawn), default=0.0)
     data: dict[str, Any] = {
         "title": printable(analysis.model.title or "model", 200),
-        "headline": headline(analysis),
+        "headline": words.headline(analysis),
         "caution": CAUTION,
         "origin": _numbers(scene.origin),
         "low": _numbers(scene.low),
@@ -139,6 +139,7 @@ def _fault(result: FaultResult, box: dict[str, Any], origin: NDArray) -> dict[st
         "normal": _numbers(result.measured.normal, 5),
         "declared": _slip(result, result.sector.rake_deg) if result.sector else None,
         "predicted": _slip(result, predicted) if predicted is not None else None,
+        "says": {"declared": f"declared {words.declared(result)}", "predicted": f"predicted {words.predicted(result)}"},
     }
 
 
@@ -162,7 +163,7 @@ def _layer(layer: GlyphLayer, analysis: Analysis) -> dict[str, Any]:
     """Return a layer of glyphs; where there are several stresses, the large ones say which each is."""
     glyphs = [_glyph(glyph) for glyph in layer.glyphs]
     if layer.key == "whole" and len(glyphs) > 1:
-        glyphs = [{**glyph, "label": shortened(printable(regime_name(analysis, k)), 18)} for k, glyph in enumerate(glyphs)]
+        glyphs = [{**glyph, "label": shortened(printable(words.regime_name(analysis, k)), 18)} for k, glyph in enumerate(glyphs)]
     return {"key": layer.key, "title": layer.title, "shown": layer.shown, "glyphs": glyphs}
 
 

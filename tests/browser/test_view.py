@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import base64
 import io
 import json
 import re
@@ -55,9 +56,21 @@ def settle(visit: Visit) -> None:
     )
 
 
+PICTURE = """() => {
+  const view = document.querySelector("#scene canvas");
+  const copy = Object.assign(document.createElement("canvas"), { width: view.width, height: view.height });
+  const pen = copy.getContext("2d");
+  pen.fillStyle = getComputedStyle(document.querySelector(".view")).backgroundColor;
+  pen.fillRect(0, 0, copy.width, copy.height);
+  pen.drawImage(view, 0, 0);
+  return copy.toDataURL().split(",")[1];
+}"""
+
+
 def picture(visit: Visit) -> NDArray[np.int64]:
+    """Return what is drawn, (H, W, 3), read from the canvas itself: a screen may lag behind on a busy machine."""
     settle(visit)
-    return np.asarray(Image.open(io.BytesIO(visit.page.locator("#scene canvas").screenshot())).convert("RGB")).astype(np.int64)
+    return np.asarray(Image.open(io.BytesIO(base64.b64decode(visit.page.evaluate(PICTURE)))).convert("RGB")).astype(np.int64)
 
 
 def changed(before: NDArray, after: NDArray) -> NDArray[np.bool_]:
@@ -98,7 +111,7 @@ def picks(visit: Visit) -> None:
 
 
 def click(visit: Visit, x: int, y: int) -> None:
-    visit.page.locator("#scene canvas").click(position={"x": x, "y": y})
+    visit.page.locator("#scene canvas").click(position={"x": x + 0.5, "y": y + 0.5})
 
 
 def test_it_starts_without_a_request_or_a_complaint(visit: Visit) -> None:
@@ -109,7 +122,7 @@ def test_it_starts_without_a_request_or_a_complaint(visit: Visit) -> None:
 def marked_in_plots(visit: Visit) -> set[str]:
     """Return the rows of the faults that stand out in the net and in the other plots."""
     told = "() => [...document.querySelectorAll('.plot .fault.picked')].map((each) => each.dataset.fault)"
-    dimmed = "() => [...document.querySelectorAll('.plot .fault:not(.picked)')].every((each) => getComputedStyle(each).opacity < 0.5)"
+    dimmed = "() => [...document.querySelectorAll('.plot svg:has(.picked) .fault:not(.picked)')].every((each) => getComputedStyle(each).opacity < 0.5)"
     assert visit.page.evaluate(dimmed)
     return set(visit.page.evaluate(told))
 
@@ -184,6 +197,36 @@ def test_a_pick_in_the_list_brings_the_camera_and_an_outline(visit: Visit) -> No
     visit.page.locator("button.fault").first.click()  # lets go: the camera stays, the outline goes
     gone = changed(after, picture(visit)).sum()
     assert 20 < gone < 0.1 * after[..., 0].size
+
+
+def test_a_chosen_fault_shows_its_declared_and_predicted_slip(visit: Visit, analysis: Analysis) -> None:
+    fault = next(k for k, result in enumerate(analysis.faults) if result.verdict.word == "conflicting")
+    bare(visit, analysis)
+    empty = picture(visit)
+    show(visit, [fault], True)
+    before = changed(empty, picture(visit))
+    visit.page.evaluate("() => { document.querySelector('.sv-names').style.visibility = ''; }")
+    visit.page.locator(f"button.fault[data-fault='{fault}']").click()
+    settle(visit)
+    said = visit.page.locator(".sv-names .slip:not([hidden])").all_inner_texts()
+    declared = analysis.faults[fault].fault.declared
+    assert declared is not None
+    assert f"declared {declared.text}" in said
+    assert any(text.startswith("predicted ") for text in said)
+    assert before.sum() > 100
+    visit.page.keyboard.press("Escape")
+    settle(visit)
+    assert visit.page.locator(".sv-names .slip:not([hidden])").count() == 0
+
+
+def test_a_fault_behind_others_shines_through_once_it_is_chosen(visit: Visit, analysis: Analysis) -> None:
+    """Every fault, chosen, changes the picture where it lies, whatever stands before it."""
+    visit.page.evaluate("() => { document.querySelector('.sv-names').style.visibility = 'hidden'; }")
+    for fault in (1, 6, 12):
+        visit.page.evaluate(f"() => document.dispatchEvent(new CustomEvent('structviz:pick', {{detail: {{fault: {fault}}}}}))")
+        chosen = picture(visit)
+        visit.page.evaluate("() => document.dispatchEvent(new CustomEvent('structviz:pick', {detail: {fault: null}}))")
+        assert changed(chosen, picture(visit)).sum() > 150
 
 
 def test_named_views_differ(visit: Visit) -> None:

@@ -1,7 +1,8 @@
 // What can be shown and hidden over the faults, each with its line in the list of layers.
 
 import { Group } from "three";
-import { frameLines, glyphGroup, glyphParts, horizonMesh, lineMaterial, lines, meetingLines, slipLines, striaLines } from "./scene.js";
+import { arrows, flatMaterial } from "./picked.js";
+import { frameLines, glyphGroup, glyphParts, horizonMesh, lineMaterial, lines, meetingLines, slipArrows, striaLines } from "./scene.js";
 
 // Returns the layers in the order of their list: { key, label, object, on, heading?, glyphs? }; those without anything are left out.
 export function makeLayers(data, arrays, theme, size) {
@@ -9,13 +10,14 @@ export function makeLayers(data, arrays, theme, size) {
   const glyphs = data.glyphs.map(({ key, title, glyphs: held, shown }) => ({ key, label: title, object: glyphGroup(held, parts), on: shown, glyphs: held }));
   const made = (key, label, object, on) => ({ key, label, object, on });
   const drawn = (points, name, order) => (points.length ? lines(points, lineMaterial(theme, name), order) : null);
+  const slips = (which, name) => (data.faults.some((fault) => fault[which]) ? arrows(slipArrows(data, which), flatMaterial(theme, name)) : null);
   const met = data.meetings ? drawn(meetingLines(data.meetings, arrays.meetings), "ink", 2) : null;
   const others = [
     made("meetings", "Lines where faults meet", met, true),
     made("horizons", "Horizons", horizonMesh(data, arrays, theme), true),
     made("striae", "Measured slip lines", drawn(striaLines(data, 0.03 * size), "sigma2", 2), true),
-    made("declared", "Declared slip (dark)", drawn(slipLines(data, "declared"), "ink", 2), false),
-    made("predicted", "Predicted slip (ochre)", drawn(slipLines(data, "predicted"), "sigma3", 3), false),
+    made("declared", "Declared slip (dark)", slips("declared", "ink"), false),
+    made("predicted", "Predicted slip (ochre)", slips("predicted", "sigma3"), false),
     made("frame", "Frame", drawn(frameLines(data), "faint", 0), true),
   ];
   const all = [...glyphs, ...others.filter(({ object }) => object)];

@@ -19,40 +19,48 @@ export function makeNames(data, place) {
       const made = element("bdi", { text, class: kind });
       box.append(made);
       labels.set(key, { made, text, kind, width: made.offsetWidth, height: made.offsetHeight });
+      made.hidden = true;
     }
     return labels.get(key);
   };
 
-  function candidates(camera, state, section, visible) {
+  function candidates(camera, state, section, visible, tips) {
     const order = state.picked === null ? wanted : [state.picked, ...wanted.filter((fault) => fault !== state.picked)];
     const faults = order.map((fault) => {
       const at = raised(data.faults[fault].top, state.height);
       return state.shown[fault] && section.keeps(at, state.height) ? { text: data.faults[fault].short, kind: data.faults[fault].verdict, at, picked: fault === state.picked } : null;
     });
     const glyphs = stresses.filter(({ layer }) => visible(layer)).map(({ label, place: at, size }) => ({ text: label, kind: "stress", at: raised(at, state.height).add(new Vector3(0, 0, 1.2 * size)) }));
-    return [...faults.filter(Boolean), ...glyphs, ...(visible("frame") ? corners(data, camera, state.height) : [])];
+    const slips = tips.map(({ text, kind, place: at }) => ({ text, kind, at: raised([...at], state.height) }));
+    const [first, ...rest] = faults.filter(Boolean);
+    return [...(first ? [first] : []), ...slips, ...rest, ...glyphs, ...(visible("frame") ? corners(data, camera, state.height) : [])];
   }
 
   // Shows what fits; `kept` are the words as they stand, for a saved picture.
   const kept = [];
-  function update(camera, state, section, visible) {
+  function update(camera, state, section, visible, tips) {
     kept.length = 0;
     const [width, height] = [place.clientWidth, place.clientHeight];
     for (const { made } of labels.values()) made.hidden = true;
-    for (const { text, kind, at, picked, under } of candidates(camera, state, section, visible)) {
+    for (const { text, kind, at, picked, under } of candidates(camera, state, section, visible, tips)) {
       const { made, width: wide, height: tall } = labelOf(text, kind);
       const seen = at.project(camera);
       const centre = ((seen.x + 1) / 2) * width;
       const x = under === undefined ? centre : Math.min(Math.max(centre, wide / 2 + 5), width - wide / 2 - 5);
-      const y = ((1 - seen.y) / 2) * height + (under ? 3 : -tall - 4);
-      const mine = [x - wide / 2 - 3, y - 2, x + wide / 2 + 3, y + tall + 2];
-      if (mine[0] < 0 || mine[1] < 36 || mine[2] > width || mine[3] > height - 56 || kept.some(({ room }) => mine[0] < room[2] && room[0] < mine[2] && mine[1] < room[3] && room[1] < mine[3])) continue;
+      const middle = ((1 - seen.y) / 2) * height;
+      const [above, below] = [middle - tall - 4, middle + 3];
+      const places = kind.startsWith("slip") ? [above, below] : [under ? below : above];
+      const y = places.find((top) => free(room(x, top, wide, tall), width, height));
+      if (y === undefined) continue;
       made.hidden = false;
       made.classList.toggle("picked", Boolean(picked));
       made.style.transform = `translate(${(x - wide / 2).toFixed(1)}px, ${y.toFixed(1)}px)`;
-      kept.push({ text, kind, x, y, wide, tall, room: mine });
+      kept.push({ text, kind, x, y, wide, tall, taken: room(x, y, wide, tall) });
     }
   }
+
+  const room = (x, y, wide, tall) => [x - wide / 2 - 3, y - 2, x + wide / 2 + 3, y + tall + 2];
+  const free = ([left, top, right, bottom], width, height) => left >= 0 && top >= 36 && right <= width && bottom <= height - 56 && !kept.some(({ taken: [l, t, r, b] }) => left < r && l < right && top < b && t < bottom);
 
   // Letters may be of another size than when a word was measured.
   function measure() {

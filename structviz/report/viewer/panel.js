@@ -66,6 +66,8 @@ export const STYLE = `
 .sv-names bdi { position: absolute; left: 0; top: 0; white-space: nowrap; padding: 0 .3rem; border-radius: 2px; color: var(--ink, #22303c); background: color-mix(in srgb, var(--raised, #fff) 82%, transparent); }
 .sv-names .conflicting { border-bottom: 2px solid var(--conflicting, #a33a1c); }
 .sv-names .picked { font-weight: 600; box-shadow: 0 0 0 1px var(--ink, #22303c); }
+.sv-names .declared { border-bottom: 2px solid var(--ink, #22303c); }
+.sv-names .predicted { border-bottom: 2px solid var(--sigma3, #d9a12b); }
 .sv-names .stress { font-weight: 600; }
 .sv-names .coordinate { background: color-mix(in srgb, var(--raised, #fff) 60%, transparent); color: var(--quiet, #5b6872); font-size: .68rem; font-variant-numeric: tabular-nums; padding: 0; }
 .sv-glyph-note { color: var(--quiet, #5b6872); font-size: .75rem; margin-top: .15rem; }

@@ -1,13 +1,16 @@
 // What the mouse, the fingers and the keys do to the picture.
 
 const STILL = 5; // pixels that a click may wander
+const NEAR = [[0, 0], ...[2, 4].flatMap((far) => [[far, 0], [-far, 0], [0, far], [0, -far]])]; // pixels right and down of a click
 
 // `acts` is { under(x, y), picked(hit), hovered(hit), stop() }, x and y from -1 to 1.
 export function listen(canvas, acts) {
-  const under = (event) => {
+  const under = ({ clientX, clientY }, [right, down] = [0, 0]) => {
     const box = canvas.getBoundingClientRect();
-    return acts.under(((event.clientX - box.left) / box.width) * 2 - 1, 1 - ((event.clientY - box.top) / box.height) * 2);
+    return acts.under(((clientX + right - box.left) / box.width) * 2 - 1, 1 - ((clientY + down - box.top) / box.height) * 2);
   };
+  // A fault seen edge on is a pixel wide: a click beside it is meant for it.
+  const near = (event) => NEAR.reduce((hit, aside) => hit ?? under(event, aside), null);
   let pressed = null;
   canvas.addEventListener("pointerdown", (event) => {
     acts.stop();
@@ -15,7 +18,7 @@ export function listen(canvas, acts) {
   });
   canvas.addEventListener("click", (event) => {
     if (pressed && Math.hypot(event.clientX - pressed[0], event.clientY - pressed[1]) > STILL) return;
-    acts.picked(under(event));
+    acts.picked(near(event));
   });
   let hovering = 0;
   canvas.addEventListener("pointermove", (event) => {

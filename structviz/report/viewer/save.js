@@ -61,8 +61,9 @@ function label(pen, { text, kind, x, y, wide, tall }, theme) {
   }
   const quiet = kind === "coordinate";
   words(pen, text, x, y + tall - (quiet ? 3 : 5), quiet ? 10 : 12, theme.colour(quiet ? "quiet" : "ink"), 400, "center");
-  if (kind !== "conflicting") return;
-  pen.fillStyle = theme.colour("conflicting");
+  const line = { conflicting: "conflicting", "slip declared": "ink", "slip predicted": "sigma3" }[kind];
+  if (!line) return;
+  pen.fillStyle = theme.colour(line);
   pen.fillRect(left, y + tall - 2, wide, 2);
 }
 

@@ -65,22 +65,9 @@ export function glyphGroup(glyphs, parts) {
   return group;
 }
 
-// Arrows of slip at the middle of each fault: declared on one line, predicted beside it; and measured slip lines.
-export function slipLines(data, which) {
-  const points = [];
-  for (const fault of data.faults) {
-    if (!fault[which]) continue;
-    const place = new Vector3(...fault.place).addScaledVector(new Vector3(...fault.normal), 0.02 * fault.size);
-    arrow(points, place, new Vector3(...fault[which]), new Vector3(...fault.normal), 0.35 * fault.size);
-  }
-  return points;
-}
-
-function arrow(points, tail, along, normal, length) {
-  const tip = tail.clone().addScaledVector(along, length);
-  const across = new Vector3().crossVectors(along, normal);
-  points.push(...tail, ...tip);
-  for (const side of [1, -1]) points.push(...tip, ...tip.clone().addScaledVector(along, -0.28 * length).addScaledVector(across, 0.13 * length * side));
+// Arrows of slip at the middle of each fault, a little off its surface: [tail, direction, normal, length].
+export function slipArrows(data, which) {
+  return data.faults.flatMap(({ [which]: along, place, normal, size }) => (along ? [[place.map((value, k) => value + 0.02 * size * normal[k]), along, normal, 0.35 * size]] : []));
 }
 
 export function striaLines(data, length) {

@@ -8,6 +8,7 @@ import { inPieces } from "./idle.js";
 import { grouped, makeLayers } from "./layers.js";
 import { makeNames } from "./names.js";
 import { choice, element, number, slider, STYLE, toggle } from "./panel.js";
+import { makePicked } from "./picked.js";
 import { makePicker } from "./picking.js";
 import { listen, listenToKeys } from "./pointer.js";
 import { makeRims } from "./rims.js";
@@ -41,12 +42,13 @@ export function startView(place, data, arrays, tell) {
   const layers = makeLayers(data, arrays, theme, view.size);
   const { stretched, upright } = grouped(layers);
   const rims = makeRims(data, mesh, theme, () => redraw());
+  const chosen = makePicked(data, mesh, theme);
   const section = makeSection(data);
   const picker = makePicker(data, mesh, view.camera);
   const foot = makeFoot();
   const names = makeNames(data, place);
   const legend = element("div", { class: "sv-panel sv-legend" });
-  const model = new Group().add(mesh, stretched, rims.group);
+  const model = new Group().add(mesh, stretched, rims.group, chosen.group);
   const lamp = new DirectionalLight("#ffffff", 0.42 * Math.PI);
   const scene = new Scene().add(model, upright, new AmbientLight("#ffffff", 0.62 * Math.PI), lamp, lamp.target);
   const visible = (key) => layers.some((layer) => layer.key === key && layer.object.visible);
@@ -63,7 +65,7 @@ export function startView(place, data, arrays, tell) {
     lamp.target.position.copy(view.controls.target);
     renderer.render(scene, view.camera);
     foot.update(view.camera, place.clientWidth);
-    names.update(view.camera, state, section, visible);
+    names.update(view.camera, state, section, visible, chosen.state.tips);
   }
   function fit() {
     const [width, height] = [place.clientWidth, place.clientHeight];
@@ -94,8 +96,12 @@ export function startView(place, data, arrays, tell) {
     box.max.z *= state.height;
     return box;
   };
-  const outline = () => rims.outline(state.picked !== null && state.shown[state.picked] ? state.picked : null);
-  const cutMaterials = [mesh.material, ...rims.materials, ...layers.filter(({ glyphs, key }) => !glyphs && key !== "frame").map(({ object }) => object.material)];
+  function outline() {
+    const fault = state.picked !== null && state.shown[state.picked] ? state.picked : null;
+    chosen.show(fault);
+    rims.outline(fault);
+  }
+  const cutMaterials = [mesh.material, ...rims.materials, ...chosen.materials, ...layers.filter(({ glyphs, key }) => !glyphs && key !== "frame").map(({ object }) => object.material)];
   function cut(text, share) {
     section.set(text, share);
     const planes = section.planes(state.height);
