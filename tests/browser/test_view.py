@@ -122,7 +122,8 @@ def test_it_starts_without_a_request_or_a_complaint(visit: Visit) -> None:
 def marked_in_plots(visit: Visit) -> set[str]:
     """Return the rows of the faults that stand out in the net and in the other plots."""
     told = "() => [...document.querySelectorAll('.plot .fault.picked')].map((each) => each.dataset.fault)"
-    dimmed = "() => [...document.querySelectorAll('.plot svg:has(.picked) .fault:not(.picked)')].every((each) => getComputedStyle(each).opacity < 0.5)"
+    others = "document.querySelectorAll('.plot svg:has(.picked) .fault:not(.picked)')"
+    dimmed = f"() => [...{others}].every((each) => getComputedStyle(each).opacity < 0.5)"
     assert visit.page.evaluate(dimmed)
     return set(visit.page.evaluate(told))
 
