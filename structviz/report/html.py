@@ -11,7 +11,6 @@ import hashlib
 import importlib
 import io
 import json
-import re
 from collections.abc import Callable, Mapping
 from importlib.resources import files
 from string import Template
@@ -22,13 +21,13 @@ from structviz.report import page_words as words
 from structviz.report.markup import Markup, element, joined, plain
 from structviz.report.page_argument import argument, contents, parts_of
 from structviz.report.page_parts import answer, fault_list, other_cards, plain_lines, why_whole
+from structviz.report.svg.compact import compact
 from structviz.scenarios import Sensitivity
 from structviz.views import palette
 from structviz.views.stereonet import build_net
 
-PICTURE_WIDTH = 1200  # pixels; enough for a page of A4 at 160 dots an inch
-JPEG_QUALITY = 82
-FALLBACK = re.compile(r"var\(--([\w-]+), #[0-9a-f]{6}\)")  # colours of plots that stand alone; the page has them all as variables
+PICTURE_WIDTH = 1100  # pixels; enough for a page of A4 at 150 dots an inch
+JPEG_QUALITY = 76
 PLOTS = (
     ("net_svg", "net", "Planes, slip and axes, equal area, lower hemisphere"),
     ("mohr_svg", "mohr", "Shear over normal stress"),
@@ -188,7 +187,7 @@ def _crowding(analysis: Analysis) -> str:
 def _plot(analysis: Analysis, function: str, key: str, caption: str, *, instead: bytes | None = None, note: str = "") -> Markup:
     """Return a plot as a figure, or a picture in its place, or nothing."""
     make = _optional("structviz.report.svg", function)
-    drawn = Markup(FALLBACK.sub(r"var(--\1)", make(analysis))) if make else _picture(instead, caption) if instead else None
+    drawn = Markup(compact(make(analysis))) if make else _picture(instead, caption) if instead else None
     if not drawn:
         return Markup("")
     return element("figure", drawn, element("figcaption", caption + note), class_=f"plot {key}", data_plot=key)

@@ -27,6 +27,7 @@ from structviz.views.scene import Scene, StressGlyph, build_scene
 
 MOST_TRIANGLES = 1_000_000  # drawn by the page: 9 MB of file; beyond, surfaces are simplified
 MOST_OF_HORIZONS = 40_000
+MOST_SQUEEZED = 8_000_000  # bytes; of more, the last 2 % of size would take three times as long
 CAUTION = "structviz: a screening aid. It tests geometry against declared movement, not stress magnitude, stability or hazard."
 
 
@@ -46,7 +47,7 @@ class _Store:
         self._end += len(data)
 
     def deflated(self) -> bytes:
-        return zlib.compress(b"".join(self._pieces), 5)  # 9 is ten times as slow and 5 % smaller
+        return zlib.compress(b"".join(self._pieces), 6 if self._end < MOST_SQUEEZED else 4)
 
 
 def page_data(analysis: Analysis, *, triangles: int | None = None) -> tuple[dict[str, Any], bytes]:
@@ -92,7 +93,7 @@ def _add_surfaces(store: _Store, name: str, drawn: tuple[Drawn, ...], origin: ND
     boxes, places, corners = [], [], []
     for each in drawn:
         steps, low, step = quantised(each.vertices)
-        places.append(np.diff(steps, axis=0, prepend=np.zeros((1, 3), np.uint16)).T.ravel())  # wraps round, and back when it is added up
+        places.append(_step_differences(steps))
         corners.append(_differences(each.triangles))
         boxes.append({"low": _numbers(low - origin), "step": step.tolist(), "vertices": len(steps), "triangles": len(each.triangles)})
     store.add(f"{name}.places", np.concatenate(places) if places else np.zeros(0, np.uint16))
@@ -100,12 +101,18 @@ def _add_surfaces(store: _Store, name: str, drawn: tuple[Drawn, ...], origin: ND
     return boxes
 
 
-def _add_meetings(store: _Store, scene: Scene) -> dict[str, list[int]] | None:
-    """Put the lines where faults meet into the store; return how many points each has, None where there is none."""
+def _add_meetings(store: _Store, scene: Scene) -> dict[str, Any] | None:
+    """Put the lines where faults meet into the store, both ends of each piece; return their box, None where no faults meet."""
     if not len(scene.meetings):
         return None
-    store.add("meetings", scene.meetings.reshape(-1, 3).astype(np.float32))
-    return {"counts": [2] * len(scene.meetings)}
+    steps, low, step = quantised(scene.meetings.reshape(-1, 3))
+    store.add("meetings", _step_differences(steps))
+    return {"low": _numbers(low), "step": step.tolist(), "vertices": len(steps)}
+
+
+def _step_differences(steps: NDArray[np.uint16]) -> NDArray[np.uint16]:
+    """Return steps (V, 3) axis by axis as differences from the one before; they wrap round, and back when they are added up."""
+    return np.diff(steps, axis=0, prepend=np.zeros((1, 3), np.uint16)).T.ravel()
 
 
 def _differences(triangles: NDArray[np.int64]) -> NDArray[np.int32]:

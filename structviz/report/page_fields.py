@@ -37,15 +37,16 @@ FIELDS = (
     Shown("dip_deg", "Dip", "°", 0.0, 90.0, 1.0),
     Shown("predicted_rake_deg", "Predicted rake", "°", -180.0, 180.0, 2.0, cyclic=True),
     Shown("misfit_deg", "Misfit of declared slip", "°", 0.0, 180.0, 2.0),
-    Shown("slip_tendency", "Slip tendency", "of the greatest", 0.0, 1.0, 0.01),
-    Shown("dilation_tendency", "Dilation tendency", "0 shut to 1 open", 0.0, 1.0, 0.01),
+    Shown("slip_tendency", "Slip tendency", "of the greatest", 0.0, 1.0, 0.02),
+    Shown("dilation_tendency", "Dilation tendency", "0 shut to 1 open", 0.0, 1.0, 0.02),
     Shown("pair_distance_m", "Distance to nearest pair", "m", 0.0, 1.0, 1.0),  # as far as the model goes
 )
 
 
 def coded_fields(analysis: Analysis, drawn: Sequence[Drawn]) -> list[tuple[Shown, NDArray[np.uint16]]]:
     """Return those fields that have any value, each with a code for every drawn triangle, fault by fault."""
-    values = [_values(analysis, result, each) for result, each in zip(analysis.faults, drawn, strict=True)]
+    pairs = cKDTree(analysis.pairs.places) if len(analysis.pairs) else None
+    values = [_values(analysis, result, each, pairs) for result, each in zip(analysis.faults, drawn, strict=True)]
     found = []
     for shown in FIELDS:
         whole = np.concatenate([piece[shown.key] for piece in values])
@@ -55,12 +56,12 @@ def coded_fields(analysis: Analysis, drawn: Sequence[Drawn]) -> list[tuple[Shown
     return found
 
 
-def _values(analysis: Analysis, result: FaultResult, drawn: Drawn) -> dict[str, NDArray]:
+def _values(analysis: Analysis, result: FaultResult, drawn: Drawn, pairs: cKDTree | None) -> dict[str, NDArray]:
     """Return the values (T,) of the drawn triangles of one fault, NaN where nothing is known."""
     regime = analysis.regimes[result.phase] if analysis.regimes else None
     values = {**triangle_values(result, regime), "dilation_tendency": _dilation(result, regime)}
     picked = {key: array[drawn.source] for key, array in values.items()}
-    return picked | {"pair_distance_m": _pair_distance_m(analysis, drawn)}
+    return picked | {"pair_distance_m": _pair_distance_m(pairs, drawn)}
 
 
 def _dilation(result: FaultResult, regime: Regime | None) -> NDArray:
@@ -71,11 +72,11 @@ def _dilation(result: FaultResult, regime: Regime | None) -> NDArray:
     return np.where(result.measured.areas_m2 > 0, values, np.nan)
 
 
-def _pair_distance_m(analysis: Analysis, drawn: Drawn) -> NDArray:
+def _pair_distance_m(pairs: cKDTree | None, drawn: Drawn) -> NDArray:
     """Return the distance from the middle of each drawn triangle to the nearest place where two faults were paired, m."""
-    if not len(analysis.pairs):
+    if pairs is None:
         return np.full(len(drawn.triangles), np.nan)
-    return np.asarray(cKDTree(analysis.pairs.places).query(drawn.vertices[drawn.triangles].mean(1))[0])
+    return np.asarray(pairs.query(drawn.vertices[drawn.triangles].mean(1))[0])
 
 
 def _fitted(shown: Shown, values: NDArray) -> Shown:

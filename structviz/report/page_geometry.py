@@ -17,7 +17,7 @@ from structviz.surfaces.surface import Surface
 Floats = NDArray[np.float64]
 Integers = NDArray[np.int64]
 
-STEPS = 16_383  # of a place along each side of the box of its surface: 0.3 m on a fault of 5 km, far less than is seen
+STEPS = 8_191  # of a place along each side of the box of its surface: 0.6 m on a fault of 5 km, less than is seen
 
 
 @dataclass(frozen=True, eq=False)

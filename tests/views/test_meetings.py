@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import zlib
 
 import numpy as np
 import pytest
@@ -44,6 +45,15 @@ def test_results_name_the_faults(analysis) -> None:
 
 
 def test_the_page_carries_them(analysis) -> None:
-    data, _ = page_data(analysis)
-    assert data["meetings"] == {"counts": [2] * len(build_scene(analysis).meetings)}
-    assert data["arrays"]["meetings"]["shape"] == [2 * len(data["meetings"]["counts"]), 3]
+    data, packed = page_data(analysis)
+    box, at = data["meetings"], data["arrays"]["meetings"]
+    differences = np.frombuffer(zlib.decompress(packed), "<u2", 3 * box["vertices"], at["offset"]).reshape(3, -1)
+    ends = box["low"] + np.array(box["step"]) * (np.cumsum(differences, axis=1, dtype=np.uint16).T)
+    scene = build_scene(analysis)
+    np.testing.assert_allclose(ends, scene.meetings.reshape(-1, 3), atol=max(box["step"]) / 2 + 0.006)
+
+
+def test_where_no_faults_meet_the_page_says_nothing() -> None:
+    rows = [("near", CORNERS, "dextral"), ("far", CORNERS + [0, 9000, 0], "dextral")]
+    faults = tuple(Fault(name, Surface(name, corners + ORIGIN, TRIANGLES), sector_of_words(word)) for name, corners, word in rows)
+    assert page_data(run(FaultModel("apart", faults), Settings(replicates=60)))[0]["meetings"] is None

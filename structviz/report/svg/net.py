@@ -19,7 +19,7 @@ Floats = NDArray[np.float64]
 SIZE, MARGIN = 360.0, 22.0
 RADIUS = SIZE / 2 - MARGIN
 DASHES = {"-": None, "--": "5 3", ":": "1.5 2.5"}
-EVERY = 3  # points of a great circle that are drawn: it stays within a quarter of a pixel of itself
+EVERY = 5  # points of a great circle that are drawn: half a unit of 360 from itself at most
 MARKS = ("round", "diamond", "square")
 ORDER = {"consistent": 0, "undetermined": 1, "conflicting": 2}  # what matters most is drawn last
 

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from typing import Any
 
 from structviz.analysis import Analysis
 from structviz.report.svg.drawing import circle, colour, drawing, group, path, text
@@ -58,8 +57,7 @@ def _block(fault: ReliabilityFault, tall: float) -> str:
     wide, gap = BIN * (RIGHT - LEFT), min(1.0, tall / 4)
     x, y = LEFT + fault.column * wide, BASE + 2 + fault.level * tall
     corners = [(x + 0.7, y), (x + wide - 0.7, y), (x + wide - 0.7, y + tall - gap), (x + 0.7, y + tall - gap)]
-    look = VERDICTS[fault.verdict]
-    edge: dict[str, Any] = {"stroke": colour("ink") if fault.verdict == "conflicting" else "none", "stroke_width": look.width / 3}
-    block = path(corners, closed=True, fill=colour(fault.verdict), **edge)
+    edge = {"stroke": colour("ink"), "stroke_width": VERDICTS[fault.verdict].width / 3} if fault.verdict == "conflicting" else {}
+    block = path(corners, closed=True, digits=1, fill=colour(fault.verdict), **edge)
     told = f"{fault.verdict}, {100 * fault.probability:.0f} %: {fault.name}"
     return group([block], title=told, data_fault=fault.row, class_=f"fault {fault.verdict}")

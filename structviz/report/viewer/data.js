@@ -15,7 +15,20 @@ export async function readData() {
   return { data, arrays };
 }
 
-// Turns places (differences of steps, axis by axis, modulo 65536) and corners (differences) of many surfaces into one list of triangles.
+// Turns differences of steps, axis by axis and modulo 65536, into places in a box.
+export function placesOf({ low, step, vertices }, differences) {
+  const at = new Float32Array(vertices * 3);
+  for (let axis = 0; axis < 3; axis++) {
+    let code = 0;
+    for (let k = 0; k < vertices; k++) {
+      code = (code + differences[axis * vertices + k]) & 0xffff;
+      at[3 * k + axis] = low[axis] + step[axis] * code;
+    }
+  }
+  return at;
+}
+
+// Turns places and corners, both as differences, of many surfaces into one list of triangles.
 export function unpack(boxes, places, corners) {
   const total = boxes.reduce((sum, box) => sum + box.triangles, 0);
   const positions = new Float32Array(total * 9);
@@ -23,14 +36,8 @@ export function unpack(boxes, places, corners) {
   let place = 0;
   let corner = 0;
   for (const { low, step, vertices, triangles } of boxes) {
-    const at = new Float32Array(vertices * 3);
-    for (let axis = 0; axis < 3; axis++) {
-      let code = 0;
-      for (let k = 0; k < vertices; k++) {
-        code = (code + places[place++]) & 0xffff;
-        at[3 * k + axis] = low[axis] + step[axis] * code;
-      }
-    }
+    const at = placesOf({ low, step, vertices }, places.subarray(place, place + 3 * vertices));
+    place += 3 * vertices;
     let vertex = 0;
     for (let end = corner + 3 * triangles; corner < end; corner++) {
       vertex += corners[corner];

@@ -1,8 +1,9 @@
 // What can be shown and hidden over the faults, each with its line in the list of layers.
 
 import { Group } from "three";
+import { placesOf } from "./data.js";
 import { arrows, flatMaterial } from "./picked.js";
-import { frameLines, glyphGroup, glyphParts, horizonMesh, lineMaterial, lines, meetingLines, slipArrows, striaLines } from "./scene.js";
+import { frameLines, glyphGroup, glyphParts, horizonMesh, lineMaterial, lines, slipArrows, striaLines } from "./scene.js";
 
 // Returns the layers in the order of their list: { key, label, object, on, heading?, glyphs? }; those without anything are left out.
 export function makeLayers(data, arrays, theme, size) {
@@ -11,7 +12,7 @@ export function makeLayers(data, arrays, theme, size) {
   const made = (key, label, object, on) => ({ key, label, object, on });
   const drawn = (points, name, order) => (points.length ? lines(points, lineMaterial(theme, name), order) : null);
   const slips = (which, name) => (data.faults.some((fault) => fault[which]) ? arrows(slipArrows(data, which), flatMaterial(theme, name)) : null);
-  const met = data.meetings ? drawn(meetingLines(data.meetings, arrays.meetings), "ink", 2) : null;
+  const met = data.meetings ? drawn(placesOf(data.meetings, arrays.meetings), "ink", 2) : null;
   const others = [
     made("meetings", "Lines where faults meet", met, true),
     made("horizons", "Horizons", horizonMesh(data, arrays, theme), true),

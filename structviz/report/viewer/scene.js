@@ -74,17 +74,6 @@ export function striaLines(data, length) {
   return data.striae.flatMap(({ place, along }) => [-1, 1].flatMap((side) => place.map((value, k) => value + (side * length * along[k]) / 2)));
 }
 
-// Lines where faults meet: polylines one after another, each as many points as its count says.
-export function meetingLines({ counts }, places) {
-  const points = [];
-  let at = 0;
-  for (const count of counts) {
-    for (let k = 0; k + 1 < count; k++) points.push(...places.subarray(3 * (at + k), 3 * (at + k + 2)));
-    at += count;
-  }
-  return points;
-}
-
 // The floor of the frame and its posts.
 export function frameLines({ low, high }) {
   const [w, s, b] = low;
