@@ -6,6 +6,7 @@ from structviz.analysis import Analysis
 
 COUNTS = {2: "Two", 3: "Three"}
 WORDS = ("conflicting", "undetermined", "consistent")
+DEPTH = {word: depth for depth, word in enumerate(reversed(WORDS))}  # what matters most is drawn last, or stands outermost
 
 
 def regime_line(analysis: Analysis) -> str:

@@ -1,4 +1,4 @@
-"""Mohr's diagram in reduced stress: shear over normal stress of every station of every fault."""
+"""Mohr's diagram as SVG: shear over normal stress of stations of every fault, in reduced stress."""
 
 from __future__ import annotations
 
@@ -6,31 +6,22 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from structviz.analysis import Analysis, FaultResult
-from structviz.kinematics.slip import shear_and_normal
+from structviz.analysis import Analysis
 from structviz.report.svg.drawing import circle, colour, drawing, group, path, text
-from structviz.stress.regime import Regime
-from structviz.stress.tensor import reduced_tensor
+from structviz.views.mohr import MohrFault, build_mohr
 
 WIDTH, HEIGHT, LEFT, BASE, SCALE = 360.0, 220.0, 24.0, 190.0, 312.0
-OPEN_RATIO = 0.5
 STATIONS = 12  # of a fault that are drawn
-ORDER = {"consistent": 0, "undetermined": 1, "conflicting": 2}
 
 
 def mohr_svg(analysis: Analysis) -> str:
     """Return the diagram for the heaviest regime, values 1, R, 0; with R = 1/2 where the data leave it open, and that said."""
-    if not analysis.regimes:
+    diagrams = build_mohr(analysis, stations=STATIONS)
+    if not diagrams:
         return ""
-    regime = analysis.regimes[0]
-    ratio = regime.shape_ratio.value if regime.shape_ratio else OPEN_RATIO
-    rows = sorted(
-        ((number, result) for number, result in enumerate(analysis.faults) if result.phase == 0),
-        key=lambda row: ORDER[row[1].verdict.word],
-    )
-    points = [_fault(number, result, regime, ratio) for number, result in rows]
-    note = f"R = {ratio:.2f}" if regime.shape_ratio else "R is open: drawn for R = 0.50"
-    return drawing(WIDTH, HEIGHT, [*_circles(ratio), *points, *_words(ratio, note)], title=f"Mohr diagram of reduced stress, {note}")
+    mohr = diagrams[0]
+    parts = [*_circles(mohr.ratio), *map(_fault, mohr.faults), *_words(mohr.ratio, mohr.note)]
+    return drawing(WIDTH, HEIGHT, parts, title=f"Mohr diagram of reduced stress, {mohr.note}")
 
 
 def _circles(ratio: float) -> Iterator[str]:
@@ -42,16 +33,11 @@ def _circles(ratio: float) -> Iterator[str]:
     yield path([(LEFT - 10, BASE), (LEFT + SCALE + 14, BASE)], stroke=colour("ink"), stroke_width=0.8)
 
 
-def _fault(number: int, result: FaultResult, regime: Regime, ratio: float) -> str:
-    stations = result.stations.normals
-    normals = stations[np.linspace(0, len(stations) - 1, min(STATIONS, len(stations))).round().astype(int)]
-    shear, normal = shear_and_normal(reduced_tensor(regime.axes, ratio), normals)
-    word = result.verdict.word
+def _fault(fault: MohrFault) -> str:
+    word = fault.verdict
     size = 2.6 if word == "conflicting" else 1.7
-    dots = [
-        circle(LEFT + SCALE * n, BASE - SCALE * s, size, fill=colour(word), fill_opacity=0.8) for s, n in zip(shear, normal, strict=True)
-    ]
-    return group(dots, title=f"{word}: {result.fault.name}", data_fault=number, class_=f"fault {word}")
+    dots = [circle(LEFT + SCALE * n, BASE - SCALE * s, size, fill=colour(word), fill_opacity=0.8) for n, s in fault.points]
+    return group(dots, title=f"{word}: {fault.name}", data_fault=fault.row, class_=f"fault {word}")
 
 
 def _words(ratio: float, note: str) -> Iterator[str]:

@@ -1,4 +1,4 @@
-"""The plunges of the three axes in a triangle: which class of faulting, and how sure."""
+"""The plunges of the three axes in a triangle as SVG: which class of faulting, and how sure."""
 
 from __future__ import annotations
 
@@ -9,29 +9,26 @@ from numpy.typing import NDArray
 
 from structviz.analysis import Analysis
 from structviz.report.svg.drawing import circle, colour, drawing, group, mark, path, text
+from structviz.views.plunges import PlungesRegime, build_plunges
 
 Floats = NDArray[np.float64]
 
 WIDTH, HEIGHT = 360.0, 300.0
 CORNERS = np.array([(180.0, 34.0), (60.0, 250.0), (300.0, 250.0)])  # sigma1, sigma3, sigma2 upright
-CLOUD = 150  # replicates drawn
 
 
 def plunges_svg(analysis: Analysis) -> str:
-    """Return the triangle with each regime and the cloud of its replicates; a corner is an upright axis.
-
-    The squared sines of the plunges of three perpendicular axes add up to one, so they are shares of the corners.
-    """
-    if not analysis.regimes or analysis.answer is None:
+    """Return the triangle with each regime and the cloud of its replicates; a corner is an upright axis."""
+    regimes = build_plunges(analysis).regimes
+    if not regimes:
         return ""
-    clouds = [_cloud(posterior.frames[:CLOUD]) for posterior in analysis.answer.posteriors]
-    marks = [_regime(regime.axes, regime.name or regime.kind, k) for k, regime in enumerate(analysis.regimes)]
+    clouds = [_cloud(regime.cloud) for regime in regimes]
+    marks = [_regime(regime, number) for number, regime in enumerate(regimes)]
     return drawing(WIDTH, HEIGHT, [*_frame(), *clouds, *marks], title="Plunges of the axes: which of them stands upright")
 
 
-def _place(axes: Floats) -> Floats:
-    """Return the places (..., 2) of frames (..., 3, 3)."""
-    shares = axes[..., 2] ** 2
+def _place(shares: Floats) -> Floats:
+    """Return the places (..., 2) of shares (..., 3) of the corners of sigma1, sigma2, sigma3."""
     return shares[..., [0, 2, 1]] @ CORNERS
 
 
@@ -47,12 +44,12 @@ def _frame() -> Iterator[str]:
     yield text(352, 272, "\u03c32 upright: strike-slip", font_size=12, text_anchor="end")
 
 
-def _cloud(frames: Floats) -> str:
-    return group([circle(x, y, 1.6, fill=colour("faint"), fill_opacity=0.5) for x, y in _place(frames)], class_="cloud")
+def _cloud(shares: Floats) -> str:
+    return group([circle(x, y, 1.6, fill=colour("faint"), fill_opacity=0.5) for x, y in _place(shares)], class_="cloud")
 
 
-def _regime(axes: Floats, name: str, number: int) -> str:
-    x, y = _place(axes)
+def _regime(regime: PlungesRegime, number: int) -> str:
+    (x, y), name = _place(regime.shares), regime.name
     filled = number == 0
     dot = mark(x, y, "round", 5.5, fill=colour("sigma1") if filled else colour("paper"), stroke=colour("sigma1"), stroke_width=1.6)
     return group(
