@@ -15,6 +15,7 @@ from structviz.views.stereonet import Net, NetAxis, NetPlane, NetSlip
 
 FONT = "DejaVu Sans"
 SIGMA_MARKS = ("o", "D", "s")
+EXTENT = 1.13  # of the axes, in radii of the net
 
 
 def draw(net: Net, path: Path) -> None:
@@ -22,23 +23,28 @@ def draw(net: Net, path: Path) -> None:
     figure = Figure(figsize=(9.0, 6.5), dpi=200, facecolor=PAPER)
     FigureCanvasAgg(figure)
     axes = figure.add_axes((0.02, 0.03, 0.64, 0.86))
-    _frame(axes)
-    for plane in sorted(net.planes, key=lambda p: p.verdict == "conflicting"):
-        _plane(axes, plane)
-    for slip in net.slips:
-        _slip(axes, slip)
-    for axis in net.axes:
-        _axis(axes, axis)
-    figure.text(0.03, 0.955, net.title, fontsize=15, color=INK, va="center", weight="bold", family=FONT)
-    figure.text(0.03, 0.912, net.subtitle, fontsize=9, color=INK, va="center", family=FONT)
+    axes.set_xlim(-EXTENT, EXTENT)
+    axes.set_ylim(-EXTENT, EXTENT)
+    paint(axes, net)
+    figure.text(0.03, 0.955, net.title, fontsize=15, color=INK, va="center", weight="bold", family=FONT, parse_math=False)
+    figure.text(0.03, 0.912, net.subtitle, fontsize=9, color=INK, va="center", family=FONT, parse_math=False)
     _key(figure, net)
     figure.savefig(path, metadata={"Software": None})
 
 
+def paint(axes: Axes, net: Net, scale: float = 1.0, paper: str = PAPER) -> None:
+    """Draw a net about the origin, of radius one, into axes with limits; marks and lines are multiplied by `scale`."""
+    _frame(axes)
+    for plane in sorted(net.planes, key=lambda p: p.verdict == "conflicting"):
+        _plane(axes, plane, scale)
+    for slip in net.slips:
+        _slip(axes, slip, scale, paper)
+    for axis in net.axes:
+        _axis(axes, axis, scale)
+
+
 def _frame(axes: Axes) -> None:
     axes.set_aspect("equal")
-    axes.set_xlim(-1.13, 1.13)
-    axes.set_ylim(-1.13, 1.13)
     axes.axis("off")
     axes.add_patch(Circle((0, 0), 1.0, facecolor="white", edgecolor=INK, linewidth=1.2, zorder=0))
     for azimuth in range(0, 360, 10):
@@ -52,39 +58,40 @@ def _frame(axes: Axes) -> None:
         axes.text(1.085 * np.sin(a), 1.085 * np.cos(a), word, ha="center", va="center", fontsize=10, color=INK, family=FONT)
 
 
-def _plane(axes: Axes, plane: NetPlane) -> None:
+def _plane(axes: Axes, plane: NetPlane, scale: float) -> None:
     look = VERDICTS[plane.verdict]
     style = (0, look.dash) if look.dash else "solid"
     depth = 4 if plane.verdict == "conflicting" else 2
-    axes.plot(*plane.circle.T, color=look.colour, linewidth=look.width, linestyle=style, zorder=depth, alpha=0.95)
-    axes.plot(*plane.pole, marker="x", markersize=4.5, color=look.colour, markeredgewidth=max(0.9, look.width / 1.6), zorder=depth)
+    axes.plot(*plane.circle.T, color=look.colour, linewidth=look.width * scale, linestyle=style, zorder=depth, alpha=0.95)
+    axes.plot(*plane.pole, marker="x", markersize=4.5 * scale, color=look.colour, markeredgewidth=max(0.9, look.width / 1.6) * scale, zorder=depth)
 
 
-def _slip(axes: Axes, slip: NetSlip) -> None:
+def _slip(axes: Axes, slip: NetSlip, scale: float, paper: str) -> None:
     """A triangle at the slip line: point down where the hanging wall goes down; hollow for what is declared."""
     look = VERDICTS[slip.verdict]
     big = slip.verdict == "conflicting"
     axes.plot(
-        *slip.point, marker="^" if slip.upward else "v", markersize=8 if big else 4.5, color=look.colour, zorder=6 if big else 3,
-        markerfacecolor=PAPER if slip.declared else look.colour, markeredgewidth=1.5 if big else 0.6,
+        *slip.point, marker="^" if slip.upward else "v", markersize=(8 if big else 4.5) * scale, color=look.colour, zorder=6 if big else 3,
+        markerfacecolor=paper if slip.declared else look.colour, markeredgewidth=(1.5 if big else 0.6) * scale,
     )  # fmt: skip
 
 
-def _axis(axes: Axes, axis: NetAxis) -> None:
+def _axis(axes: Axes, axis: NetAxis, scale: float) -> None:
     """One principal axis with its cone; those of a second phase are hollow and their cones dashed."""
     number, look = axis.number, PHASE_LOOKS[min(axis.phase, len(PHASE_LOOKS) - 1)]
     for line in axis.cone:
-        axes.plot(*line.T, color=SIGMA[number], linewidth=1.4, zorder=7, linestyle=look.line)
+        axes.plot(*line.T, color=SIGMA[number], linewidth=1.4 * scale, zorder=7, linestyle=look.line)
         if look.filled:
             axes.fill(*line.T, color=SIGMA[number], alpha=0.13, zorder=1, linewidth=0)
     face, edge = (SIGMA[number], "white") if look.filled else ("white", SIGMA[number])
     axes.plot(
-        *axis.point, marker=SIGMA_MARKS[number], markersize=10, markerfacecolor=face, markeredgecolor=edge, markeredgewidth=1.2, zorder=8
-    )
+        *axis.point, marker=SIGMA_MARKS[number], markersize=10 * scale, markerfacecolor=face, markeredgecolor=edge,
+        markeredgewidth=1.2 * scale, zorder=8,
+    )  # fmt: skip
     east, north = map(float, axis.point)
     off = 0.075 if east < 0.85 else -0.075
     axes.annotate(
-        axis.label, (east, north), (east + off, north + 0.045), fontsize=10 if axis.phase else 13, color=INK, weight="bold", family=FONT,
+        axis.label, (east, north), (east + off, north + 0.045), fontsize=max(7.0, (10 if axis.phase else 13) * scale), color=INK, weight="bold", family=FONT,
         zorder=9, ha="center", bbox={"boxstyle": "round,pad=0.12", "facecolor": "white", "edgecolor": "none", "alpha": 0.75},
     )  # fmt: skip
 
