@@ -25,6 +25,7 @@ COMMANDS = {
     "inspect": "list the surfaces in files with size, orientation and condition; propose a table of faults",
     "convert": "write the surfaces of a model in another format, and say what it cannot keep",
     "repair": "mend surfaces into a new folder, with a log of every change",
+    "figures": "draw the figures of a report in print quality, with captions",
     "formats": "list the file formats that can be read and written",
     "serve": "show the page of a model in the browser, and keep it up to date",
 }

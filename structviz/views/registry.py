@@ -11,12 +11,12 @@ from dataclasses import dataclass
 from functools import cache
 from importlib import import_module
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 from structviz.analysis import Analysis
 
 Build = Callable[[Analysis], Any]
-Draw = Callable[[Any, Path], None]
+Builder = TypeVar("Builder", bound=Callable[..., Any])  # keeps the further arguments that a builder takes
 
 
 @dataclass(frozen=True)
@@ -34,10 +34,10 @@ class View:
 _VIEWS: dict[str, View] = {}
 
 
-def view(key: str, *, title: str, file_name: str, needs_gl: bool, renderer: str) -> Callable[[Build], Build]:
+def view(key: str, *, title: str, file_name: str, needs_gl: bool, renderer: str) -> Callable[[Builder], Builder]:
     """Return a decorator that enters a builder into the table of views."""
 
-    def enter(build: Build) -> Build:
+    def enter(build: Builder) -> Builder:
         if key in _VIEWS:
             raise ValueError(f"two views are called {key}")
         _VIEWS[key] = View(key, title, file_name, needs_gl, build, renderer)

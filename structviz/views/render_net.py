@@ -63,7 +63,9 @@ def _plane(axes: Axes, plane: NetPlane, scale: float) -> None:
     style = (0, look.dash) if look.dash else "solid"
     depth = 4 if plane.verdict == "conflicting" else 2
     axes.plot(*plane.circle.T, color=look.colour, linewidth=look.width * scale, linestyle=style, zorder=depth, alpha=0.95)
-    axes.plot(*plane.pole, marker="x", markersize=4.5 * scale, color=look.colour, markeredgewidth=max(0.9, look.width / 1.6) * scale, zorder=depth)
+    axes.plot(
+        *plane.pole, marker="x", markersize=4.5 * scale, color=look.colour, markeredgewidth=max(0.9, look.width / 1.6) * scale, zorder=depth
+    )
 
 
 def _slip(axes: Axes, slip: NetSlip, scale: float, paper: str) -> None:
@@ -91,7 +93,8 @@ def _axis(axes: Axes, axis: NetAxis, scale: float) -> None:
     east, north = map(float, axis.point)
     off = 0.075 if east < 0.85 else -0.075
     axes.annotate(
-        axis.label, (east, north), (east + off, north + 0.045), fontsize=max(7.0, (10 if axis.phase else 13) * scale), color=INK, weight="bold", family=FONT,
+        axis.label, (east, north), (east + off, north + 0.045),
+        fontsize=max(7.0, (10 if axis.phase else 13) * scale), color=INK, weight="bold", family=FONT,
         zorder=9, ha="center", bbox={"boxstyle": "round,pad=0.12", "facecolor": "white", "edgecolor": "none", "alpha": 0.75},
     )  # fmt: skip
 

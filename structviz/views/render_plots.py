@@ -51,56 +51,68 @@ NARROW_MM = 110.0  # below it the key stands under the drawing
 GREY = "#66727b"  # of words that step back: dark enough to be read in print
 
 
-def beside_or_below(width: float, ratio: float, groups: Sequence[Group], draw: Callable[[Axes, float, float], None]) -> Figure:
-    """Return a figure with a drawing, `ratio` times as high as wide, and its key, beside it where there is room.
+def beside_or_below(
+    width: float, height: Callable[[float], float], groups: Sequence[Group], draw: Callable[[Axes, float], None], most: float = 0.7
+) -> Figure:
+    """Return a figure with a drawing and its key, beside it where there is room: there the drawing takes at most a share `most`.
 
-    `draw` is given axes in mm, from 0 at the lower left of the drawing, with the drawing's width and height.
+    `height` gives how high a drawing of a width is, and `draw` draws it into axes in mm with 0 at its lower left.
     """
     if width >= NARROW_MM:
-        wide = min(width - beside_width(groups) - 3 * EDGE_MM - 4.0, 0.7 * width)
-        high = max(wide * ratio, column_height(groups))
+        wide = min(width - beside_width(groups) - 3 * EDGE_MM - 4.0, most * width)
+        high = max(height(wide), column_height(groups))
         figure = sheet(width, high + 2 * EDGE_MM)
         key_beside(paper(figure), groups, wide + EDGE_MM + 6.0, high + EDGE_MM - 3.0)
-        bottom = EDGE_MM + (high - wide * ratio) / 2
+        bottom = EDGE_MM + (high - height(wide)) / 2
     else:
         wide, below = width - 2 * EDGE_MM, key_height(groups, width - 2 * EDGE_MM)
-        figure = sheet(width, wide * ratio + below + 3 * EDGE_MM)
+        figure = sheet(width, height(wide) + below + 3 * EDGE_MM)
         key_below(paper(figure), groups, EDGE_MM, below + EDGE_MM, wide)
         bottom = below + 2 * EDGE_MM
-    axes = axes_mm(figure, EDGE_MM, bottom, wide, wide * ratio)
-    axes.set(xlim=(0, wide), ylim=(0, wide * ratio))
-    draw(axes, wide, wide * ratio)
+    axes = axes_mm(figure, EDGE_MM, bottom, wide, height(wide))
+    axes.set(xlim=(0, wide), ylim=(0, height(wide)))
+    draw(axes, wide)
     return figure
+
+
+def _square(wide: float) -> float:
+    return wide
 
 
 def _verdicts(found: Sequence[str], kind: str) -> Group:
     """Return the key of the verdicts that are drawn, worst first."""
     present = sorted(set(found), key=lambda word: -DEPTH[word])
-    return Group("Verdict on the fault", tuple(Entry(f"{word} ({list(found).count(word)})", verdict_symbol(word, kind)) for word in present))
+    return Group(
+        "Verdict on the fault", tuple(Entry(f"{word} ({list(found).count(word)})", verdict_symbol(word, kind)) for word in present)
+    )
 
 
-def net(described: Net, width: float) -> Figure:
+SLIP_KEY = (
+    ("predicted, down", Symbol("mark", INK, "v", size_pt=6), {(False, False)}),
+    ("predicted, up", Symbol("mark", INK, "^", size_pt=6), {(False, True)}),
+    ("declared, where it conflicts", Symbol("mark", INK, "v", "white", 1.2, size_pt=6), {(True, False), (True, True)}),
+)
+
+
+def net(described: Net, width: float, dpi: int = 300) -> Figure:
     """Return the equal-area net."""
-    slips = [
-        Entry("predicted, down", Symbol("mark", INK, "v", size_pt=6)),
-        Entry("predicted, up", Symbol("mark", INK, "^", size_pt=6)),
-        Entry("declared, where it conflicts", Symbol("mark", INK, "v", "white", 1.2, size_pt=6)),
-        Entry("pole of a mean plane", Symbol("mark", INK, "x", size_pt=5)),
-    ]
+    shown = {(slip.declared, slip.upward) for slip in described.slips}
+    slips = [Entry(text, symbol) for text, symbol, needs in SLIP_KEY if shown & needs]
     groups = [
         Group("Principal axes, 95 % cones", _axes_entries(described) or (Entry("none could be inferred"),)),
         _verdicts([plane.verdict for plane in described.planes], "line"),
-        Group("Slip of the hanging wall", tuple(slips)),
+        Group("Slip of the hanging wall", tuple(slips)) if slips else Group("Marks", ()),
     ]
+    groups[-1] = Group(groups[-1].heading, (*groups[-1].entries, Entry("pole of a mean plane", Symbol("mark", INK, "x", size_pt=5))))
 
-    def draw(axes: Axes, wide: float, high: float) -> None:
+    def draw(axes: Axes, wide: float) -> None:
         named = _names_at_rim(described, wide)
         extent = 1.13 if not named else 1.13 + 0.02
         axes.set(xlim=(-extent, extent), ylim=(-extent, extent))
         paint_net(axes, described, scale=float(np.clip(wide / 110, 0.55, 1.15)), paper="white")
         _write_rim_names(axes, named, 2 * extent / wide)
 
-    return beside_or_below(width, 1.0, groups, draw)
+    return beside_or_below(width, _square, groups, draw)
 
 
 def _axes_entries(described: Net) -> tuple[Entry, ...]:
@@ -134,9 +146,11 @@ def _write_rim_names(axes: Axes, named: list[tuple[str, Floats]], unit: float) -
                 break
 
 
-def mohr(described: Sequence[Mohr], width: float) -> Figure:
+def mohr(described: Sequence[Mohr], width: float, dpi: int = 300) -> Figure:
     """Return Mohr's diagrams of reduced stress, one under the other where there are several stresses."""
+    notes = [each.note if len(described) == 1 else f"({number}) {each.note}" for number, each in enumerate(described, 1)]
     groups = [_verdicts([fault.verdict for each in described for fault in each.faults], "mark")]
+    groups.append(Group("Shape ratio", tuple(map(Entry, notes))))
     wide = width - 2 * EDGE_MM
     key, each_mm = key_height(groups, wide), wide * 0.5 + 13.0
     figure = sheet(width, len(described) * each_mm + key + 2 * EDGE_MM)
@@ -144,7 +158,9 @@ def mohr(described: Sequence[Mohr], width: float) -> Figure:
     key_below(axes, groups, EDGE_MM, key + EDGE_MM, wide)
     for number, diagram in enumerate(described):
         bottom = EDGE_MM + key + (len(described) - 1 - number) * each_mm
-        _mohr_diagram(axes, diagram, EDGE_MM + 5.0, bottom + 9.0, wide - 9.0, f"({number + 1}) {diagram.name}" if len(described) > 1 else "")
+        _mohr_diagram(
+            axes, diagram, EDGE_MM + 5.0, bottom + 9.0, wide - 9.0, f"({number + 1}) {diagram.name}" if len(described) > 1 else ""
+        )
     return figure
 
 
@@ -152,7 +168,9 @@ def _mohr_diagram(axes: Axes, mohr: Mohr, left: float, base: float, scale: float
     """Draw one diagram whose sigma3 stands at (left, base) and sigma1 `scale` mm to its right."""
     for low, high, width in ((0.0, 1.0, 1.1), (mohr.ratio, 1.0, 0.8), (0.0, mohr.ratio, 0.8)):
         size, middle = scale * (high - low), left + scale * (low + high) / 2
-        axes.add_patch(Arc((middle, base), size, size, theta1=0, theta2=180, edgecolor=INK if width > 1 else GREY, linewidth=width, zorder=2))
+        axes.add_patch(
+            Arc((middle, base), size, size, theta1=0, theta2=180, edgecolor=INK if width > 1 else GREY, linewidth=width, zorder=2)
+        )
     axes.plot([left - 3, left + scale + 3], [base, base], color=INK, linewidth=0.8, zorder=2)
     axes.plot([left, left], [base, base + scale / 2 + 2], color=INK, linewidth=0.8, zorder=2)
     for fault in mohr.faults:
@@ -162,7 +180,6 @@ def _mohr_diagram(axes: Axes, mohr: Mohr, left: float, base: float, scale: float
         words(axes, left + scale * value, base - 3.4, label, LARGE_PT, ha="center")
     words(axes, left + scale, base - 7.2, "normal stress, reduced", SMALL_PT, ha="right", color=GREY)
     words(axes, left - 3.0, base + scale / 4, "shear, reduced", SMALL_PT, ha="center", rotation=90, color=GREY)
-    words(axes, left + scale + 3, base + scale / 2, mohr.note, SMALL_PT, ha="right", color=GREY)
     if name:
         words(axes, left + 2.0, base + scale / 2, name, TEXT_PT, weight="bold")
     _mohr_names(axes, mohr, left, base, scale)
@@ -183,7 +200,7 @@ def _mohr_names(axes: Axes, mohr: Mohr, left: float, base: float, scale: float) 
     for fault in mohr.faults:
         if fault.verdict != "conflicting":
             continue
-        middle = np.median(fault.points, axis=0) * scale + [left, base]
+        middle = _typical(fault.points) * scale + [left, base]
         name, high = shortened(fault.name, 18), 1.3 * SMALL_PT * POINT_MM
         long = width_of(name, SMALL_PT)
         spread = max(2.0, float(np.percentile(np.abs(fault.points[:, 1] * scale + base - middle[1]), 90)))
@@ -192,22 +209,31 @@ def _mohr_names(axes: Axes, mohr: Mohr, left: float, base: float, scale: float) 
             box = (x - long / 2, y - high / 2, x + long / 2, y + high / 2)
             if y > base + 2 and not any(box[0] < b[2] and b[0] < box[2] and box[1] < b[3] and b[1] < box[3] for b in taken):
                 taken.append(box)
-                words(axes, x, y, name, SMALL_PT, ha="center", zorder=9, bbox={"boxstyle": "square,pad=0.1", "fc": "white", "ec": "none", "alpha": 0.8})
+                edge = y - high / 2 if up > 0 else y + high / 2
+                axes.plot([x, middle[0]], [edge, middle[1]], color=INK, linewidth=0.6, zorder=8)
+                box_style = {"boxstyle": "square,pad=0.1", "fc": "white", "ec": "none", "alpha": 0.8}
+                words(axes, x, y, name, SMALL_PT, ha="center", zorder=9, bbox=box_style)
                 break
 
 
-CORNERS = np.array([(0.5, 0.75**0.5), (1.0, 0.0), (0.0, 0.0)])  # where sigma1, sigma2, sigma3 stand upright, of a triangle with sides of one
+def _typical(points: Floats) -> Floats:
+    """Return the point nearest to the median of all, since a median alone may lie between two clusters."""
+    return points[((points - np.median(points, axis=0)) ** 2).sum(1).argmin()]
+
+
+CORNERS = np.array([(0.5, 0.75**0.5), (1.0, 0.0), (0.0, 0.0)])  # of sigma1, sigma2, sigma3 upright; the sides are one long
+SIDE_MM = 5.0  # beside the triangle
 CORNER_WORDS = (("\u03c31 upright:", "normal"), ("\u03c32 upright:", "strike-slip"), ("\u03c33 upright:", "reverse"))
 
 
-def plunges(described: Plunges, width: float) -> Figure:
+def plunges(described: Plunges, width: float, dpi: int = 300) -> Figure:
     """Return the triangle of plunges."""
     entries = tuple(_plunge_entry(regime, number) for number, regime in enumerate(described.regimes))
     groups = [Group("Stress", entries), Group("", (Entry("its bootstrap replicates", Symbol("mark", GREY, ".", size_pt=3.5)),))]
 
-    def draw(axes: Axes, wide: float, high: float) -> None:
-        side = wide - 10.0
-        start = np.array([5.0, 9.5])
+    def draw(axes: Axes, wide: float) -> None:
+        side = wide - 2 * SIDE_MM
+        start = np.array([SIDE_MM, 9.5])
         corners = CORNERS * side + start
         axes.add_patch(Polygon(corners, closed=True, fill=False, edgecolor=INK, linewidth=1.1))
         for share in (0.25, 0.5, 0.75):
@@ -216,13 +242,21 @@ def plunges(described: Plunges, width: float) -> Figure:
                 axes.plot(*ends.T, color=FAINT, linewidth=0.5, linestyle=(0, (1.5, 2)), zorder=1)
         for k, (x, y) in enumerate(corners):
             align = ("center", "right", "left")[k]
-            shift = (0.0, 5.0, -5.0)[k]
+            shift = (0.0, SIDE_MM, -SIDE_MM)[k]
             for line, text in enumerate(CORNER_WORDS[k]):
-                words(axes, x + shift, y + (7.0 if k == 0 else -3.2) - 3.6 * line, text, TEXT_PT, ha=align, weight="bold" if line else "normal")
+                words(
+                    axes,
+                    x + shift,
+                    y + (7.0 if k == 0 else -3.2) - 3.6 * line,
+                    text,
+                    TEXT_PT,
+                    ha=align,
+                    weight="bold" if line else "normal",
+                )
         for number, regime in enumerate(described.regimes):
             _plunge(axes, regime, number, corners)
 
-    return beside_or_below(width, 0.866 + 0.115, groups, draw)
+    return beside_or_below(width, lambda wide: 0.866 * (wide - 2 * SIDE_MM) + 21.5, groups, draw, 0.6)
 
 
 def _plunge_entry(regime: PlungesRegime, number: int) -> Entry:
@@ -239,12 +273,12 @@ def _plunge(axes: Axes, regime: PlungesRegime, number: int, corners: Floats) -> 
     symbol = _plunge_symbol(number)
     axes.plot(*(regime.cloud @ corners).T, linestyle="", marker=".", markersize=2.6, color=GREY, alpha=0.6, markeredgewidth=0, zorder=3)
     axes.plot(
-        *(regime.shares @ corners), marker=symbol.marker, markersize=symbol.size_pt, markerfacecolor=symbol.face, markeredgecolor="white" if number == 0 else symbol.colour,
-        markeredgewidth=symbol.width_pt, zorder=5,
+        *(regime.shares @ corners), marker=symbol.marker, markersize=symbol.size_pt, markerfacecolor=symbol.face,
+        markeredgecolor="white" if number == 0 else symbol.colour, markeredgewidth=symbol.width_pt, zorder=5,
     )  # fmt: skip
 
 
-def rose(described: Rose, width: float) -> Figure:
+def rose(described: Rose, width: float, dpi: int = 300) -> Figure:
     """Return the rose of strikes."""
     note = f"outer circle: {100 * described.longest_share:.0f} % of the faults' area"
     groups = [
@@ -252,7 +286,7 @@ def rose(described: Rose, width: float) -> Figure:
         Group("Petals of 10\u00b0, by area", (Entry(note), Entry("inner circle: half of that"))),
     ]
 
-    def draw(axes: Axes, wide: float, high: float) -> None:
+    def draw(axes: Axes, wide: float) -> None:
         middle, radius = wide / 2, wide / 2 - 6.0
         for share in (1.0, 0.5**0.5):
             axes.add_patch(Circle((middle, middle), radius * share, fill=False, edgecolor=FAINT, linewidth=0.7))
@@ -263,9 +297,9 @@ def rose(described: Rose, width: float) -> Figure:
             axes.plot(*(middle + np.outer([radius, radius + 1.2], out)).T, color=INK, linewidth=0.7)
             named = {0: "N", 90: "E", 180: "S", 270: "W"}.get(azimuth)
             if named:
-                words(axes, *(middle + out * (radius + 3.6)), named, LARGE_PT, ha="center")
+                words(axes, middle + out[0] * (radius + 3.6), middle + out[1] * (radius + 3.6), named, LARGE_PT, ha="center")
 
-    return beside_or_below(width, 1.0, groups, draw)
+    return beside_or_below(width, _square, groups, draw, 0.6)
 
 
 def _petal(axes: Axes, part: RosePart, middle: float, radius: float) -> None:
@@ -276,7 +310,7 @@ def _petal(axes: Axes, part: RosePart, middle: float, radius: float) -> None:
         axes.add_patch(Polygon(points, closed=True, zorder=2 + DEPTH[part.verdict], joinstyle="miter", **patch_style(part.verdict)))
 
 
-def misfits(described: Misfits, width: float) -> Figure:
+def misfits(described: Misfits, width: float, dpi: int = 300) -> Figure:
     """Return the histogram of misfits."""
     groups = [_verdicts([block.verdict for block in described.blocks], "patch")]
     wide = width - 2 * EDGE_MM

@@ -18,7 +18,8 @@ from numpy.typing import NDArray
 from PIL import Image
 
 from structviz.views.palette import FAINT, HAIR, INK, PAPER, VERDICTS
-from structviz.views.render_actors import PEELS, add_actors, aim
+from structviz.views.render_actors import add_actors, aim
+from structviz.views.render_pixels import picture, projector, smooth
 from structviz.views.scene import Label, Scene
 
 Floats = NDArray[np.float64]
@@ -32,7 +33,10 @@ def draw(scene: Scene, path: Path) -> None:
     """Write the scene as a PNG of 2000 by 1400 pixels; the same scene gives the same bytes."""
     plotter = pv.Plotter(off_screen=True, window_size=list(PIXELS), lighting="light kit")
     try:
-        image, project = _photograph(plotter, scene)
+        add_actors(plotter, scene)
+        aim(plotter, scene, PIXELS[0] / PIXELS[1])
+        smooth(plotter)
+        image, project = picture(plotter), projector(plotter, PIXELS)
     finally:
         plotter.close()
     figure = Figure(figsize=(PIXELS[0] / 200, PIXELS[1] / 200), dpi=200, facecolor="none")
@@ -54,41 +58,6 @@ def _over(picture: NDArray[np.uint8], words: NDArray[np.uint8]) -> NDArray[np.ui
     pixels, ink = picture.reshape(-1, 3).copy(), words.reshape(-1, 4)[inked].astype(np.uint16)
     pixels[inked] = (pixels[inked] * (255 - ink[:, 3:]) + ink[:, :3] * ink[:, 3:] + 127) // 255
     return pixels.reshape(picture.shape)
-
-
-def _photograph(plotter: Any, scene: Scene) -> tuple[NDArray[np.uint8], Any]:
-    add_actors(plotter, scene)
-    aim(plotter, scene, PIXELS[0] / PIXELS[1])
-    plotter.enable_depth_peeling(PEELS)
-    plotter.enable_anti_aliasing("ssaa")
-    return _picture(plotter), _projector(plotter)
-
-
-def _picture(plotter: Any) -> NDArray[np.uint8]:
-    """Return the pixels (H, W, 3) of one rendering; the plotter's own way renders twice."""
-    from vtkmodules.util.numpy_support import vtk_to_numpy
-    from vtkmodules.vtkRenderingCore import vtkWindowToImageFilter
-
-    plotter.render_window.Render()
-    reader = vtkWindowToImageFilter()
-    reader.SetInput(plotter.render_window)
-    reader.ReadFrontBufferOff()
-    reader.ShouldRerenderOff()
-    reader.Update()
-    pixels = vtk_to_numpy(reader.GetOutput().GetPointData().GetScalars())
-    return np.asarray(pixels.reshape(PIXELS[1], PIXELS[0], -1)[::-1, :, :3]).copy()
-
-
-def _projector(plotter: Any) -> Any:
-    """Return a function from places (N, 3) to pixels (N, 2), origin at the lower left, for the camera as it stands."""
-    matrix = plotter.camera.GetCompositeProjectionTransformMatrix(PIXELS[0] / PIXELS[1], -1, 1)
-    m = np.array([[matrix.GetElement(i, j) for j in range(4)] for i in range(4)])
-
-    def project(places: Floats) -> Floats:
-        homogeneous = np.concatenate([np.atleast_2d(places), np.ones((len(np.atleast_2d(places)), 1))], 1) @ m.T
-        return (homogeneous[:, :2] / homogeneous[:, 3:] + 1) / 2 * PIXELS
-
-    return project
 
 
 def _frame(axes: Axes, scene: Scene, project: Any) -> None:
@@ -163,6 +132,7 @@ def _name(axes: Axes, label: Label, x: float, y: float) -> None:
         x,
         y + 22,
         label.text,
+        parse_math=False,
         fontsize=8 if strong else 6.5,
         weight="bold" if strong else "normal",
         color=INK,
@@ -174,8 +144,8 @@ def _name(axes: Axes, label: Label, x: float, y: float) -> None:
 
 
 def _words(axes: Axes, scene: Scene) -> None:
-    axes.text(50, PIXELS[1] - 62, scene.title, fontsize=17, weight="bold", color=INK, va="center", family=FONT)
-    axes.text(50, PIXELS[1] - 118, scene.subtitle, fontsize=9.5, color=INK, va="center", family=FONT)
+    axes.text(50, PIXELS[1] - 62, scene.title, fontsize=17, weight="bold", color=INK, va="center", family=FONT, parse_math=False)
+    axes.text(50, PIXELS[1] - 118, scene.subtitle, fontsize=9.5, color=INK, va="center", family=FONT, parse_math=False)
     x, y = PIXELS[0] - 470, PIXELS[1] - 60
     for word, count in scene.counts:
         look = VERDICTS[word]

@@ -12,7 +12,6 @@ from pathlib import Path
 from typing import Any
 
 import matplotlib as mpl
-import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
@@ -132,14 +131,29 @@ def _flow(groups: Sequence[Group], width: float) -> Iterator[tuple[float, int, E
     row = -1
     for group in groups:
         row, x = row + 1, 0.0
-        for entry in (group.heading, *group.entries):
-            if not entry:
-                continue
+        for entry in _fitting(group, width):
             wide = _wide(entry)
             if x > 0 and x + wide > width:
                 row, x = row + 1, 0.0
             yield x, row, entry
             x += wide + GAP_MM
+
+
+def _fitting(group: Group, width: float) -> Iterator[Entry | str]:
+    """Give the heading and the entries of a group; words alone that are too long for the width are broken into lines."""
+    if group.heading:
+        yield group.heading
+    for entry in group.entries:
+        if entry.symbol or _wide(entry) <= width:
+            yield entry
+            continue
+        line = ""
+        for word in entry.text.split():
+            if line and width_of(f"{line} {word}") > width:
+                yield Entry(line)
+                line = ""
+            line = f"{line} {word}".strip()
+        yield Entry(line)
 
 
 def _wide(entry: Entry | str) -> float:
@@ -164,7 +178,8 @@ def key_beside(axes: Axes, groups: Sequence[Group], left: float, top: float) -> 
 
 def beside_width(groups: Sequence[Group]) -> float:
     """Return how wide a key is as a column, mm."""
-    return max(_wide(entry) for group in groups for entry in (group.heading, *group.entries) if entry)
+    headings = [_wide(group.heading) for group in groups]
+    return max([*headings, *(_wide(entry) for group in groups for entry in group.entries)])
 
 
 def column_height(groups: Sequence[Group]) -> float:
@@ -203,14 +218,14 @@ def verdict_group(counts: Sequence[tuple[str, int]], kind: str, heading: str = "
 
 def save(figure: Figure, path: Path, dpi: int, title: str) -> None:
     """Write a figure in the format its suffix names, in its true size; the same figure gives the same bytes."""
-    kind, size = path.suffix[1:], figure.get_size_inches().copy()
+    kind, (wide, high) = path.suffix[1:], map(float, figure.get_size_inches())
     metadata = {"png": {"Software": None}, "svg": {"Date": None, "Creator": "structviz", "Title": title}}
     metadata["pdf"] = {"CreationDate": None, "Creator": "structviz", "Producer": None, "Title": title}
     with mpl.rc_context(STYLE), warnings.catch_warnings():
         warnings.filterwarnings("ignore", message="Glyph .* missing")  # a letter the font lacks is drawn as a box
         if kind == "png":  # whole pixels, so that a picture in it is not resampled
-            figure.set_size_inches((np.round(size * dpi) + 1e-6) / dpi)
+            figure.set_size_inches((round(wide * dpi) + 1e-6) / dpi, (round(high * dpi) + 1e-6) / dpi)
         try:
             figure.savefig(path, format=kind, dpi=dpi, metadata=metadata[kind])
         finally:
-            figure.set_size_inches(size)
+            figure.set_size_inches(wide, high)
