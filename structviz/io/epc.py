@@ -83,6 +83,7 @@ def tree(package: Package, name: str) -> Element:
     """Return the root of a part, parsed once."""
     if name not in package.trees:
         package.trees[name] = xml_part(package, name)
+        package.trees[name].tag = package.trees[name].tag.removeprefix("obj_")  # some writers of 2.0.1 put it there, too
     return package.trees[name]
 
 

@@ -127,7 +127,9 @@ def points(package: Package, element: Element | None, shape: tuple[int, ...], cr
         raise FormatError(package.file, f"{count:,} points", f"at most {MOST // 3:,}", hint=DAMAGED)
     kind = "" if element is None else kind_of(element)
     if element is None or kind in ("Point3dHdf5Array", "Point3dExternalArray"):
-        return numbers(package, element, 3 * count, "points").astype(np.float64).reshape(-1, 3)
+        found = numbers(package, element, 3 * count, "points")
+        note_single(package, found)
+        return found.astype(np.float64).reshape(-1, 3)
     if kind == "Point3dLatticeArray":
         check_made(count, "points", package.file)
         return lattice(package, element, shape)
@@ -141,6 +143,16 @@ def points(package: Package, element: Element | None, shape: tuple[int, ...], cr
     if kind == "Point3dFromRepresentationLatticeArray":
         return borrowed(package, element, shape, crs)
     raise NotRead(f"points as {kind[:60]}")
+
+
+def note_single(package: Package, found: NDArray) -> None:
+    """Tell where single precision steps coordinates by more than a hundredth of a unit, far from the local origin."""
+    if found.dtype != np.float32 or not len(found) or not np.isfinite(found).any():
+        return
+    step = float(np.spacing(np.float32(np.nanmax(np.abs(found)))))
+    words = f"points in single precision: coordinates are stepped by up to {step:g}"
+    if step > 0.01 and words not in package.told:
+        package.told.append(words)
 
 
 def borrowed(package: Package, element: Element, shape: tuple[int, ...], crs: str) -> NDArray[np.float64]:

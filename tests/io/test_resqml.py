@@ -303,6 +303,17 @@ class TestArrays:
         assert np.array_equal(found["Fault A"].triangles, [[0, 1, 2]])
         assert np.array_equal(found["Top"].vertices, [[0, 0, -80], [10, 0, -80], [0, 25, -80], [10, 25, -80]])
 
+    @both
+    def test_single_precision_is_told_where_it_steps(self, version):
+        near = Builder(version).depth_crs().interpretation(1).triangles(2, 1, ((NODES.astype("f4"), CORNERS),))
+        assert near.pieces()[0].told == ()
+        far = Builder(version).depth_crs().interpretation(1).triangles(2, 1, (((NODES + [0, 4e6, 0]).astype("f4"), CORNERS),))
+        assert far.pieces()[0].told == ("points in single precision: coordinates are stepped by up to 0.25",)
+
+    def test_roots_with_the_prefix_of_their_class(self):
+        (piece,) = self.changed("2.0", "r:TriangulatedSetRepresentation", "r:obj_TriangulatedSetRepresentation").pieces()
+        assert piece.kind == "fault"
+
     def test_an_array_in_several_parts(self):
         made = plain("2.2", down=False)
         path = f"/RESQML/{uuid(2)}/points_patch0"
