@@ -122,11 +122,18 @@ def model_of_meshes(ledger: Ledger, paths: list[Path], title: str, progress: Pro
         raise InputError(title, f"{len(horizons)} horizons and no fault", "a fault surface", hint=hint)
     if not any(fault.declared for fault in faults):
         ledger.note("model", "no senses are declared: there is no table of faults", "list the faults in a faults.csv with their senses")
-    systems = sorted({piece.crs for _, _, piece, _ in found if piece.crs})
-    if len(systems) > 1:
-        hint = "bring all surfaces into one system: places in different systems do not compare"
-        ledger.note("model", f"the files name different reference systems: {', '.join(systems)}", hint, "warning")
-    return finished(ledger, title, systems[0] if len(systems) == 1 else "", tuple(faults), tuple(horizons), ())
+    return finished(ledger, title, system_of(ledger), tuple(faults), tuple(horizons), ())
+
+
+def system_of(ledger: Ledger, stated: str = "") -> str:
+    """Return the reference system a model states, else the one its files name; "" where they differ, which is noted."""
+    named = sorted({piece.crs for pieces in ledger.pieces.values() for piece in pieces if piece.crs})
+    hint = "bring all surfaces into one system: places in different systems do not compare"
+    if len(named) > 1:
+        ledger.note("model", f"the files name different reference systems: {', '.join(named)}", hint, "warning")
+    elif stated and named and named[0].lower() != stated.strip().lower():
+        ledger.note("model", f"the model says {stated}, its files say {named[0]}", hint, "warning")
+    return stated or (named[0] if len(named) == 1 else "")
 
 
 def distinct(named: list[tuple[str, str]]) -> list[str]:
@@ -169,7 +176,7 @@ def model_of_file(ledger: Ledger, path: Path, model: ModelFile, progress: Progre
         apart = with_file(apart, ledger, inside(ledger, model.mechanisms, path.name), model.frame, model.mechanisms_are)
     if model.well_azimuths:
         apart = with_file(apart, ledger, inside(ledger, model.well_azimuths, path.name), model.frame)
-    found = finished(ledger, model.title or path.stem, model.crs, tuple(faults), tuple(horizons), striae)
+    found = finished(ledger, model.title or path.stem, system_of(ledger, model.crs), tuple(faults), tuple(horizons), striae)
     return replace(found, mechanisms=apart.mechanisms, mechanisms_are=apart.mechanisms_are, azimuths=apart.azimuths)
 
 

@@ -274,6 +274,23 @@ class TestResults:
         assert sorted(re.search(r"<r:SupportingRepresentation>.*?<e:Title>(\w)</e:Title>", text)[1] for text in added) == ["B", "C"]
         assert (written.folder / "m.h5").read_bytes() == (tmp_path / "sub" / "m.h5").read_bytes()
 
+    def test_a_table_takes_the_reference_system_of_its_files(self, tmp_path):
+        put(tmp_path, package_of_model(model(), "m"))
+        put(tmp_path, package_of_model(model("EPSG:23031"), "n"))
+        table = tmp_path / "faults.csv"
+        table.write_text("name,surface\none,m.epc#B\n")
+        assert read_model(table).crs == "EPSG:25831"
+        (tmp_path / "model.toml").write_text('crs = "epsg:25831"\nfaults = "faults.csv"')
+        assert read_model(tmp_path).crs == "epsg:25831"
+        assert not any("its files say" in finding.message for finding in read_model(tmp_path).findings)
+        (tmp_path / "model.toml").write_text('crs = "EPSG:32631"\nfaults = "faults.csv"')
+        told = [finding for finding in read_model(tmp_path).findings if finding.severity == "warning"]
+        assert [finding.message for finding in told] == ["the model says EPSG:32631, its files say EPSG:25831"]
+        table.write_text("name,surface\none,m.epc#B\ntwo,n.epc#C\n")
+        different = read_model(table)
+        assert different.crs == ""
+        assert "the files name different reference systems: EPSG:23031, EPSG:25831" in [entry.message for entry in different.findings]
+
     def test_two_packages_are_told(self, tmp_path):
         for stem in "ab":
             put(tmp_path, package_of_model(model(), stem))
