@@ -11,8 +11,6 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.sparse.csgraph import minimum_spanning_tree
-from scipy.spatial.distance import cdist
 
 from structviz.errors import SurfaceError
 from structviz.surfaces.from_traces import grid_cells
@@ -132,6 +130,9 @@ def _in_order(compared: Floats) -> tuple[Integers, bool]:
     Each stick is tied to its nearest (the shortest tree); where that tree is a single path it is the order, else the order is that of
     the middles along their longest axis.
     """
+    from scipy.sparse.csgraph import minimum_spanning_tree  # here, so that reading meshes does not load it
+    from scipy.spatial.distance import cdist
+
     flat, back = compared.reshape(len(compared), -1), compared[:, ::-1].reshape(len(compared), -1)
     tree = minimum_spanning_tree(np.minimum(cdist(flat, flat), cdist(flat, back))).tocoo()
     ends, others = np.concatenate([tree.row, tree.col]), np.concatenate([tree.col, tree.row])
