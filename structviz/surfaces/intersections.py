@@ -27,6 +27,7 @@ REACH_OF_SIZE = 0.02  # of the square root of a surface's area, and no further: 
 WIDE_QUANTILE = 0.99
 MOST_MARKS = 30_000_000  # cells times surfaces of the coarse grid
 MOST_PAIRS = 4_000_000  # pairs of triangles tested at a time
+MOST_CELLS = 40  # of the grid that a triangle may touch on average
 
 
 @dataclass(frozen=True, eq=False)
@@ -150,6 +151,8 @@ def _candidates(corners: Floats, owner: Integers) -> tuple[Integers, Integers]:
     cell = max(float(np.median((high - low).max(1))) * 1.5, 1e-9)
     cell = max(cell, float((high - low).max()) / 64)  # a huge triangle among small ones must not fill the grid
     start = low.min(0)
+    while (np.floor((high - low) / cell) + 2).prod(1).sum() > MOST_CELLS * len(corners) + 1e6:  # nor may very many large ones
+        cell *= 1.5
     first, last = ((low - start) / cell).astype(np.int64), ((high - start) / cell).astype(np.int64)
     count = last - first + 1
     total = count.prod(1)
