@@ -73,5 +73,5 @@ export const STYLE = `
 .sv-glyph-note { color: var(--quiet, #5b6872); font-size: .75rem; margin-top: .15rem; }
 .sv-heading { font-weight: 600; padding: .3rem .35rem .1rem; }
 .sv-compass { width: 46px; height: 46px; flex: none; }
-@media (max-width: 640px) { .sv-top .sv-row > span:first-child { display: none; } .sv-top { gap: .2rem; } .sv-top > .sv-row { padding: 0; } .sv-panel select { max-width: 8.5rem; } .sv-where { font-size: .72rem; } .sv-inside .sv-row > span:first-child { display: inline !important; } .sv-wide, .sv-names .coordinate { display: none; } }
+@media (max-width: 640px) { .sv-top .sv-row > span:first-child { display: none; } .sv-top { gap: .2rem; } .sv-top > .sv-row { padding: 0; } .sv-panel select { max-width: 8.5rem; } .sv-where { font-size: .72rem; } .sv-inside .sv-row > span:first-child { display: inline !important; } .sv-wide, .sv-glyph-note, .sv-names .coordinate { display: none; } }
 `;

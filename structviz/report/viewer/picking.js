@@ -3,7 +3,7 @@
 import { Box3, DoubleSide, Matrix4, Raycaster, Vector2, Vector3 } from "three";
 import { MeshBVH, SAH, CENTER } from "three-mesh-bvh";
 
-const LARGE = 20_000; // triangles of a fault; beyond, the quicker way to build pays
+const LARGE = 2_000; // triangles of a fault; beyond, the quicker way to build pays
 
 export function makePicker(data, mesh, camera) {
   const { begin } = mesh.userData;
