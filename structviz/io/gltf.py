@@ -12,6 +12,7 @@ import json
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Any
+from urllib.parse import unquote
 
 import numpy as np
 from numpy.typing import NDArray
@@ -24,6 +25,8 @@ JSON_CHUNK, BIN_CHUNK = 0x4E4F534A, 0x004E4942
 COMPONENTS = {5120: "i1", 5121: "u1", 5122: "<i2", 5123: "<u2", 5125: "<u4", 5126: "<f4"}
 WIDTHS = {"SCALAR": 1, "VEC2": 2, "VEC3": 3, "VEC4": 4}
 HINT = "export the surface again"
+TAKEN = -1
+MOST_COPIED = 2_000_000  # rows that using the same data again may add: a small file can ask for billions
 FLIP = np.array([[1.0, 0.0, 0.0], [0.0, 0.0, 1.0], [0.0, -1.0, 0.0]])  # rows x, y, z from columns easting, northing, up
 
 
@@ -33,7 +36,16 @@ class Document:
 
     file: str
     tree: dict[str, Any]
-    buffer: Callable[[int], bytes]
+    buffer: Callable[[Any], bytes]
+    held: dict[int, int]  # bytes of each buffer read so far, the rows handed out so far under TAKEN
+
+    def take(self, rows: int) -> None:
+        """Count rows of vertices and triangles; FormatError where they are many more than the bytes they come from."""
+        self.held[TAKEN] += rows
+        taken = self.held[TAKEN]
+        if taken > MOST_COPIED and taken - MOST_COPIED > sum(self.held.values()) - taken:
+            wanted = f"at most {MOST_COPIED:,} vertices and triangles of copies"
+            raise FormatError(self.file, "data that are used again and again", wanted, hint="export each surface once")
 
     def item(self, key: str, number: Any) -> dict[str, Any]:
         """Return an object of a list of the document; FormatError where it is not there."""
@@ -56,14 +68,16 @@ def document_of(content: bytes, file: str, beside: Callable[[str], bytes]) -> Do
         raise FormatError(file, "JSON without an asset", "a glTF document", hint=HINT)
     if not str(tree["asset"].get("version", "")).startswith("2"):
         raise FormatError(file, f"glTF version {str(tree['asset'].get('version'))[:20]!r}", "version 2", hint="export it as glTF 2.0")
-    held: dict[int, bytes] = {}
+    contents: dict[int, bytes] = {}
 
-    def buffer(number: int) -> bytes:
-        if number not in held:
-            held[number] = _buffer(found, number, binary, beside)
-        return held[number]
+    def buffer(number: Any) -> bytes:
+        found.item("buffers", number)
+        if number not in contents:
+            contents[number] = _buffer(found, number, binary, beside)
+            found.held[number] = len(contents[number])
+        return contents[number]
 
-    found = Document(file, tree, buffer)
+    found = Document(file, tree, buffer, {TAKEN: 0})
     return found
 
 
@@ -101,7 +115,7 @@ def _buffer(document: Document, number: int, binary: bytes, beside: Callable[[st
         except (binascii.Error, ValueError) as error:
             raise FormatError(document.file, f"a data URI that cannot be decoded ({error})", "base64", hint=HINT) from None
     elif isinstance(uri, str) and "://" not in uri:
-        content = beside(uri)
+        content = beside(unquote(uri))
     else:
         raise FormatError(document.file, f"a buffer at {str(uri)[:80]!r}", "buffers in the file or beside it", hint="export it as one GLB")
     if not isinstance(length, int) or not 0 <= length <= len(content):
@@ -112,20 +126,25 @@ def _buffer(document: Document, number: int, binary: bytes, beside: Callable[[st
 def accessor(document: Document, number: Any, what: str) -> NDArray:
     """Return the values of an accessor, (count,) or (count, width), in their own type; FormatError where they are not all there."""
     entry = document.item("accessors", number)
-    kind, width, count = COMPONENTS.get(entry.get("componentType", 0)), WIDTHS.get(entry.get("type", "")), entry.get("count")
+    kind, width, count = _known(COMPONENTS, entry.get("componentType")), _known(WIDTHS, entry.get("type")), entry.get("count")
     if kind is None or width is None or not isinstance(count, int) or count < 0:
         raise FormatError(
             document.file, f"{what} of type {entry.get('componentType')!r} {str(entry.get('type'))[:20]!r}", "numbers", hint=HINT
         )
     if "bufferView" in entry:
         values = _view(document, entry["bufferView"], entry.get("byteOffset", 0), np.dtype(kind), count, width, what)
-    elif "sparse" in entry and count * width <= 100 * len(json.dumps(document.tree)) + 1_000_000:
+    elif "sparse" in entry and count <= MOST_COPIED:
         values = np.zeros((count, width), kind)
     else:
         raise FormatError(document.file, f"{what} without data", "a buffer view", hint=HINT)
     if isinstance(entry.get("sparse"), dict):
         values = _sparse(document, entry["sparse"], values, np.dtype(kind), what)
     return values[:, 0] if width == 1 else values
+
+
+def _known(table: dict[Any, Any], key: Any) -> Any:
+    """Return what a table holds under a key, None where there is nothing or the key is a list or an object."""
+    return table.get(key) if isinstance(key, (int, str)) else None
 
 
 def _view(document: Document, view: Any, offset: Any, kind: np.dtype, count: int, width: int, what: str) -> NDArray:
@@ -150,7 +169,7 @@ def _sparse(document: Document, entry: dict[str, Any], values: NDArray, kind: np
     count, places, own = entry.get("count"), entry.get("indices"), entry.get("values")
     if not isinstance(count, int) or count < 0 or not isinstance(places, dict) or not isinstance(own, dict):
         raise FormatError(document.file, f"{what} with broken sparse data", "indices and values", hint=HINT)
-    index_kind = COMPONENTS.get(places.get("componentType", 0), "")
+    index_kind = _known(COMPONENTS, places.get("componentType"))
     if index_kind not in ("u1", "<u2", "<u4"):
         raise FormatError(document.file, f"{what} with sparse indices of no whole type", "unsigned numbers", hint=HINT)
     rows = _view(document, places.get("bufferView"), places.get("byteOffset", 0), np.dtype(index_kind), count, 1, what)[:, 0]

@@ -121,3 +121,23 @@ def test_without_the_library_the_next_step_is_told(monkeypatch: pytest.MonkeyPat
 def test_the_name_of_the_layer_is_the_name_of_the_fault(tmp_path: Path) -> None:
     (tmp_path / "a.dxf").write_bytes(drawing(**{"North Boundary": [SQUARE]}))
     assert [surface.name for surface in read_surfaces(tmp_path / "a.dxf")] == ["North Boundary"]
+
+
+def test_rows_and_columns_of_one_insert_are_placed() -> None:
+    document = ezdxf.new()
+    document.blocks.new("B").add_3dface(SQUARE, dxfattribs={"layer": "F"})
+    rows = {"row_count": 2, "column_count": 3, "row_spacing": 100, "column_spacing": 200}
+    document.modelspace().add_blockref("B", (0, 0, 0), dxfattribs=rows)
+    (piece,) = read_pieces(text_of(document), "a.dxf")
+    assert len(piece.triangles) == 12
+    assert piece.vertices[:, :2].max(0).tolist() == [410, 110]
+
+
+@pytest.mark.parametrize("side", [200, 30_000])
+def test_blocks_inserted_again_and_again_are_refused_in_bounded_time(side: int) -> None:
+    document = ezdxf.new()
+    document.blocks.new("B").add_point((0, 0, 0))
+    rows = {"row_count": side, "column_count": side, "row_spacing": 1, "column_spacing": 1}
+    document.modelspace().add_blockref("B", (0, 0, 0), dxfattribs=rows)
+    with pytest.raises(InputError, match="blocks within blocks without end"):
+        read_pieces(text_of(document), "a.dxf")

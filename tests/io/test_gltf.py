@@ -187,3 +187,44 @@ def test_documents_that_do_not_hold_together_are_refused(change, said: str) -> N
 def test_broken_containers_are_refused(content: bytes, said: str) -> None:
     with pytest.raises(InputError, match=f"a.gltf: found {said}"):
         read_pieces(content, "a.gltf")
+
+
+def test_one_array_of_places_that_serves_many_meshes_is_cut_to_what_each_uses() -> None:
+    places = np.random.default_rng(1).random((300, 3))
+    tree = document(places, np.array([7, 8, 9], "uint16"))
+    (piece,) = read(tree)
+    assert piece.vertices.shape == (3, 3)
+    assert np.allclose(piece.vertices[:, 0], places[7:10, 0], atol=1e-6)
+
+
+@pytest.mark.parametrize("what", ["nodes", "primitives"])
+def test_data_used_again_and_again_are_refused_before_they_fill_the_memory(what: str) -> None:
+    tree = document(np.random.default_rng(1).random((30_000, 3)))
+    if what == "nodes":
+        tree |= {"nodes": [{"mesh": 0}] * 5_000, "scenes": [{"nodes": list(range(5_000))}]}
+    else:
+        tree["meshes"][0]["primitives"] *= 5_000
+    with pytest.raises(InputError, match="data that are used again and again; wanted at most 2,000,000"):
+        read(tree)
+
+
+@pytest.mark.parametrize("wrong", [[], {}, [[0]], None, True, 1.5, "x"])
+@pytest.mark.parametrize(("listed", "key"), [("accessors", "componentType"), ("accessors", "type"), ("bufferViews", "buffer")])
+def test_a_list_where_a_number_belongs_is_refused(listed: str, key: str, wrong: Any) -> None:
+    tree = document()
+    tree[listed][0][key] = wrong
+    with pytest.raises(InputError, match=r"a\.gltf: found"):
+        read(tree)
+
+
+def test_the_name_of_a_buffer_beside_may_hold_coded_letters(tmp_path: Path) -> None:
+    tree = document(PLACES[:3])
+    raw = base64.b64decode(tree["buffers"][0]["uri"].partition(",")[2])
+    (tmp_path / "two words.bin").write_bytes(raw)
+    tree["buffers"][0]["uri"] = "two%20words.bin"
+    (tmp_path / "a.gltf").write_text(json.dumps(tree), encoding="utf-8")
+    assert len(read_surfaces(tmp_path / "a.gltf")[0].triangles) == 1
+    tree["buffers"][0]["uri"] = "..%2F..%2Fsecret.bin"
+    (tmp_path / "a.gltf").write_text(json.dumps(tree), encoding="utf-8")
+    with pytest.raises(InputError, match="leaves the folder"):
+        read_surfaces(tmp_path / "a.gltf")

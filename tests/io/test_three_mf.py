@@ -131,3 +131,23 @@ def test_entities_bombs_and_unknown_units_are_refused() -> None:
 def test_the_suffix_writes_it(tmp_path: Path) -> None:
     write_surface(tmp_path / "a.3mf", sound_surface("one"))
     assert read_surfaces(tmp_path / "a.3mf")[0].name == "one"
+
+
+def test_copies_of_copies_are_refused_before_they_fill_the_memory() -> None:
+    doubled = ["<components>" + f'<component objectid="{k}"/>' * 10 + "</components>" for k in range(1, 5)]
+    rows = "".join(f'<vertex x="{k}" y="{k * k}" z="0"/>' for k in range(500))
+    mesh = f'<mesh><vertices>{rows}</vertices><triangles><triangle v1="0" v2="1" v3="2"/></triangles></mesh>'
+    with pytest.raises(InputError, match="objects that are placed again and again; wanted at most 2,000,000"):
+        read_pieces(package(objects(mesh, *doubled, items='<item objectid="5"/>')), "a.3mf")
+    (piece,) = read_pieces(package(objects(mesh, *doubled, items='<item objectid="3"/>')), "a.3mf")
+    assert len(piece.triangles) == 100
+
+
+def test_a_mirrored_component_turns_its_own_triangles_only() -> None:
+    mirror = 'transform="-1 0 0 0 1 0 0 0 1 0 0 0"'
+    inner = f'<components><component objectid="1" {mirror}/><component objectid="1"/></components>'
+    plain, turned = (
+        read_pieces(package(objects(MESH, inner, items=f'<item objectid="2" {placing}/>')), "a.3mf")[0] for placing in ("", mirror)
+    )
+    assert plain.triangles.tolist() == [[0, 2, 1], [3, 4, 5]]
+    assert turned.triangles.tolist() == [[0, 1, 2], [3, 5, 4]]

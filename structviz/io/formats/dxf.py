@@ -22,6 +22,7 @@ START = re.compile(rb"^\s*0\s*\r?\n\s*SECTION\s*\r?\n\s*2\s*\r?\n", re.M)
 BINARY = b"AutoCAD Binary DXF"  # the signature that the format's reference prescribes
 UNITS = {1: "inches", 2: "feet", 4: "millimetres", 5: "centimetres", 6: "metres", 7: "kilometres", 21: "US survey feet"}
 DEEPEST, MOST_ENTITIES = 16, 5_000_000
+MOST_COPIED = 20_000  # entities that inserting blocks again may add: a small file can ask for billions, at 0.1 ms each
 HINT = "export the surfaces as 3D faces or polyface meshes in DXF text"
 
 Faces = list[tuple[Floats, list[tuple[int, ...]]]]  # places and the corners of faces among them
@@ -44,7 +45,7 @@ def read(content: bytes, file: str) -> tuple[Piece, ...]:
     layers: dict[str, Faces] = {}
     others: Counter[str] = Counter()
     try:
-        for entity in _entities(document.modelspace(), file):
+        for entity in _entities(document.modelspace(), file, len(document.entitydb)):
             found = _faces_of(entity)
             if found is None:
                 others[entity.dxftype()] += 1
@@ -100,8 +101,12 @@ def _text(content: bytes) -> str:
         return content.decode("cp1252", "replace")
 
 
-def _entities(layout: Any, file: str) -> Iterator[Any]:
-    """Yield every entity of a layout, those of inserted blocks placed; FormatError where blocks hold each other without end."""
+def _entities(layout: Any, file: str, held: int) -> Iterator[Any]:
+    """Yield every entity of a layout, those of inserted blocks placed; FormatError where blocks hold each other without end.
+
+    `held` is how many entities the document has.
+    """
+    most = min(MOST_ENTITIES, held + MOST_COPIED)
     count, waiting = 0, [(iter(layout), 0)]
     while waiting:
         entities, depth = waiting[-1]
@@ -110,10 +115,11 @@ def _entities(layout: Any, file: str) -> Iterator[Any]:
             waiting.pop()
             continue
         count += 1
-        if count > MOST_ENTITIES or depth > DEEPEST:
-            raise FormatError(file, "blocks within blocks without end", f"{DEEPEST} levels and {MOST_ENTITIES:,} entities", hint=HINT)
+        if count > most or depth > DEEPEST:
+            raise FormatError(file, "blocks within blocks without end", f"{DEEPEST} levels and {most:,} entities", hint=HINT)
         if entity.dxftype() == "INSERT":
-            waiting.append((iter(entity.virtual_entities()), depth + 1))
+            in_rows = entity.mcount > 1  # one entity that stands for rows and columns of the block
+            waiting.append((iter(entity.multi_insert() if in_rows else entity.virtual_entities()), depth + (not in_rows)))
         else:
             yield entity
 

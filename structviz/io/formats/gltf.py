@@ -11,7 +11,7 @@ from typing import Any
 import numpy as np
 
 from structviz.errors import FormatError, InputError, SurfaceError
-from structviz.io.cells import check_indices, counted, strips
+from structviz.io.cells import check_indices, counted, strips, used_only
 from structviz.io.format import CELL_ARRAYS, FLOAT64, Beside, CellData, Format, Piece, start_of
 from structviz.io.gltf import FLIP, HINT, MAGIC, Body, Document, accessor, document_of, glb
 from structviz.surfaces.surface import Floats, Integers, Surface
@@ -145,6 +145,9 @@ def _mesh(document: Document, number: Any) -> tuple[Floats, Integers, int]:
         if places.dtype.kind != "f" or places.ndim != 2 or places.shape[1] != 3:
             raise FormatError(document.file, "positions that are not three decimal numbers", "positions as VEC3 of floats", hint=HINT)
         corners = _corners(document, primitive, mode, len(places))
+        if len(corners) and len(places) > 3 * len(corners):  # one array that serves many meshes: the rest is theirs
+            places, corners = used_only(places, corners)
+        document.take(len(places) + len(corners))
         vertices.append(places.astype(np.float64))
         triangles.append(corners + start)
         start += len(places)

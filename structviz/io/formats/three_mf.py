@@ -28,6 +28,7 @@ METRES = {"foot": 0.3048, "meter": 1.0}
 PRINTED = ("micron", "millimeter", "centimeter", "inch")  # units of printed parts; millimetres are also what writers put who know none
 MOST_MODEL = 2**30  # bytes of XML
 DEEPEST, MOST_PLACED = 16, 100_000  # objects within objects, and objects placed in all
+MOST_COPIED = 2_000_000  # vertices and triangles that placing objects again may add: a small file can ask for billions
 HINT = "export the surface again"
 SPACE = "http://schemas.microsoft.com/3dmanufacturing/core/2015/02"
 RELATIONS = "http://schemas.openxmlformats.org/package/2006/relationships"
@@ -64,8 +65,9 @@ def read(content: bytes, file: str) -> tuple[Piece, ...]:
         raise FormatError(file, f"unit {unit!r}", f"one of {', '.join((*PRINTED, *METRES))}", hint=HINT)
     placed: list[tuple[str, Floats, Integers]] = []
     items = [(item.get("objectid", ""), _placing(item, file)) for item in model.iterfind("build/item")]
+    left = [MOST_PLACED, MOST_COPIED + sum(_size(body) for body in bodies.values())]
     for key, placing in items or [(key, np.eye(4, 3)) for key in bodies]:
-        whole = _whole(bodies, key, placing, file, 0, [0])
+        whole = _whole(bodies, key, placing, file, 0, left)
         if len(whole[1]):
             placed.append((bodies[key].name, *whole))
     if not placed:
@@ -113,26 +115,34 @@ def _placing(element: Element, file: str) -> Floats:
     return numbers.reshape(4, 3)
 
 
-def _whole(bodies: dict[str, Body], key: str, placing: Floats, file: str, depth: int, count: list[int]) -> tuple[Floats, Integers]:
-    """Return all triangles of an object with the objects in it, placed."""
-    count[0] += 1
+def _size(body: Body) -> int:
+    return len(body.vertices) + len(body.triangles)
+
+
+def _whole(bodies: dict[str, Body], key: str, placing: Floats, file: str, depth: int, left: list[int]) -> tuple[Floats, Integers]:
+    """Return all triangles of an object with the objects in it, placed; `left` counts down the objects and rows that may follow."""
     if key not in bodies:
         raise FormatError(file, f"object {key[:40]!r}, which is not in the file", "objects that are there", hint=HINT)
-    if depth > DEEPEST or count[0] > MOST_PLACED:
+    body = bodies[key]
+    left[0] -= 1
+    left[1] -= _size(body)
+    if depth > DEEPEST or left[0] < 0:
         raise FormatError(
             file, "objects that hold each other without end", f"at most {DEEPEST} levels and {MOST_PLACED:,} objects", hint=HINT
         )
-    body = bodies[key]
-    vertices, triangles = [_moved(body.vertices, placing)], [body.triangles]
+    if left[1] < 0:
+        wanted = f"at most {MOST_COPIED:,} vertices and triangles of copies"
+        raise FormatError(file, "objects that are placed again and again", wanted, hint="export each surface once")
+    mirrored = np.linalg.det(placing[:3]) < 0  # keeps the side of a triangle that faced outwards
+    vertices, triangles = [_moved(body.vertices, placing)], [body.triangles[:, [0, 2, 1] if mirrored else [0, 1, 2]]]
     start = len(body.vertices)
     for inner, own in body.components:
         joined = np.concatenate([own[:3] @ placing[:3], (own[3] @ placing[:3] + placing[3])[None]])
-        more, corners = _whole(bodies, inner, joined, file, depth + 1, count)
+        more, corners = _whole(bodies, inner, joined, file, depth + 1, left)
         vertices.append(more)
         triangles.append(corners + start)
         start += len(more)
-    mirrored = np.linalg.det(placing[:3]) < 0  # keeps the side of a triangle that faced outwards
-    return np.concatenate(vertices), np.concatenate(triangles)[:, [0, 2, 1] if mirrored and depth == 0 else [0, 1, 2]]
+    return np.concatenate(vertices), np.concatenate(triangles)
 
 
 def _moved(vertices: Floats, placing: Floats) -> Floats:
