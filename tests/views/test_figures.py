@@ -157,11 +157,11 @@ def test_verdicts_stay_apart_in_a_grey_print_of_the_scene(trouble, gl):
         around = np.concatenate(
             [grey[rows.start - 3 : rows.start + 4, columns].min(0), grey[rows, columns.start - 3 : columns.start + 4].min(1)]
         )
-        rims.append((around < 80).mean())
+        rims.append((around < 120).mean())
     assert shades[0] < min(shades[1:]) - 50  # conflicting is by far the darkest
     assert rims[0] > 0.9  # all round
     assert rims[1] < 0.05  # none
-    assert 0.15 < rims[2] < 0.7  # in dashes, some of them too thin for a pixel of their own
+    assert 0.3 < rims[2] < 0.7  # in dashes
 
 
 def test_a_picture_in_tiles_is_the_picture(trouble, gl, monkeypatch):
