@@ -2,23 +2,26 @@
 
 from __future__ import annotations
 
-from pathlib import Path
+from pathlib import Path as FilePath
 
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
-from matplotlib.patches import Circle
+from matplotlib.patches import Circle, PathPatch, Rectangle
+from matplotlib.path import Path
 
+from structviz.views.net_density import NetDensity
 from structviz.views.palette import FAINT, HAIR, INK, PAPER, PHASE_LOOKS, SIGMA, VERDICTS
 from structviz.views.stereonet import Net, NetAxis, NetPlane, NetSlip
 
 FONT = "DejaVu Sans"
 SIGMA_MARKS = ("o", "D", "s")
+SHADE = 0.07  # of each level of density
 EXTENT = 1.13  # of the axes, in radii of the net
 
 
-def draw(net: Net, path: Path) -> None:
+def draw(net: Net, path: FilePath) -> None:
     """Write the net as a PNG of 1800 by 1300 pixels; the same net gives the same bytes."""
     figure = Figure(figsize=(9.0, 6.5), dpi=200, facecolor=PAPER)
     FigureCanvasAgg(figure)
@@ -35,6 +38,7 @@ def draw(net: Net, path: Path) -> None:
 def paint(axes: Axes, net: Net, scale: float = 1.0, paper: str = PAPER) -> None:
     """Draw a net about the origin, of radius one, into axes with limits; marks and lines are multiplied by `scale`."""
     _frame(axes)
+    _density(axes, net.density)
     for plane in sorted(net.planes, key=lambda p: p.verdict == "conflicting"):
         _plane(axes, plane, scale)
     for slip in net.slips:
@@ -56,6 +60,14 @@ def _frame(axes: Axes) -> None:
     for azimuth, word in ((0, "N"), (90, "E"), (180, "S"), (270, "W")):
         a = np.radians(azimuth)
         axes.text(1.085 * np.sin(a), 1.085 * np.cos(a), word, ha="center", va="center", fontsize=10, color=INK, family=FONT)
+
+
+def _density(axes: Axes, density: NetDensity | None) -> None:
+    """Shade where poles crowd, a shade darker with each level, cut at the rim; rings within rings run the other way and stay open."""
+    rim = Circle((0, 0), 1.0, transform=axes.transData)
+    for rings in density.outlines if density else ():
+        whole = Path.make_compound_path(*(Path(ring, closed=True) for ring in rings))
+        axes.add_patch(PathPatch(whole, facecolor=INK, alpha=SHADE, linewidth=0, zorder=0.5, clip_path=rim))
 
 
 def _plane(axes: Axes, plane: NetPlane, scale: float) -> None:
@@ -132,6 +144,10 @@ def _key(figure: Figure, net: Net) -> None:
         at -= 0.052
     axes.plot(0.05, at, marker="x", markersize=6, color=INK)
     axes.text(0.14, at, "pole of the mean plane", fontsize=9.5, va="center", color=INK, family=FONT)
+    if net.density:
+        levels = ", ".join(f"{level:g}" for level in net.density.levels)
+        axes.add_patch(Rectangle((0.0, at - 0.07), 0.1, 0.035, facecolor=INK, alpha=2 * SHADE, linewidth=0))
+        axes.text(0.14, at - 0.052, f"poles crowd: {levels} s.d. above chance", fontsize=8, va="center", color=INK, family=FONT)
     axes.text(0.0, 0.0, "Equal-area, lower hemisphere.\nScreening aid; directions, not magnitudes.", fontsize=7.5, color=FAINT, family=FONT)
 
 
