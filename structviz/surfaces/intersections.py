@@ -26,8 +26,8 @@ SAMPLES = 200  # places of a line looked at to decide that
 REACH_OF_SIZE = 0.02  # of the square root of a surface's area, and no further: edges of coarse surfaces are kilometres long
 WIDE_QUANTILE = 0.99
 MOST_MARKS = 30_000_000  # cells times surfaces of the coarse grid
+FINER, LEVELS = 3.0, 9  # grids of cells, each so many times finer than the one before
 MOST_PAIRS = 4_000_000  # pairs of triangles tested at a time
-MOST_CELLS = 40  # of the grid that a triangle may touch on average
 
 
 @dataclass(frozen=True, eq=False)
@@ -146,43 +146,54 @@ def rim_edges(triangles: Integers, vertices: int) -> tuple[Integers, Integers]:
 
 
 def _candidates(corners: Floats, owner: Integers) -> tuple[Integers, Integers]:
-    """Return pairs of triangles of different surfaces whose boxes overlap, each pair once, found through a grid."""
+    """Return pairs of triangles of different surfaces whose boxes overlap, each pair once.
+
+    Found through grids of several widths: a triangle lives in the grid whose cells are just wider than it is, and is looked for
+    there by itself and all smaller ones, so that triangles a thousand times larger than others cost no more than others.
+    """
     low, high = _boxes(corners)
-    cell = max(float(np.median((high - low).max(1))) * 1.5, 1e-9)
-    cell = max(cell, float((high - low).max()) / 64)  # a huge triangle among small ones must not fill the grid
-    start = low.min(0)
-    while (np.floor((high - low) / cell) + 2).prod(1).sum() > MOST_CELLS * len(corners) + 1e6:  # nor may very many large ones
-        cell *= 1.5
-    first, last = ((low - start) / cell).astype(np.int64), ((high - start) / cell).astype(np.int64)
+    size = np.maximum((high - low).max(1), 1e-9)
+    widest = float(size.max()) * 1.001
+    level = np.clip(np.floor(np.log(widest / size) / np.log(FINER)), 0, LEVELS - 1).astype(np.int64)  # 0 is the widest grid
+    found = [np.zeros(0, np.int64)]
+    for number in np.unique(level).tolist():
+        rows = np.flatnonzero(level >= number)
+        cell = widest / FINER**number
+        found += _within(low, high, owner, rows, level[rows] == number, cell)
+    pairs = np.unique(np.concatenate(found))
+    return pairs // max(len(corners), 1), pairs % max(len(corners), 1)
+
+
+def _within(low: Floats, high: Floats, owner: Integers, rows: Integers, lives: NDArray[np.bool_], cell: float) -> list[Integers]:
+    """Return keys of pairs of one grid: a triangle that lives in it, and any that lives there or is smaller."""
+    start = low[rows].min(0)
+    first, last = ((low[rows] - start) / cell).astype(np.int64), ((high[rows] - start) / cell).astype(np.int64)
     count = last - first + 1
     total = count.prod(1)
-    row = np.repeat(np.arange(len(corners)), total)
+    at = np.repeat(np.arange(len(rows)), total)
     step = np.arange(total.sum()) - np.repeat(np.cumsum(total) - total, total)
-    ny, nz = count[row, 1], count[row, 2]
-    place = np.stack([step // (ny * nz), step // nz % ny, step % nz], 1) + first[row]
-    shape = last.max(0) + 1
-    key = _keyed(place, shape)
-    order = np.lexsort((owner[row], key))
-    key, row = key[order], row[order]
+    ny, nz = count[at, 1], count[at, 2]
+    key = _keyed(np.stack([step // (ny * nz), step // nz % ny, step % nz], 1) + first[at], last.max(0) + 1)
+    order = np.lexsort((~lives[at], key))  # those that live in a cell stand first in it
+    key, at = key[order], at[order]
     begin = np.flatnonzero(np.concatenate([[True], key[1:] != key[:-1]]))
+    held = np.add.reduceat(lives[at], begin, dtype=np.int64)
+    mine = owner[rows[at]]
+    useful = (held > 0) & (np.minimum.reduceat(mine, begin) != np.maximum.reduceat(mine, begin))
     size = np.diff(begin, append=len(key))
-    several = np.repeat(np.minimum.reduceat(owner[row], begin) != np.maximum.reduceat(owner[row], begin), size)
-    key, row = key[several], row[several]
-    found: list[Integers] = []
-    begin = np.flatnonzero(np.concatenate([[True], key[1:] != key[:-1]])) if len(key) else np.zeros(0, np.int64)
-    size = np.diff(begin, append=len(key))
-    at = np.repeat(begin + size, size)  # where the cell of each entry ends
-    after = at - np.arange(len(row)) - 1  # entries behind it in its cell
-    for part in np.array_split(np.arange(len(row)), max(1, int(after.sum() // MOST_PAIRS) + 1)):
-        one = np.repeat(part, after[part])
-        other = one + 1 + np.arange(len(one)) - np.repeat(np.cumsum(after[part]) - after[part], after[part])
-        a, b = row[one], row[other]
+    rank = np.arange(len(key)) - np.repeat(begin, size)
+    partners = np.where(np.repeat(useful, size), np.minimum(rank, np.repeat(held, size)), 0)
+    where, found = np.repeat(begin, size), []
+    for part in np.array_split(np.flatnonzero(partners), max(1, int(partners.sum() // MOST_PAIRS) + 1)):
+        many = partners[part]
+        one = np.repeat(part, many)
+        other = np.repeat(where[part] - (np.cumsum(many) - many), many) + np.arange(len(one))
+        a, b = rows[at[one]], rows[at[other]]
         apart = owner[a] != owner[b]
         a, b = a[apart], b[apart]
         overlap = ((low[a] <= high[b]) & (low[b] <= high[a])).all(1)
-        found.append(np.minimum(a, b)[overlap] * len(corners) + np.maximum(a, b)[overlap])
-    pairs = np.unique(np.concatenate(found)) if found else np.zeros(0, np.int64)
-    return pairs // max(len(corners), 1), pairs % max(len(corners), 1)
+        found.append(np.unique(np.minimum(a, b)[overlap] * len(low) + np.maximum(a, b)[overlap]))
+    return found
 
 
 def _segments(corners: Floats, first: Integers, second: Integers) -> tuple[Floats, Integers]:
