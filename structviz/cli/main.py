@@ -27,6 +27,7 @@ COMMANDS = {
     "repair": "mend surfaces into a new folder, with a log of every change",
     "figures": "draw the figures of a report in print quality, with captions",
     "formats": "list the file formats that can be read and written",
+    "view": "show a model or its results in a window",
     "serve": "show the page of a model in the browser, and keep it up to date",
 }
 EPILOG = """\

@@ -45,15 +45,29 @@ def _asked_window() -> str | None:
         environment = {**os.environ, "VTK_DEFAULT_OPENGL_WINDOW": window} if window else dict(os.environ)
         if not window and not os.environ.get("DISPLAY") and sys.platform.startswith("linux"):
             continue  # without a display the default window would only say so at length
-        try:
-            answer = subprocess.run(
-                [sys.executable, "-c", PROBE], capture_output=True, text=True, timeout=SECONDS, env=environment, check=False
-            )
-        except (OSError, subprocess.TimeoutExpired):
-            continue
-        if answer.returncode == 0 and answer.stdout.strip().endswith("works"):
+        if _renders(environment):
             return window
     return None
+
+
+def _renders(environment: dict[str, str]) -> bool:
+    """Return True where a process of its own, with this environment, draws what it should."""
+    command = [sys.executable, "-c", PROBE]
+    try:
+        answer = subprocess.run(command, capture_output=True, text=True, timeout=SECONDS, env=environment, check=False)
+    except (OSError, subprocess.TimeoutExpired):
+        return False
+    return answer.returncode == 0 and answer.stdout.strip().endswith("works")
+
+
+def require_screen() -> None:
+    """Set VTK up for a window on the screen; raise RenderingUnavailable, with the other ways to see a model, where it cannot draw there."""
+    hint = "structviz serve PATH shows the same in a browser; structviz check PATH --out DIR writes report.html and pictures"
+    if sys.platform.startswith("linux") and not (os.environ.get("DISPLAY") or os.environ.get("WAYLAND_DISPLAY")):
+        raise RenderingUnavailable("no screen was found: DISPLAY is not set", hint=hint)
+    os.environ.pop("VTK_DEFAULT_OPENGL_WINDOW", None)  # the one that draws off-screen shows nothing
+    if not _renders(dict(os.environ)):
+        raise RenderingUnavailable("no OpenGL works on this screen", hint=f"{PACKAGES}; or: {hint}")
 
 
 def require_gl() -> None:

@@ -32,7 +32,7 @@ def add_actors(plotter: Any, scene: Scene, *, widths: float = 1.0, dashed: bool 
     """
     plotter.set_background(PAPER)
     actors: dict[str, list[Any]] = {word: _surfaces(plotter, scene, word, widths, dashed) for word in reversed(WORDS)}
-    actors["glyphs"] = _glyphs(plotter, scene)
+    actors["glyphs"] = glyph_actors(plotter, scene)
     actors["meetings"] = _meetings(plotter, scene, widths)
     actors["frame"] = [plotter.add_mesh(pv.Line(*line), color=FAINT, line_width=1.5 * widths) for line in frame_lines(scene)]
     return actors
@@ -74,7 +74,8 @@ def _dashes(lines: Any, length_m: float) -> Any:
     return pv.PolyData(ends.astype(np.float32), lines=segments.ravel())
 
 
-def _glyphs(plotter: Any, scene: Scene) -> list[Any]:
+def glyph_actors(plotter: Any, scene: Scene) -> list[Any]:
+    """Add the stress glyphs of a scene to a plotter; return their actors."""
     actors, parts = [], stress_glyph()
     for role, colour in GLYPH.items():
         mesh = merged([(placed(p, g.axes, g.place, g.size_m), p.triangles) for g in scene.glyphs for p in parts if p.role == role])
