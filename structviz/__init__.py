@@ -33,6 +33,7 @@ if TYPE_CHECKING:
     from structviz.kinematics.senses import Sector, sector_of_rake, sector_of_words
     from structviz.model import Fault, FaultModel, Finding, Horizon, Mechanism, Stria, WellAzimuth
     from structviz.report.html import page_text
+    from structviz.report.notebook import show
     from structviz.report.results_json import results_text
     from structviz.report.tables import data_frame, fault_table, pair_table
     from structviz.report.write import Written, write_outputs
@@ -86,6 +87,7 @@ __all__ = [
     "sector_of_rake",
     "sector_of_words",
     "sensitivity",
+    "show",
     "stress_field",
     "write_outputs",
     "write_surface",
@@ -109,6 +111,7 @@ _HOME = {
     "Stria": "model",
     "WellAzimuth": "model",
     "page_text": "report.html",
+    "show": "report.notebook",
     "results_text": "report.results_json",
     "data_frame": "report.tables",
     "fault_table": "report.tables",
