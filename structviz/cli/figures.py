@@ -12,9 +12,10 @@ import sys
 from structviz.analysis import run as analyse
 from structviz.cli.choices import add_choices, ending_like_an_interrupt, limits_of, number, settings_of, where_of
 from structviz.cli.progress import progress_bar
+from structviz.errors import ArgumentError
 from structviz.io import read_model
 from structviz.io.independent import with_measurements
-from structviz.report.figures import CAPTIONS, checked_figures_target, write_figures
+from structviz.report.figures import CAPTIONS, TURNTABLES, checked_figures_target, write_figures
 from structviz.report.names import printable
 from structviz.report.write import Written
 from structviz.views.figures import FIGURES, FORMATS, PrintChoice, chosen
@@ -36,18 +37,22 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     )
     parser.add_argument("--only", metavar="LIST", help=f"some of {', '.join(FIGURES)} (default all)")
     parser.add_argument("--viewpoints", metavar="LIST", help=f"of the scene: some of {', '.join(VIEWPOINTS)} (default all)")
+    parser.add_argument("--turntable", metavar="KIND", help="the scene turned once round too: gif or mp4")
     add_choices(parser)
 
 
 def run(args: argparse.Namespace) -> int:
     """Read, analyse, draw and say what was written; return 0."""
     settings, limits, choice = settings_of(args), limits_of(args.limit), _choice(args)
+    if args.turntable is not None and args.turntable not in TURNTABLES:
+        found = f"--turntable: found {args.turntable!r}; wanted one of {', '.join(TURNTABLES)}"
+        raise ArgumentError(found, hint="a gif is shown everywhere")
     checked_figures_target(args.out)  # better told now than after the work
     with ending_like_an_interrupt(), progress_bar() as progress:
         model = read_model(args.path, allow_outside=args.allow_outside, where=where_of(args.where), progress=progress)
         model = with_measurements(model, args.mechanisms, args.well_azimuths)
         analysis = analyse(model, settings, limits=limits, progress=progress)
-        written = write_figures(analysis, args.out, choice=choice, progress=progress)
+        written = write_figures(analysis, args.out, choice=choice, turntable=args.turntable or "", progress=progress)
     _say(written)
     return 0
 

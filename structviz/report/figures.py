@@ -8,13 +8,16 @@ from collections.abc import Sequence
 from pathlib import Path
 
 from structviz.analysis import Analysis, Progress
-from structviz.errors import RenderingUnavailable
+from structviz.errors import ArgumentError, RenderingUnavailable
 from structviz.report import whole
 from structviz.report.names import printable
 from structviz.report.write import Written
 from structviz.views.figures import DrawnFigure, PrintChoice, draw_figure, figures_of
+from structviz.views.gl import require_gl
+from structviz.views.scene import build_scene
 
 LISTING, CAPTIONS = "figures.json", "figures.txt"
+TURNTABLES = ("gif", "mp4")
 
 
 def checked_figures_target(folder: str | os.PathLike[str]) -> Path:
@@ -38,9 +41,12 @@ def write_figures(
     folder: str | os.PathLike[str],
     *,
     choice: PrintChoice | None = None,
+    turntable: str = "",
     progress: Progress | None = None,
 ) -> Written:
     """Write figures for print, figures.txt with their captions and figures.json that lists them; return what was written.
+
+    `turntable`, "gif" or "mp4", adds the scene turned once round.
 
     Raises OutputError as `write_outputs` does, and RenderingUnavailable where only scenes were asked for and there is no
     OpenGL; where other figures were asked for as well, the scenes are skipped and that is told.
@@ -49,7 +55,8 @@ def write_figures(
     tell = progress or (lambda text, done, total: None)
     with whole.complete_or_nothing(target) as new:
         drawn, skipped = _draw(analysis, chosen, new, tell)
-        files = (LISTING, *sorted([CAPTIONS, *(name for each in drawn for name in each.files)]))
+        turned = [_turned(analysis, new, turntable, tell)] if turntable else []
+        files = (LISTING, *sorted([CAPTIONS, *turned, *(name for each in drawn for name in each.files)]))
         _write(new / CAPTIONS, _captions_text(analysis, drawn))
         _write(new / LISTING, _listing_text(analysis, chosen, drawn, files))
     return Written(target, files, skipped)
@@ -73,6 +80,18 @@ def _draw(analysis: Analysis, choice: PrintChoice, new: Path, tell: Progress) ->
     if unavailable and not drawn:
         raise RenderingUnavailable("no working OpenGL, so no figure could be drawn", hint=unavailable.hint)
     return drawn, tuple(dict.fromkeys(skipped))
+
+
+def _turned(analysis: Analysis, new: Path, suffix: str, tell: Progress) -> str:
+    """Write the scene turned once round; return the name of the file."""
+    if suffix not in TURNTABLES:
+        hint = "a gif is shown everywhere, an mp4 is smaller and smoother"
+        raise ArgumentError(f"turntable: found {suffix!r}; wanted one of {', '.join(TURNTABLES)}", hint=hint)
+    require_gl()
+    from structviz.views.render_turntable import write_turntable
+
+    write_turntable(build_scene(analysis), new / f"turntable.{suffix}", lambda done, total: tell("turning the model", done, total))
+    return f"turntable.{suffix}"
 
 
 def _captions_text(analysis: Analysis, drawn: Sequence[DrawnFigure]) -> str:
