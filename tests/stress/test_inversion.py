@@ -11,7 +11,7 @@ from structviz.errors import ArgumentError
 from structviz.kinematics.slip import resolved_slip
 from structviz.orientation.planes import normals, rakes_deg, slip_vectors
 from structviz.orientation.vectors import angle_deg
-from structviz.stress.inversion import angular_inversion, angular_rank, linear_inversion, linear_rank
+from structviz.stress.inversion import SlipInversion, angular_inversion, angular_rank, linear_inversion, linear_rank
 from structviz.stress.tensor import frame_angle_deg, reduced_tensor
 
 
@@ -124,3 +124,17 @@ def test_bad_data_are_refused():
         angular_inversion(n, slips[1:])
     with pytest.raises(ArgumentError, match="wanted 25 weights, none negative"):
         linear_inversion(n, slips, -np.ones(25))
+
+
+@pytest.mark.parametrize("known", [True, False])
+def test_reversed_twice_is_the_same_and_once_turns_the_misfits_of_known_senses(known):
+    axes, misfits = np.eye(3), np.array([0.0, 20.0, 70.0])
+    found = SlipInversion(axes, 0.3, misfits, known)
+    other = found.reversed()
+    assert other.senses_known is known
+    assert other.shape_ratio == pytest.approx(0.7)
+    assert np.allclose(other.misfits_deg, 180.0 - misfits if known else misfits)
+    again = other.reversed()
+    assert np.allclose(np.abs(again.axes), np.abs(axes))
+    assert again.shape_ratio == pytest.approx(0.3)
+    assert np.allclose(again.misfits_deg, misfits)

@@ -90,3 +90,22 @@ def test_many_striae_of_one_fault_are_not_heard_as_many_faults(known):
 
 def test_angle_off_the_plane():
     assert off_plane_deg(np.array([[1.0, 0, 0], [0, 0, 1.0]]), np.array([[0, 0, 1.0], [0, 0, 1.0]])) == pytest.approx([0.0, 90.0])
+
+
+def test_lines_on_one_fault_add_up_and_weigh_what_they_weigh(known):
+    _, normals, slips = known
+    frames, ratios = all_frames(40), np.array([0.2, 0.9])
+    one = [slip_term(lines_of(normals[k : k + 1], slips[k : k + 1]), frames, ratios, 15.0, 0.25) for k in (0, 1)]
+    both = gather_lines([normals[:2]], [slips[:2]], [np.array([True, True])], [np.array([1.0, 0.5])])
+    assert np.allclose(slip_term(both, frames, ratios, 15.0, 0.25), one[0] + 0.5 * one[1], atol=1e-9)
+
+
+def test_a_line_without_sense_is_the_mean_of_both_ways_round(known):
+    _, normals, slips = known
+    frames, ratios = all_frames(40), np.array([0.3])
+
+    def odds(signed, turn):
+        return np.exp(slip_term(lines_of(normals[:1], turn * slips[:1], signed), frames, ratios, 15.0, 0.25))
+
+    assert np.allclose(odds(False, 1), (odds(True, 1) + odds(True, -1)) / 2, rtol=1e-9)
+    assert np.allclose(odds(False, 1), odds(False, -1), rtol=1e-9)
