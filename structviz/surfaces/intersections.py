@@ -25,7 +25,7 @@ MOST_PLACES = 50  # along one edge of a rim
 SAMPLES = 200  # places of a line looked at to decide that
 REACH_OF_SIZE = 0.02  # of the square root of a surface's area, and no further: edges of coarse surfaces are kilometres long
 WIDE_QUANTILE = 0.99
-MOST_MARKS = 30_000_000  # cells times surfaces of the coarse grid
+MOST_CELLS = 8_000_000  # of the coarse grid
 FINER, LEVELS = 3.0, 9  # grids of cells, each so many times finer than the one before
 MOST_PAIRS = 4_000_000  # pairs of triangles tested at a time
 
@@ -70,16 +70,18 @@ def _near_others(corners: Sequence[Floats]) -> tuple[Floats, Integers, list[Inte
     start = low.min(0)
     extent = np.maximum(high.max(0) - start, 1e-9)
     cell = max(min(float(size.max()), 4 * float(np.quantile(size, WIDE_QUANTILE))), 1e-9)
-    cell = max(cell, float((extent.prod() * len(corners) / MOST_MARKS) ** (1 / 3)), float(extent.max()) / 500)
+    cell = max(cell, float((extent.prod() / MOST_CELLS) ** (1 / 3)), float(extent.max()) / 1000)
     shape = (extent // cell).astype(np.int64) + 1
     wide = size > cell
     keys = _keyed((((low + high) / 2 - start) / cell).astype(np.int64), shape)
-    marks = np.zeros((int(shape.prod()), len(corners)), bool)
-    marks[keys, owner] = True
+    least, most = np.full(int(shape.prod()), len(corners), np.int32), np.full(int(shape.prod()), -1, np.int32)
+    least[keys[::-1]], most[keys] = owner[::-1], owner  # of marks in one cell the last one written stays: the lowest, the highest number
+    least, most = least.reshape(shape), most.reshape(shape)
     for row in np.flatnonzero(wide):
         first, last = (((corner[row] - start) / cell).astype(np.int64) for corner in (low, high))
-        marks.reshape(*shape, -1)[tuple(slice(f, to + 1) for f, to in zip(first, last))][..., owner[row]] = True
-    busy = _grown(marks.reshape(*shape, -1)).sum(-1, dtype=np.int16).ravel() > 1
+        box = tuple(slice(f, to + 1) for f, to in zip(first, last))
+        least[box], most[box] = np.minimum(least[box], owner[row]), np.maximum(most[box], owner[row])
+    busy = (_spread(least, np.minimum) < _spread(most, np.maximum)).ravel()
     keep = busy[keys] | wide
     starts = np.cumsum([0] + [len(each) for each in corners])
     return whole[keep], owner[keep], [np.flatnonzero(keep[a:b]) for a, b in pairwise(starts)]
@@ -95,14 +97,14 @@ def _keyed(places: Integers, shape: Integers) -> Integers:
     return (places[..., 0] * shape[1] + places[..., 1]) * shape[2] + places[..., 2]
 
 
-def _grown(marks: NDArray[np.bool_]) -> NDArray[np.bool_]:
-    """Return marks in a grid (X, Y, Z, F) carried to the cells beside, corners included."""
+def _spread(marks: NDArray[np.int32], of: np.ufunc) -> NDArray[np.int32]:
+    """Return for each cell of a grid (X, Y, Z) the least or greatest mark of it and the cells beside, corners included."""
     for axis in range(3):
         held = np.moveaxis(marks, axis, 0)
-        grown = held.copy()
-        grown[1:] |= held[:-1]
-        grown[:-1] |= held[1:]
-        marks = np.moveaxis(grown, 0, axis)
+        found = held.copy()
+        of(found[1:], held[:-1], out=found[1:])
+        of(found[:-1], held[1:], out=found[:-1])
+        marks = np.moveaxis(found, 0, axis)
     return marks
 
 
