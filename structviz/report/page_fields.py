@@ -76,7 +76,7 @@ def _pair_distance_m(pairs: cKDTree | None, drawn: Drawn) -> NDArray:
     """Return the distance from the middle of each drawn triangle to the nearest place where two faults were paired, m."""
     if pairs is None:
         return np.full(len(drawn.triangles), np.nan)
-    return np.asarray(pairs.query(drawn.vertices[drawn.triangles].mean(1))[0])
+    return np.asarray(pairs.query(drawn.vertices[drawn.triangles].mean(1), workers=-1)[0])
 
 
 def _fitted(shown: Shown, values: NDArray) -> Shown:

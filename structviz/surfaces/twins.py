@@ -15,6 +15,7 @@ Floats = NDArray[np.float64]
 SAMPLES = 300  # triangles of a surface looked at
 AREA_RATIO = 2.0  # surfaces that differ more in area are not one fault twice, but perhaps one in the other
 PLANES_DEG = 20.0
+COMMON_SIDE = 0.4  # boxes of one fault given twice have at least this share of each side in common
 
 
 def covered_share(one: MeasuredSurface, other: MeasuredSurface, tolerance_m: float, tree: cKDTree | None = None) -> float:
@@ -47,7 +48,9 @@ def twin_shares(surfaces: Sequence[MeasuredSurface], boxes: Floats, tolerance: f
     normals = np.array([each.normal for each in surfaces])
     first, second = np.triu_indices(len(surfaces), 1)
     reach = tolerance * np.sqrt(np.minimum(areas[first], areas[second]))[:, None]
-    touch = ((boxes[first, 0] <= boxes[second, 1] + reach) & (boxes[second, 0] <= boxes[first, 1] + reach)).all(1)
+    sides = boxes[:, 1] - boxes[:, 0]
+    common = np.minimum(boxes[first, 1], boxes[second, 1]) - np.maximum(boxes[first, 0], boxes[second, 0])
+    touch = (common + reach >= COMMON_SIDE * np.maximum(sides[first], sides[second])).all(1)
     alike = np.maximum(areas[first], areas[second]) <= AREA_RATIO * np.minimum(areas[first], areas[second])
     near = np.abs((normals[first] * normals[second]).sum(1)) >= np.cos(np.radians(PLANES_DEG))
     trees: dict[int, cKDTree] = {}
